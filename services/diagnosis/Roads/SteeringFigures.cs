@@ -1,0 +1,30 @@
+using WearWatch.Diagnosis.Statistics;
+
+namespace WearWatch.Diagnosis.Roads;
+
+/// <summary>What the steering signals alone say of one vehicle, the road's share removed. Null where not possible.</summary>
+public sealed record SteeringFigures
+{
+    public required string VehicleId { get; init; }
+    /// <summary>Torque that keeps the vehicle straight on a flat road, N·m at the wheel; positive: the vehicle pulls right.</summary>
+    public Estimate? SteeringPullNm { get; init; }
+    /// <summary>Steering-wheel angle when travelling straight on a flat road, deg, + left.</summary>
+    public Estimate? OffCentreDeg { get; init; }
+    /// <summary>Extra steering pull while braking over coasting, N·m.</summary>
+    public Estimate? BrakePullNm { get; init; }
+    /// <summary>Extra steering pull under drive over coasting, N·m.</summary>
+    public Estimate? DrivePullNm { get; init; }
+    public required int Runs { get; init; }
+    /// <summary>Straight driving in all, s.</summary>
+    public required double Seconds { get; init; }
+    /// <summary>Torque is torsion bar plus assist; without assist the pull is a lower bound and downgraded.</summary>
+    public bool TorqueIncludesAssist { get; init; }
+    /// <summary>How the road's share was removed: by cells shared with other vehicles, the vehicle's own bank reading, or the usual crown of the traffic side.</summary>
+    public required RoadShare RoadShare { get; init; }
+    /// <summary>Runs that carry most weight, "stream/sequence", the evidence.</summary>
+    public IReadOnlyList<string> EvidenceRuns { get; init; } = [];
+    /// <summary>What was not possible and which channel would make it so.</summary>
+    public IReadOnlyList<string> NotPossible { get; init; } = [];
+}
+
+public enum RoadShare { SharedCells, OwnBankReading, UsualCrown }

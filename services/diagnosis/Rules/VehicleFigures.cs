@@ -1,0 +1,22 @@
+using WearWatch.Diagnosis.Facts;
+using WearWatch.Diagnosis.Roads;
+using WearWatch.Diagnosis.Wear;
+
+namespace WearWatch.Diagnosis.Rules;
+
+/// <summary>Everything both witnesses say of one vehicle: what the rules, the cause estimate and the money stand on.</summary>
+public sealed record VehicleFigures
+{
+    public required Vehicle Vehicle { get; init; }
+    public required Depot Depot { get; init; }
+    public required DateOnly AsOf { get; init; }
+    public IReadOnlyList<TyreFigures> Tyres { get; init; } = [];
+    public SteeringFigures? Steering { get; init; }
+    public UsualRoute? Route { get; init; }
+    public IReadOnlyList<DriverReport> DriverReports { get; init; } = [];
+    public IReadOnlyList<WorkshopRecord> WorkshopRecords { get; init; } = [];
+    /// <summary>Operator's tolerances in force, over the built-in ones.</summary>
+    public IReadOnlyList<ToleranceFact> Tolerances { get; init; } = [];
+
+    public TyreFigures? At(Position position) => Tyres.FirstOrDefault(t => t.Position == position);
+}

@@ -1,0 +1,63 @@
+using WearWatch.Diagnosis.Facts;
+using WearWatch.Diagnosis.Roads;
+using WearWatch.Diagnosis.Steering;
+using WearWatch.Diagnosis.Unusual;
+using WearWatch.Diagnosis.Wear;
+using WearWatch.Storage.Analysis;
+using WearWatch.Storage.Facts;
+
+namespace WearWatch.Analysis;
+
+/// <summary>Makes fleet snapshots from all facts up to a day; a function of those facts alone.</summary>
+internal sealed class FleetFitting(FactReader facts, RunStore runs, TimeProvider clock)
+{
+    /// <summary>Workshop records older than this, in days before the as-of date, no longer anchor the steering's zero.</summary>
+    private const int InOrderDays = 180;
+
+    /// <summary>The snapshot as of a day, or as of the newest fact (never in the future) where none is given.</summary>
+    /// <returns>The snapshot, and how many vehicles and straight runs it rests on.</returns>
+    public async Task<(FleetSnapshot Snapshot, int Vehicles, int Runs)> Make(DateOnly? asOf, CancellationToken cancel)
+    {
+        var fleet = await facts.LoadFleet(asOf, cancel);
+        var settings = await facts.LoadSettings(cancel);
+        var day = asOf ?? AsOf(fleet);
+        var straight = await runs.Fleet(day.AddDays(1).ToDateTime(TimeOnly.MinValue, DateTimeKind.Utc), cancel);
+        var studies = await runs.Studies(cancel);
+        var snapshot = await Task.Run(() => Fit(fleet, settings, straight, studies, day), cancel);
+        return (snapshot, fleet.Count, straight.Count);
+    }
+
+    private DateOnly AsOf(IReadOnlyList<VehicleFacts> fleet)
+    {
+        var newest = fleet.Max(v => v.FactsThrough) ?? DateTimeOffset.UnixEpoch;
+        var now = clock.GetUtcNow();
+        return DateOnly.FromDateTime((newest < now ? newest : now).UtcDateTime);
+    }
+
+    private static FleetSnapshot Fit(IReadOnlyList<VehicleFacts> fleet, IReadOnlyDictionary<string, DepotSettings> settings, IReadOnlyList<StraightRun> straight, IReadOnlyList<VehicleSteeringStudy> studies, DateOnly day)
+    {
+        var torque = TorqueKinds(straight, studies);
+        var roads = RoadModel.Fit(straight, [.. fleet.Select(v => RoadVehicle(v, torque.GetValueOrDefault(v.Vehicle.VehicleId), day))]);
+        var tread = fleet.Select(v => VehicleFiguresOf.Tread(v, settings.GetValueOrDefault(v.Depot.DepotId))).ToList();
+        var wear = FleetWear.Fit(tread, day);
+        var figures = fleet.AsParallel().AsOrdered()
+            .Select((v, i) => VehicleFiguresOf.Figures(v, settings.GetValueOrDefault(v.Depot.DepotId), VehicleWear.Estimate(tread[i], wear, day), roads.Of(v.Vehicle.VehicleId), day))
+            .ToList();
+        return new FleetSnapshot { AsOf = day, Wear = wear, Roads = roads, Unusual = UnusualVehicles.Fit(figures) };
+    }
+
+    private static RoadVehicle RoadVehicle(VehicleFacts v, TorqueKind torque, DateOnly day) =>
+        new(v.Vehicle.VehicleId, v.Vehicle.Class, v.Depot.TrafficSide, torque, FoundInOrder(v, day));
+
+    private static bool FoundInOrder(VehicleFacts v, DateOnly day) =>
+        v.WorkshopRecords.LastOrDefault() is { Body.Result: WorkshopResult.InOrder } last && last.At >= new DateTimeOffset(day.AddDays(-InOrderDays), TimeOnly.MinValue, TimeSpan.Zero);
+
+    /// <summary>What each vehicle's torque is: the sum where assist was logged beside it, else the torsion bar alone; never a raw number.</summary>
+    private static Dictionary<string, TorqueKind> TorqueKinds(IReadOnlyList<StraightRun> straight, IReadOnlyList<VehicleSteeringStudy> studies)
+    {
+        var kinds = studies.GroupBy(s => s.VehicleId).ToDictionary(g => g.Key, g => g.Any(s => s.ChannelsPresent.Contains(SteeringChannel.DriverTorque)) ? TorqueKind.UnknownUnit : TorqueKind.None);
+        foreach (var vehicle in straight.Where(r => r.TorqueNm is not null).GroupBy(r => r.VehicleId))
+            kinds[vehicle.Key] = vehicle.Count(r => r.TorqueIncludesAssist) * 2 > vehicle.Count() ? TorqueKind.Total : TorqueKind.TorsionBar;
+        return kinds;
+    }
+}

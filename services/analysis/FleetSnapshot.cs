@@ -1,0 +1,17 @@
+using WearWatch.Diagnosis.Roads;
+using WearWatch.Diagnosis.Unusual;
+using WearWatch.Diagnosis.Wear;
+
+namespace WearWatch.Analysis;
+
+/// <summary>
+/// What only the whole fleet can tell: normal wear and technicians' bias, roads with every vehicle's steering figures,
+/// and what is usual for a class. Immutable once stored; a diagnosis names the one it stands on.
+/// </summary>
+internal sealed record FleetSnapshot
+{
+    public required DateOnly AsOf { get; init; }
+    public required FleetWear Wear { get; init; }
+    public required RoadFit Roads { get; init; }
+    public required UnusualFit Unusual { get; init; }
+}

@@ -1,0 +1,22 @@
+using WearWatch.Diagnosis.Causes;
+using WearWatch.Diagnosis.Money;
+using WearWatch.Diagnosis.Rules;
+using WearWatch.Diagnosis.Tread;
+using WearWatch.Diagnosis.Wear;
+
+namespace WearWatch.Analysis;
+
+/// <summary>Everything the stages found on one vehicle, before it is put into the contract's words.</summary>
+internal sealed record VehicleDiagnosis
+{
+    public required VehicleFigures Figures { get; init; }
+    public required VehicleWearResult Wear { get; init; }
+    public required Verdict Verdict { get; init; }
+    public required CostOfWaiting Cost { get; init; }
+    public required NetBenefit NetBenefit { get; init; }
+    public required double JobPrice { get; init; }
+    public required IReadOnlyList<Finding> Findings { get; init; }
+    public required IReadOnlyList<UnsafeTyre> UnsafeTyres { get; init; }
+    public required long FleetFit { get; init; }
+    public DateTimeOffset? FactsThrough { get; init; }
+}

@@ -1,0 +1,36 @@
+using WearWatch.Diagnosis.Facts;
+using WearWatch.Diagnosis.Roads;
+using WearWatch.Diagnosis.Rules;
+using WearWatch.Diagnosis.Wear;
+using WearWatch.Storage.Facts;
+
+namespace WearWatch.Analysis;
+
+/// <summary>Brings a vehicle's facts into the form the computation takes.</summary>
+internal static class VehicleFiguresOf
+{
+    public static VehicleTread Tread(VehicleFacts v, DepotSettings? settings) => new()
+    {
+        Vehicle = v.Vehicle,
+        Depot = v.Depot,
+        Surveys = [.. v.Surveys.Select(s => new StoredSurvey(s.FactId, s.Body))],
+        Fittings = [.. v.Fittings.Select(f => f.Body)],
+        Tyres = [.. v.Tyres.Select(t => t.Body)],
+        Limits = Limits(settings),
+    };
+
+    public static IReadOnlyList<DepthLimitFact> Limits(DepotSettings? settings) => [.. settings?.Limits.Select(l => l.Body) ?? []];
+
+    public static VehicleFigures Figures(VehicleFacts v, DepotSettings? settings, VehicleWearResult wear, SteeringFigures? steering, DateOnly asOf) => new()
+    {
+        Vehicle = v.Vehicle,
+        Depot = v.Depot,
+        AsOf = asOf,
+        Tyres = wear.Tyres,
+        Steering = steering,
+        Route = v.Route,
+        DriverReports = [.. v.DriverReports.Select(r => r.Body)],
+        WorkshopRecords = [.. v.WorkshopRecords.Select(r => r.Body)],
+        Tolerances = [.. settings?.Tolerances.Select(t => t.Body).Where(t => t.From <= asOf) ?? []],
+    };
+}

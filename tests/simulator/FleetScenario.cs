@@ -1,0 +1,111 @@
+namespace WearWatch.Simulator;
+
+/// <summary>The arguments of a fleet.</summary>
+public sealed record Scenario(ulong Seed, int Vehicles, int Weeks, long MaxSamples, DateOnly End)
+{
+    public int Days => Weeks * 7;
+    /// <summary>First day of the window; the last day of it is <see cref="End"/>.</summary>
+    public DateOnly Start => End.AddDays(-Days);
+
+    /// <summary>UTC time of a moment, days from the start of the window.</summary>
+    public DateTime At(double day) => Start.ToDateTime(TimeOnly.MinValue, DateTimeKind.Utc).AddSeconds(Math.Round(day * 86400));
+
+    public string Time(double day) => At(day).ToString("yyyy-MM-dd'T'HH:mm:ss'Z'");
+
+    public string Date(double day) => At(day).ToString("yyyy-MM-dd");
+}
+
+/// <summary>
+/// Draws the fleet: who is misaligned and how much, who only looks so, what each has for sensors. A little under a
+/// quarter is misaligned at the end of the window, three fifths of those by 1.5 to 4 tolerances, the rest by 1 to 1.5.
+/// </summary>
+public sealed class FleetScenario
+{
+    private readonly Scenario _scenario;
+    private readonly Dictionary<int, RoadNetwork> _roads = [];
+
+    public IReadOnlyList<FleetVehicle> Vehicles { get; }
+    public RoadNetwork Roads(Depot depot) => _roads[depot.Index];
+
+    public FleetScenario(Scenario scenario)
+    {
+        _scenario = scenario;
+        foreach (var depot in Depot.All) _roads[depot.Index] = new(depot, scenario.Seed);
+        var n = scenario.Vehicles;
+        var fleet = new RandomStream(scenario.Seed, 1);
+        var order = fleet.Order(n);
+        var misaligned = (int)Math.Round(n * fleet.Between(0.22, 0.249), MidpointRounding.ToZero);
+        var large = (int)Math.Round(0.6 * misaligned);
+        var repaired = Math.Max(1, n / 16);
+        Vehicles = [.. Enumerable.Range(0, n).Select(i =>
+        {
+            var rank = Array.IndexOf(order, i);
+            var fate = rank < large ? Fate.Large : rank < misaligned ? Fate.Small : rank < misaligned + repaired ? Fate.Repaired : Fate.Sound;
+            return Draw(i, fate);
+        })];
+    }
+
+    private enum Fate { Large, Small, Repaired, Sound }
+
+    private FleetVehicle Draw(int index, Fate fate)
+    {
+        var random = new RandomStream(_scenario.Seed, 2, index);
+        var kind = index % VehicleTypes.Mix.Length;
+        var choices = VehicleTypes.Mix[kind];
+        var type = choices[index / VehicleTypes.Mix.Length % choices.Length];
+        var depot = Depot.Of(index, _scenario.Vehicles);
+        var positions = Position.Of(type);
+        var sound = Geometry.DrawSound(type, random);
+        var fault = fate switch
+        {
+            Fate.Large => Fault.Draw(type, sound, random, 1.5, 4, _scenario.Days),
+            Fate.Small => Fault.Draw(type, sound, random, 1.05, 1.5, _scenario.Days),
+            Fate.Repaired => Fault.Draw(type, sound, random, 1.5, 4, _scenario.Days) with
+            {
+                Mode = FaultMode.Before, StartDay = -7.0 * random.Whole(8, 40), RepairDay = Math.Floor(_scenario.Days * random.Between(0.35, 0.75)) + 0.6,
+            },
+            _ => null,
+        };
+        var routes = DrawRoutes(type, random, index);
+        var kmPerWeek = type.KmPerWeek * random.Between(0.75, 1.25);
+        var vehicle = new FleetVehicle
+        {
+            Index = index, Id = $"{(type.IsTrailer ? 'T' : 'V')}{index + 1:D3}", Type = type, Depot = depot, Positions = positions,
+            Sound = sound, Fault = fault, AfterRepair = fate == Fate.Repaired ? Geometry.DrawSound(type, random, 0.2) : null,
+            Sensors = SteeringSensors.Draw(type, Slot(index), random),
+            Routes = routes, KmPerWeek = kmPerWeek, OdometerKm = Math.Floor(kmPerWeek * random.Between(60, 300)),
+            Duty = DrawDuty(type, depot, routes, random),
+            PressureShare = [.. positions.Select(_ => Math.Clamp(-0.02 + 0.03 * random.Normal(), -0.1, 0.06))],
+            DistanceSource = !type.IsTrailer ? "odometer" : random.Chance(0.55) ? "hub_counter" : "none",
+            RegistrationYear = (2017 + random.Whole(0, 8)).ToString(),
+        };
+        if (fate == Fate.Sound && random.Chance(0.45)) LookAlikes.Plant(vehicle, Roads(depot), random);
+        return vehicle;
+    }
+
+    /// <summary>Place of a vehicle among the light, or among the heavy powered, vehicles of the fleet.</summary>
+    private static int Slot(int index)
+    {
+        static bool Light(int i) => VehicleTypes.Mix[i % VehicleTypes.Mix.Length][0].Class is VehicleClass.Car or VehicleClass.Van;
+        static bool Trailer(int i) => VehicleTypes.Mix[i % VehicleTypes.Mix.Length][0].IsTrailer;
+        return Enumerable.Range(0, index).Count(i => !Trailer(i) && Light(i) == Light(index));
+    }
+
+    private static int[] DrawRoutes(VehicleType type, RandomStream random, int index) =>
+        type.Class == VehicleClass.Bus
+            ? [index / 4 % RoadNetwork.Loops]
+            : [RoadNetwork.Loops + (index + random.Whole(0, 2)) % 8, RoadNetwork.Loops + (index + 3 + random.Whole(0, 2)) % 8];
+
+    private Duty DrawDuty(VehicleType type, Depot depot, int[] routes, RandomStream random)
+    {
+        var roads = Roads(depot);
+        return new()
+        {
+            Driver = Math.Exp(random.Within(0.13, 0.3)),
+            Exponent = random.Between(2.0, 2.6),
+            OneWayDeg = type.Class == VehicleClass.Bus ? depot.RoadSide * random.Between(0.04, 0.09) : random.Within(0.01, 0.03),
+            Roll = type.RollShare * random.Between(0.6, 1.4),
+            MeanBank = routes.Average(r => RoadNetwork.MeanBank(roads.Routes[r])) + 0.001 * random.Normal(),
+        };
+    }
+}

@@ -1,0 +1,19 @@
+using System.Text.Json;
+using WearWatch.Benchmarks;
+
+var names = new Dictionary<string, Func<IReadOnlyDictionary<string, object>>>(StringComparer.Ordinal)
+{
+    ["reduction"] = ReductionBenchmark.Run,
+    ["roads"] = RoadsBenchmark.Run,
+};
+var json = args.Contains("--json");
+var unknown = args.FirstOrDefault(a => a.StartsWith('-') && a != "--json");
+if (args.FirstOrDefault(a => !a.StartsWith('-')) is not { } name || unknown is not null || !names.TryGetValue(name, out var run))
+{
+    Console.Error.WriteLine($"usage: benchmarks NAME [--json]; NAME is one of {string.Join(", ", names.Keys)}");
+    return 2;
+}
+var figures = run();
+if (json) Console.WriteLine(JsonSerializer.Serialize(figures, new JsonSerializerOptions { WriteIndented = true }));
+else foreach (var (what, value) in figures) Console.WriteLine($"{what,-44} {value}");
+return 0;

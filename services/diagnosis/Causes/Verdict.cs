@@ -11,6 +11,8 @@ public sealed record Verdict
     /// <summary>Every cause considered, alignment quantities and look-alikes, most probable first.</summary>
     public required IReadOnlyList<Cause> Causes { get; init; }
     public IReadOnlyList<CannotTell> CannotTell { get; init; } = [];
+    /// <summary>What an alignment would save under each story and magnitude, for the cost of waiting; the rest of the probability saves nothing.</summary>
+    public IReadOnlyList<StoryEffect> Effects { get; init; } = [];
 }
 
 /// <param name="Quantity">What.</param>

@@ -1,0 +1,129 @@
+using MathNet.Numerics.Distributions;
+using WearWatch.Diagnosis.Facts;
+using WearWatch.Diagnosis.Statistics;
+using WearWatch.Diagnosis.Wear;
+
+namespace WearWatch.Diagnosis.Causes;
+
+/// <summary>
+/// Evidence that needs no joint law: hand rubs, pressures, shoulder wear, unevenness round the tyre, pull under
+/// braking, what was seen and what drivers said. Each is weighed against what the story predicts for it.
+/// </summary>
+public sealed class SingleReadings
+{
+    /// <summary>Rubs: chance of noting what was not felt, slip at which half the hands catch, and its spread (from memory).</summary>
+    private const double RubError = 0.12, RubThreshold = 0.35, RubSpread = 0.35;
+
+    /// <summary>Chance that whoever walked round noted outward for inward throughout (from memory).</summary>
+    private const double RubSwapped = 0.05;
+
+    /// <summary>Shoulder wear per share of pressure lost, and its rest, as share of the normal rate (from memory).</summary>
+    private const double ShoulderPerShare = 0.9, ShoulderRest = 0.12;
+
+    private const double PressureSd = 0.04, RoundRest = 0.12, RoundUsual = 0.10, BrakeRestNm = 0.35, BrakeDragNm = 1.2;
+
+    /// <summary>Most that all driver reports of one kind may weigh, as a factor.</summary>
+    private const double ReportFactor = 2.0;
+
+    private const int ReportDays = 180;
+
+    private readonly VehicleModel _model;
+    private readonly TyreFigures?[] _tyres;
+    private readonly int _pullsLeft, _pullsRight, _notStraight, _shakes;
+
+    public SingleReadings(VehicleModel model)
+    {
+        _model = model;
+        _tyres = [.. model.Positions.Select(p => model.Figures.At(p))];
+        var recent = model.Figures.DriverReports
+            .Where(r => model.Figures.AsOf.DayNumber - DateOnly.FromDateTime(r.At.UtcDateTime).DayNumber is >= 0 and <= ReportDays)
+            .CountBy(r => r.Symptom).ToDictionary();
+        _pullsLeft = recent.GetValueOrDefault(Symptom.PullsLeft);
+        _pullsRight = recent.GetValueOrDefault(Symptom.PullsRight);
+        _notStraight = recent.GetValueOrDefault(Symptom.WheelNotStraight);
+        _shakes = recent.GetValueOrDefault(Symptom.Shakes);
+    }
+
+    /// <summary>Log likelihood of all of it, up to what every story shares, at the state the joint law was last evaluated at.</summary>
+    public double LogLikelihood(Story? story, double magnitude, JointGaussian joint, ReadOnlySpan<double> state, ReadOnlySpan<double> priorSd)
+    {
+        var sum = Reports(story, joint, state, priorSd) + Brake(story);
+        double straight = 0, swapped = 0;
+        for (var i = 0; i < _tyres.Length; i++)
+        {
+            if (_tyres[i] is not { } tyre) continue;
+            var at = story is not null && story.Axle == tyre.Position.Axle && (story.Side is null || story.Side == tyre.Position.Side);
+            sum += Pressure(tyre, at && story!.Quantity == Quantity.Pressure ? magnitude : 0);
+            var (slip, sd) = joint.ShapeSlip(i, priorSd);
+            sum += Round(tyre, at && story!.Quantity == Quantity.Damper ? magnitude : null, slip);
+            straight += Rubs(tyre.RubsCatchingOutward, tyre.RubsCatchingInward, tyre.RubsCatchingNeither, slip, sd);
+            swapped += Rubs(tyre.RubsCatchingInward, tyre.RubsCatchingOutward, tyre.RubsCatchingNeither, slip, sd);
+        }
+        return sum + straight + Math.Log(1 - RubSwapped + RubSwapped * Math.Exp(swapped - straight));
+    }
+
+    private double Pressure(TyreFigures tyre, double share)
+    {
+        double sum = 0;
+        if (tyre.PressureShare is { } measured)
+            sum += Guarded(measured, share, PressureSd, 0.4);
+        if (tyre.ShoulderMmPer1000Km is { } shoulder)
+            sum += Guarded(shoulder * (1 / Observables.NormalRate(_model, tyre)), -ShoulderPerShare * share, ShoulderRest + 0.4 * Math.Abs(ShoulderPerShare * share), 1.5);
+        return sum;
+    }
+
+    private static double Round(TyreFigures tyre, double? damper, double slip)
+    {
+        double sum = 0;
+        if (tyre.RoundVariationMm is { } round) sum += Guarded(round, damper ?? RoundUsual, RoundRest, 1.5);
+        // Steady slip can start cupping on a free-rolling tyre.
+        var chance = damper is not null ? 0.4 : Math.Abs(slip) > 1.5 ? 0.06 : 0.015;
+        return sum + Math.Log(tyre.Seen.Contains(Seen.Cupped) ? chance : 1 - chance);
+    }
+
+    private static double Rubs(int outward, int inward, int neither, double slip, double sd)
+    {
+        var count = outward + inward + neither;
+        if (count == 0) return 0;
+        var spread = Math.Sqrt(RubSpread * RubSpread + sd * sd);
+        var feltOutward = Normal.CDF(0, 1, (slip - RubThreshold) / spread);
+        var feltInward = Normal.CDF(0, 1, (-slip - RubThreshold) / spread);
+        double Noted(double felt) => Math.Log((1 - RubError) * Math.Max(0, felt) + RubError / 3);
+        var sum = outward * Noted(feltOutward) + inward * Noted(feltInward) + neither * Noted(1 - feltOutward - feltInward);
+        // The same edge felt again is not new evidence in full.
+        return sum / count * (1 + 0.4 * (count - 1));
+    }
+
+    private double Brake(Story? story)
+    {
+        if (_model.Figures.Steering?.BrakePullNm is not { } pull || _model.IsTrailer) return 0;
+        var share = Math.Max(0.3, _model.AssistShare);
+        return Guarded(pull, 0, (story?.Quantity == Quantity.Drag ? BrakeDragNm : BrakeRestNm) * share, 4 * share);
+    }
+
+    private double Reports(Story? story, JointGaussian joint, ReadOnlySpan<double> state, ReadOnlySpan<double> priorSd)
+    {
+        if (_model.IsTrailer || _pullsLeft + _pullsRight + _notStraight + _shakes == 0) return 0;
+        var felt = 0.35 * Math.Max(0.3, _model.AssistShare); // N·m that a driver notices, from memory
+        var (pull, pullSd) = joint.Steering(_model.Torque, state, priorSd);
+        var (angle, angleSd) = joint.Steering(_model.WheelAngle, state, priorSd);
+        var width = Math.Sqrt(felt * felt + pullSd * pullSd);
+        var aside = Math.Sqrt(3 * 3 + angleSd * angleSd);
+        return Weak(_pullsRight, Normal.CDF(0, 1, (pull - felt) / width)) + Weak(_pullsLeft, Normal.CDF(0, 1, (-pull - felt) / width))
+            + Weak(_notStraight, Normal.CDF(0, 1, (Math.Abs(angle) - 5) / aside)) + Weak(_shakes, story?.Quantity == Quantity.Damper ? 1 : 0.2);
+    }
+
+    /// <summary>A report weighs between 1/√2 and √2; more of the same add little.</summary>
+    private static double Weak(int count, double chance) =>
+        count == 0 ? 0 : Math.Log(ReportFactor) * (chance - 0.5) * (1 + 0.3 * Math.Min(3, count - 1));
+
+    /// <summary>Log density with a share of wild readings.</summary>
+    private static double Guarded(Estimate estimate, double expected, double rest, double wildSd)
+    {
+        var variance = rest * rest + estimate.StandardError * estimate.StandardError;
+        var wild = wildSd * wildSd + estimate.StandardError * estimate.StandardError;
+        return Math.Log((1 - Sensitivities.WildShare) * Density(estimate.Value - expected, variance) + Sensitivities.WildShare * Density(estimate.Value, wild));
+    }
+
+    internal static double Density(double departure, double variance) => Math.Exp(-0.5 * departure * departure / variance) / Math.Sqrt(2 * Math.PI * variance);
+}

@@ -1,4 +1,5 @@
 using WearWatch.Diagnosis.Facts;
+using WearWatch.Diagnosis.Statistics;
 using WearWatch.Diagnosis.Wear;
 
 namespace WearWatch.Diagnosis.Rules;
@@ -33,7 +34,7 @@ internal static class CentreOrShoulders
 
     private static Finding Build(VehicleFigures figures, Axle axle, FindingKind kind, int sign, IReadOnlyList<TyreFigures> tyres)
     {
-        var worst = tyres.MaxBy(t => Math.Abs(t.ShoulderMmPer1000Km!.Value.Value))!;
+        var worst = TyreGroup.Worst(tyres, t => t.ShoulderMmPer1000Km)!;
         var (fast, slow) = sign > 0 ? ("shoulders", "centre") : ("centre", "shoulders");
         // Soft tyres carry on their shoulders, hard ones on the centre.
         var pressureFor = tyres.Where(t => RuleLimits.Agrees(t.PressureShare, -sign)).Select(t => PressureOffRule.EvidenceOf(figures, t));
@@ -68,6 +69,10 @@ internal static class TyreGroup
 {
     public static IReadOnlyList<TyreFigures> On(VehicleFigures figures, Axle axle, Func<TyreFigures, bool> condition) =>
         [.. figures.Tyres.Where(t => t.Position.Axle == axle.Number && condition(t)).OrderBy(t => t.Position)];
+
+    /// <summary>Tyre with the largest figure; of equal figures the surer one. Null when none has it.</summary>
+    public static TyreFigures? Worst(IReadOnlyList<TyreFigures> tyres, Func<TyreFigures, Estimate?> figure) =>
+        tyres.Where(t => figure(t) is not null).MaxBy(t => (Math.Abs(figure(t)!.Value.Value), -figure(t)!.Value.StandardError));
 
     public static Side? CommonSide(IReadOnlyList<TyreFigures> tyres) =>
         tyres.All(t => t.Position.Side == tyres[0].Position.Side) ? tyres[0].Position.Side : null;

@@ -25,7 +25,7 @@ public static class FastWearRule
     private static Finding Build(VehicleFigures figures, Axle? axle, IReadOnlyList<TyreFigures> tyres)
     {
         var vehicle = figures.Vehicle;
-        var worst = tyres.MaxBy(t => t.LogRateRatio!.Value.Value)!;
+        var worst = TyreGroup.Worst(tyres, t => t.LogRateRatio)!;
         var ratio = worst.LogRateRatio!.Value;
         var slides = axle is null ? [] : Slides(figures, axle).ToList();
         var rate = worst.RateMmPer1000Km is { } r ? $", {TradeWords.Full(r, 3, TradeWords.PerDistance)}" : "";

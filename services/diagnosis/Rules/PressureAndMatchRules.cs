@@ -29,7 +29,7 @@ public static class PressureOffRule
 
     private static Finding Build(VehicleFigures figures, Axle axle, IReadOnlyList<TyreFigures> tyres, bool low)
     {
-        var worst = tyres.MaxBy(t => Math.Abs(t.PressureShare!.Value.Value))!;
+        var worst = TyreGroup.Worst(tyres, t => t.PressureShare)!;
         var flat = low && -worst.PressureShare!.Value.Value >= RuleLimits.PressureFlat.Value;
         return new Finding
         {
@@ -98,12 +98,12 @@ public static class DepthGapRule
         var (left, right) = (figures.At(new(axle.Number, Side.Left, dual))!, figures.At(new(axle.Number, Side.Right, dual))!);
         var shallow = gap.Value < 0 ? Side.Left : Side.Right;
         var law = BreaksLaw(figures, gap) ? $", beyond the {TradeWords.Number(RuleLimits.AxleGapFrance.Value, 0)} mm that French law allows" : $"; makers allow {TradeWords.Number(RuleLimits.AxleGap.Value, 0)} mm before an alignment check";
-        return Build(figures, axle, shallow, gap, [left, right],
+        return Build(figures, axle, null, gap, [left, right],
             $"The {TradeWords.Tyres(figures.Vehicle, axle.Number, dual)} differ in depth by {TradeWords.Full(gap * Witnesses.SignOf(gap.Value), 1, "mm")}, the {shallow.Word()} being shallower{law}.",
             [new("One tyre was fitted later than its mate", "Fitting records"), new("The gap itself can pull the vehicle and lean the axle", "Match the tyres, then judge pull and camber")]);
     }
 
-    private static Finding Build(VehicleFigures figures, Axle axle, Side side, Estimate gap, IReadOnlyList<TyreFigures> pair, string sentence, IReadOnlyList<Confounder> confounders) => new()
+    private static Finding Build(VehicleFigures figures, Axle axle, Side? side, Estimate gap, IReadOnlyList<TyreFigures> pair, string sentence, IReadOnlyList<Confounder> confounders) => new()
     {
         Kind = FindingKind.DepthGap,
         Axle = axle.Number,

@@ -32,7 +32,7 @@ public static class CuppingRule
 
     private static Finding Build(VehicleFigures figures, Axle axle, IReadOnlyList<TyreFigures> tyres)
     {
-        var worst = tyres.Where(t => t.RoundVariationMm is not null).MaxBy(t => t.RoundVariationMm!.Value.Value);
+        var worst = TyreGroup.Worst(tyres, t => t.RoundVariationMm);
         var what = tyres.Any(t => t.Seen.Contains(Seen.Cupped)) ? "cupping was seen" : "the depth varies round the tyre";
         var figure = worst is null ? "; how many mm it varies round the tyre was not measured" : $", standard deviation {TradeWords.Full(worst.RoundVariationMm!.Value, 2, "mm")}";
         var freeRolling = !axle.Driven && !axle.Steered && !figures.Vehicle.IsFront(axle.Number);
@@ -87,7 +87,7 @@ public static class DiagonalWearRule
 
     private static Finding Build(VehicleFigures figures, Axle axle, IReadOnlyList<TyreFigures> tyres)
     {
-        var worst = tyres.MaxBy(t => t.RoundVariationMm!.Value.Value)!;
+        var worst = TyreGroup.Worst(tyres, t => t.RoundVariationMm)!;
         return new Finding
         {
             Kind = FindingKind.DiagonalWear,

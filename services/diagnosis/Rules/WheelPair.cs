@@ -47,8 +47,9 @@ public sealed record WheelPair(int Axle, Dual Dual, TyreFigures? Left, TyreFigur
     /// <summary>Direction the axle seems to point in, positive to the left; null unless both were measured.</summary>
     public Estimate? Direction => LeftFigure is { } l && RightFigure is { } r ? (r - l) * 0.5 : null;
 
-    /// <summary>Side with the larger figure.</summary>
-    public Side WorseSide => RightFigure is not { } r || (LeftFigure is { } l && Math.Abs(l.Value) >= Math.Abs(r.Value)) ? Side.Left : Side.Right;
+    /// <summary>Side with the larger figure; of equal figures the surer one.</summary>
+    public Side WorseSide =>
+        RightFigure is not { } r || (LeftFigure is { } l && (Math.Abs(l.Value), -l.StandardError).CompareTo((Math.Abs(r.Value), -r.StandardError)) >= 0) ? Side.Left : Side.Right;
 
     public Estimate? Worse => WorseSide == Side.Left ? LeftFigure : RightFigure;
     public Estimate? Mate => WorseSide == Side.Left ? RightFigure : LeftFigure;
@@ -84,7 +85,8 @@ public sealed record WheelPair(int Axle, Dual Dual, TyreFigures? Left, TyreFigur
     private bool MateJoins(Estimate worse) =>
         Mate is { } mate
         && Math.Abs(mate.Value) >= RuleLimits.MateShare.Value * Math.Abs(worse.Value)
-        && RuleLimits.Agrees(mate, mate.Value);
+        && RuleLimits.Agrees(mate, mate.Value)
+        && RuleLimits.Agrees(worse, worse.Value);
 }
 
 /// <summary>Feather of one tyre from its measured rib edges and the hand rubs together.</summary>

@@ -20,6 +20,8 @@ public sealed record StraightRun
     public required double SpeedKmH { get; init; }
     /// <summary>Torque at the wheel that held the vehicle straight (torsion bar plus assist where logged), N·m, + left.</summary>
     public Estimate? TorqueNm { get; init; }
+    /// <summary>The torque is driver plus assist; false where it is the torsion bar alone.</summary>
+    public bool TorqueIncludesAssist { get; init; }
     /// <summary>Steering-wheel angle, deg, + left.</summary>
     public Estimate? AngleDeg { get; init; }
     /// <summary>Lateral acceleration less speed × yaw rate, over g: sine of the bank plus the sensor's bias; + left side higher.</summary>

@@ -1,0 +1,152 @@
+namespace WearWatch.Diagnosis.Steering;
+
+/// <summary>Where the yaw sensor's zero was taken from.</summary>
+public enum YawZero
+{
+    /// <summary>No yaw rate.</summary>
+    None,
+    /// <summary>The vehicle stood still.</summary>
+    Standstill,
+    /// <summary>It never stood: mean of its straight driving, taken to lead nowhere in the long run.</summary>
+    StraightDriving,
+    /// <summary>Too little of either: left as it is.</summary>
+    NotTaken,
+}
+
+/// <summary>Blocks with what the gates say of each.</summary>
+internal sealed class GatedStream
+{
+    private const int NoRun = -1;
+    private const int LeastStraightBlocks = 60; // from memory: a minute of straight road
+
+    private readonly int[] _mode;
+
+    private GatedStream(Blocks blocks)
+    {
+        Blocks = blocks;
+        _mode = new int[blocks.Count];
+        Slope = SpeedSlope(blocks);
+    }
+
+    public Blocks Blocks { get; }
+    /// <summary>Change of speed over two seconds to either side, m/s²; an accelerometer would feel the grade too.</summary>
+    public float[] Slope { get; }
+    public YawZero YawZero { get; private set; } = YawZero.None;
+    /// <summary>deg/s.</summary>
+    public double YawBiasDegS { get; private set; }
+    public double LaneKeepingSeconds { get; private set; }
+
+    public RunMode? Mode(int block) => _mode[block] == NoRun ? null : (RunMode)_mode[block];
+
+    public void Drop(int block) => _mode[block] = NoRun;
+
+    public float Yaw(int block) =>
+        Blocks.Has(SteeringChannel.YawRate) ? Blocks.Mean(SteeringChannel.YawRate)[block] - (float)YawBiasDegS : float.NaN;
+
+    public static GatedStream Of(Blocks blocks)
+    {
+        var stream = new GatedStream(blocks);
+        stream.TakeStandstillBias();
+        stream.Gate();
+        if (stream.YawZero == YawZero.NotTaken && stream.TakeStraightBias()) stream.Gate();
+        return stream;
+    }
+
+    private void TakeStandstillBias()
+    {
+        if (!Blocks.Has(SteeringChannel.YawRate)) return;
+        YawZero = YawZero.NotTaken;
+        var still = new List<double>();
+        if (!Blocks.Has(SteeringChannel.Speed)) return;
+        var fastest = Blocks.Max(SteeringChannel.Speed);
+        var yaw = Blocks.Mean(SteeringChannel.YawRate);
+        for (var i = 0; i < Blocks.Count; i++)
+            if (fastest[i] <= StraightGates.StandstillKmH && !float.IsNaN(yaw[i])) still.Add(yaw[i]);
+        if (still.Count < StraightGates.StandstillBlocks) return;
+        (YawZero, YawBiasDegS) = (YawZero.Standstill, RobustMean.Huber(still.ToArray()));
+    }
+
+    private bool TakeStraightBias()
+    {
+        var yaw = Blocks.Mean(SteeringChannel.YawRate);
+        var straight = new List<double>();
+        for (var i = 0; i < Blocks.Count; i++)
+            if (_mode[i] != NoRun && !float.IsNaN(yaw[i])) straight.Add(yaw[i]);
+        if (straight.Count < LeastStraightBlocks) return false;
+        (YawZero, YawBiasDegS) = (YawZero.StraightDriving, RobustMean.Huber(straight.ToArray()));
+        return true;
+    }
+
+    private void Gate()
+    {
+        Array.Fill(_mode, NoRun);
+        LaneKeepingSeconds = 0;
+        if (!Blocks.Has(SteeringChannel.Speed)) return;
+        var (hasYaw, hasAngle) = (Blocks.Has(SteeringChannel.YawRate), Blocks.Has(SteeringChannel.SteeringWheelAngle));
+        if (!hasYaw && !hasAngle) return;
+        var middle = hasYaw ? 0 : MedianAngleMoving();
+        var lane = Blocks.Max(SteeringChannel.LaneKeeping);
+        var least = Blocks.Min(SteeringChannel.SteeringWheelAngle);
+        var most = Blocks.Max(SteeringChannel.SteeringWheelAngle);
+        var driven = DriveThreshold();
+        for (var i = 0; i < Blocks.Count; i++)
+        {
+            var lateral = hasYaw
+                ? Math.Abs(Yaw(i)) < StraightGates.YawRateDegS
+                : Math.Abs(Blocks.Mean(SteeringChannel.SteeringWheelAngle)[i] - middle) < StraightGates.AngleFromMedianDeg;
+            if (!lateral) continue;
+            if (hasAngle && (most[i] - least[i]) / Blocks.Seconds[i] > StraightGates.SteeringRateDegS) continue;
+            var mode = LongitudinalMode(i, driven);
+            if (mode == NoRun) continue;
+            if (!lane.IsEmpty && lane[i] > 0) { LaneKeepingSeconds += Blocks.Seconds[i]; continue; }
+            _mode[i] = mode;
+        }
+    }
+
+    private int LongitudinalMode(int i, float driven)
+    {
+        var speed = Blocks.Mean(SteeringChannel.Speed)[i];
+        var braking = Blocks.Has(SteeringChannel.Brake) && Blocks.Max(SteeringChannel.Brake)[i] > 0;
+        if (braking)
+            return speed > StraightGates.BrakingSpeedKmH && Math.Abs(Slope[i]) <= StraightGates.BrakeAcceleration ? (int)RunMode.Brake : NoRun;
+        if (!(speed > StraightGates.SpeedKmH)) return NoRun;
+        if (Slope[i] > StraightGates.SteadyAcceleration) return Slope[i] <= StraightGates.DriveAcceleration ? (int)RunMode.Drive : NoRun;
+        if (!(Slope[i] >= -StraightGates.SteadyAcceleration)) return NoRun;
+        var drive = Blocks.Mean(SteeringChannel.DriveTorque);
+        return !drive.IsEmpty && drive[i] > driven ? (int)RunMode.Drive : (int)RunMode.Coast;
+    }
+
+    private float DriveThreshold()
+    {
+        var most = 0f;
+        foreach (var torque in Blocks.Mean(SteeringChannel.DriveTorque)) if (torque > most) most = torque;
+        return most > 0 ? StraightGates.DriveTorqueShare * most : float.PositiveInfinity;
+    }
+
+    private float MedianAngleMoving()
+    {
+        var speed = Blocks.Mean(SteeringChannel.Speed);
+        var angle = Blocks.Mean(SteeringChannel.SteeringWheelAngle);
+        var moving = new List<double>();
+        for (var i = 0; i < Blocks.Count; i++)
+            if (speed[i] > StraightGates.SpeedKmH && !float.IsNaN(angle[i])) moving.Add(angle[i]);
+        moving.Sort();
+        return (float)RobustMean.Median(moving.ToArray());
+    }
+
+    private static float[] SpeedSlope(Blocks blocks)
+    {
+        var slope = new float[blocks.Count];
+        if (!blocks.Has(SteeringChannel.Speed)) return slope;
+        var speed = blocks.Mean(SteeringChannel.Speed);
+        for (var i = 0; i < slope.Length; i++)
+        {
+            var (from, to) = (i, i);
+            while (from > i - 2 && from > 0 && blocks.Joined[from]) from--;
+            while (to < i + 2 && to + 1 < slope.Length && blocks.Joined[to + 1]) to++;
+            var seconds = (blocks.StartTicks[to] - blocks.StartTicks[from]) / (double)TimeSpan.TicksPerSecond;
+            slope[i] = seconds > 0 ? (float)((speed[to] - speed[from]) / 3.6 / seconds) : 0;
+        }
+        return slope;
+    }
+}

@@ -1,0 +1,170 @@
+using WearWatch.Diagnosis.Statistics;
+
+namespace WearWatch.Diagnosis.Steering;
+
+/// <summary>What one stream comes to.</summary>
+public sealed record StreamReduction(IReadOnlyList<StraightRun> Runs, VehicleSteeringStudy Study);
+
+/// <summary>From samples to straight runs: one pass to one-second block means, then gates, then robust means.</summary>
+public static class RunReduction
+{
+    private const int LeastSlopeBlocks = 60; // from memory: a minute of straight road
+
+    public static IReadOnlyList<StraightRun> Reduce(string vehicleId, string streamId, IReadOnlyList<(long Sequence, SteeringColumns Columns)> chunks, ReductionVehicle vehicle) =>
+        ReduceStream(vehicleId, streamId, chunks, vehicle).Runs;
+
+    /// <summary>
+    /// Reduces one stream (one trip). Its chunks may come in any order; a repeated sequence counts once.
+    /// <c>scalar</c> takes the scalar twin of the block pass, for tests and benchmarks.
+    /// </summary>
+    public static StreamReduction ReduceStream(string vehicleId, string streamId, IReadOnlyList<(long Sequence, SteeringColumns Columns)> chunks, ReductionVehicle vehicle, bool scalar = false)
+    {
+        var blocks = Blocks.Of(chunks, scalar);
+        var frozen = SignalFaults.BlankFrozen(blocks);
+        var stream = GatedStream.Of(blocks);
+        var compensation = blocks.Has(SteeringChannel.DriverTorque) && PullCompensation.Recognised(stream);
+        if (compensation) PullCompensation.DropAfterTurns(stream);
+        var reader = new RunReader(vehicleId, streamId, stream, vehicle, TotalTorque(blocks, compensation), AngleSlope(stream, vehicle));
+        var runs = new List<StraightRun>();
+        foreach (var (from, to) in Stretches(stream)) runs.Add(reader.Read(from, to));
+        return new(runs, StreamStudy.Of(vehicleId, stream, runs, frozen, compensation));
+    }
+
+    /// <summary>Driver plus assist where the stream has both; NaN where either is missing. The torsion bar alone under pull compensation tells nothing.</summary>
+    private static float[]? TotalTorque(Blocks blocks, bool compensation)
+    {
+        if (!blocks.Has(SteeringChannel.DriverTorque)) return null;
+        var total = blocks.Mean(SteeringChannel.DriverTorque).ToArray();
+        if (!blocks.Has(SteeringChannel.AssistTorque)) return compensation ? null : total;
+        var assist = blocks.Mean(SteeringChannel.AssistTorque);
+        for (var i = 0; i < total.Length; i++) total[i] += assist[i];
+        return total;
+    }
+
+    /// <summary>Stretches of one mode without a gap, cut evenly to at most 30 s, none shorter than 5 s.</summary>
+    private static IEnumerable<(int From, int To)> Stretches(GatedStream stream)
+    {
+        var blocks = stream.Blocks;
+        for (var from = 0; from < blocks.Count;)
+        {
+            var mode = stream.Mode(from);
+            var to = from + 1;
+            while (to < blocks.Count && blocks.Joined[to] && stream.Mode(to) == mode) to++;
+            if (mode is not null)
+            {
+                var seconds = blocks.Seconds.AsSpan(from, to - from).ToArray().Sum();
+                var parts = (int)Math.Ceiling(seconds / StraightGates.LongestRunS - 1e-6);
+                if (seconds >= StraightGates.ShortestRunS - 1e-3)
+                    for (var p = 0; p < parts; p++)
+                        yield return (from + (int)((long)(to - from) * p / parts), from + (int)((long)(to - from) * (p + 1) / parts));
+            }
+            from = to;
+        }
+    }
+
+    /// <summary>
+    /// Angle per yaw rate where ratio or wheelbase is unknown, s: least squares over the straight blocks. Noise of the yaw rate
+    /// makes it somewhat small, which leaves a little curvature in the angle.
+    /// </summary>
+    private static double? AngleSlope(GatedStream stream, ReductionVehicle vehicle)
+    {
+        if (vehicle is { WheelbaseM: not null, SteeringRatio: not null }) return null;
+        var angle = stream.Blocks.Mean(SteeringChannel.SteeringWheelAngle);
+        if (angle.IsEmpty) return null;
+        var (n, sx, sy, sxx, sxy) = (0, 0.0, 0.0, 0.0, 0.0);
+        for (var i = 0; i < stream.Blocks.Count; i++)
+        {
+            double x = stream.Yaw(i), y = angle[i];
+            if (stream.Mode(i) is null || double.IsNaN(x) || double.IsNaN(y)) continue;
+            n++;
+            (sx, sy, sxx, sxy) = (sx + x, sy + y, sxx + x * x, sxy + x * y);
+        }
+        var spread = sxx - sx * sx / Math.Max(n, 1);
+        return n < LeastSlopeBlocks || !(spread > 0) ? null : (sxy - sx * sy / n) / spread;
+    }
+}
+
+/// <summary>Turns a stretch of blocks into a run.</summary>
+internal sealed class RunReader(string vehicleId, string streamId, GatedStream stream, ReductionVehicle vehicle, float[]? torque, double? angleSlope)
+{
+    private readonly double[] _scratch = new double[(int)(2 * StraightGates.LongestRunS) + 2];
+
+    public StraightRun Read(int from, int to)
+    {
+        var blocks = stream.Blocks;
+        var middle = (from + to) / 2;
+        return new()
+        {
+            VehicleId = vehicleId,
+            StreamId = streamId,
+            Sequence = blocks.Sequence[from],
+            Start = new DateTimeOffset(blocks.StartTicks[from], TimeSpan.Zero),
+            Seconds = Sum(blocks.Seconds, from, to),
+            Mode = stream.Mode(from)!.Value,
+            SpeedKmH = Average(blocks.Mean(SteeringChannel.Speed), from, to)!.Value,
+            TorqueNm = torque is null ? null : Robust(from, to, i => torque[i], TorqueResolution(), SteeringChannel.DriverTorque),
+            TorqueIncludesAssist = blocks.Has(SteeringChannel.AssistTorque),
+            AngleDeg = blocks.Has(SteeringChannel.SteeringWheelAngle)
+                ? Robust(from, to, StraightAngle, blocks.Resolution(SteeringChannel.SteeringWheelAngle), SteeringChannel.SteeringWheelAngle) : null,
+            BankReading = blocks.Has(SteeringChannel.LateralAcceleration) && blocks.Has(SteeringChannel.YawRate)
+                ? Robust(from, to, Bank, blocks.Resolution(SteeringChannel.LateralAcceleration) / SteeringEquations.Gravity, SteeringChannel.LateralAcceleration) : null,
+            YawRateDegS = blocks.Has(SteeringChannel.YawRate) ? Average(blocks.Mean(SteeringChannel.YawRate), from, to) - stream.YawBiasDegS : null,
+            LoadKg = Average(blocks.Mean(SteeringChannel.Load), from, to),
+            RoadCell = RoadCell.Of(Position(from, to, 1), Position(middle, to, 1), Position(to - 1, from - 1, -1)),
+        };
+    }
+
+    private double TorqueResolution() => Math.Max(stream.Blocks.Resolution(SteeringChannel.DriverTorque), stream.Blocks.Resolution(SteeringChannel.AssistTorque));
+
+    /// <summary>Wheel angle less what the road's curvature takes, deg.</summary>
+    private double StraightAngle(int i)
+    {
+        double angle = stream.Blocks.Mean(SteeringChannel.SteeringWheelAngle)[i], yaw = stream.Yaw(i);
+        if (double.IsNaN(yaw)) return stream.YawZero == YawZero.None ? angle : double.NaN;
+        if (vehicle is { WheelbaseM: { } wheelbase, SteeringRatio: { } ratio })
+            return angle - SteeringEquations.CurvatureAngle(ratio, wheelbase, SpeedMs(i), yaw, vehicle.UndersteerRadPerG);
+        return angle - (angleSlope ?? 0) * yaw;
+    }
+
+    private double Bank(int i) =>
+        SteeringEquations.SineOfBank(stream.Blocks.Mean(SteeringChannel.LateralAcceleration)[i], SpeedMs(i), stream.Yaw(i) * Math.PI / 180);
+
+    private double SpeedMs(int i) => stream.Blocks.Mean(SteeringChannel.Speed)[i] / 3.6;
+
+    private Estimate? Robust(int from, int to, Func<int, double> value, double resolution, SteeringChannel channel)
+    {
+        var least = stream.Blocks.Min(channel);
+        var most = stream.Blocks.Max(channel);
+        var (lo, hi, samples) = (double.PositiveInfinity, double.NegativeInfinity, 0);
+        for (var i = from; i < to; i++)
+        {
+            _scratch[i - from] = value(i);
+            lo = Math.Min(lo, least[i]);
+            hi = Math.Max(hi, most[i]);
+            samples += stream.Blocks.Samples[i];
+        }
+        return RobustMean.Of(_scratch.AsSpan(0, to - from), resolution, hi - lo, samples);
+    }
+
+    private (double, double) Position(int from, int end, int step)
+    {
+        for (var i = from; i != end; i += step)
+            if (double.IsFinite(stream.Blocks.Latitude[i]) && double.IsFinite(stream.Blocks.Longitude[i])) return (stream.Blocks.Latitude[i], stream.Blocks.Longitude[i]);
+        return (double.NaN, double.NaN);
+    }
+
+    private static double Sum(ReadOnlySpan<float> values, int from, int to)
+    {
+        var sum = 0.0;
+        foreach (var x in values[from..to]) sum += x;
+        return sum;
+    }
+
+    private static double? Average(ReadOnlySpan<float> values, int from, int to)
+    {
+        if (values.IsEmpty) return null;
+        var (sum, n) = (0.0, 0);
+        foreach (var x in values[from..to]) if (!float.IsNaN(x)) (sum, n) = (sum + x, n + 1);
+        return n == 0 ? null : sum / n;
+    }
+}

@@ -1,11 +1,7 @@
-using System.Globalization;
-using Google.Protobuf;
-using Google.Protobuf.WellKnownTypes;
 using Microsoft.Extensions.Logging;
 using Npgsql;
 using WearWatch.Diagnosis.Causes;
 using WearWatch.Diagnosis.Money;
-using WearWatch.Diagnosis.Roads;
 using WearWatch.Diagnosis.Rules;
 using WearWatch.Diagnosis.Tread;
 using WearWatch.Diagnosis.Wear;

@@ -1,0 +1,64 @@
+using WearWatch.Diagnosis.Facts;
+
+namespace WearWatch.Diagnosis.Wear;
+
+/// <summary>Where the fittings of each position begin, as recorded; inferred ones are added while reading.</summary>
+internal sealed class FittingCuts
+{
+    /// <summary>One beginning.</summary>
+    /// <param name="Survey">First survey that belongs to it (the count of surveys before).</param>
+    /// <param name="Record">The record behind it; null at the first and at inferred ones.</param>
+    /// <param name="Km">Distance of the record.</param>
+    public sealed record Cut(int Survey, FittingRecord? Record, double? Km);
+
+    private readonly Dictionary<Position, List<Cut>> _cuts = [];
+    private readonly Dictionary<string, Tyre> _tyres;
+
+    public FittingCuts(VehicleTread tread, IReadOnlyList<StoredSurvey> surveys, IReadOnlyList<FittingRecord> records, DistanceAxis axis)
+    {
+        _tyres = tread.Tyres.GroupBy(t => t.TyreId).ToDictionary(g => g.Key, g => g.First());
+        foreach (var position in tread.Vehicle.Positions()) _cuts[position] = [new Cut(0, null, null)];
+        foreach (var record in records)
+        {
+            var before = surveys.TakeWhile(s => s.Survey.At < record.At).Count();
+            Add(record.Position, new Cut(before, record, axis.At(record.At).Value));
+            // A move empties the place the tyre came from; what is there afterwards is another tyre.
+            if (record.Event == FittingEvent.Moved && record.FromPosition is { } from && !records.Any(r => r.Position == from && r.At >= record.At && r.At <= record.At.AddDays(2)))
+                Add(from, new Cut(before, null, axis.At(record.At).Value));
+        }
+    }
+
+    public IReadOnlyList<Cut> At(Position position) => _cuts[position];
+
+    /// <summary>Adds a beginning; of two at one survey the later record counts.</summary>
+    public void Add(Position position, Cut cut)
+    {
+        if (!_cuts.TryGetValue(position, out var list)) return;
+        if (cut.Record is null && list.Any(c => c.Survey == cut.Survey)) return;
+        list.RemoveAll(c => c.Survey == cut.Survey);
+        list.Add(cut);
+        list.Sort((a, b) => a.Survey.CompareTo(b.Survey));
+    }
+
+    /// <summary>Index of the fitting that a survey falls in.</summary>
+    public int Of(Position position, int survey) => _cuts[position].FindLastIndex(c => c.Survey <= survey);
+
+    public Tyre? Tyre(string? id) => id is not null && _tyres.TryGetValue(id, out var tyre) ? tyre : null;
+
+    /// <summary>The record that says which tyre is on a position in a fitting: a tyre moved or turned is still the one it was.</summary>
+    public FittingRecord? Identity(Position position, int index)
+    {
+        for (var depth = 0; depth < 8 && index >= 0; depth++)
+        {
+            var record = _cuts[position][index].Record;
+            if (record is null or { TyreId: not null } or { NewDepthMm: not null } or { Event: FittingEvent.Fitted or FittingEvent.Removed }) return record;
+            if (record is { Event: FittingEvent.Moved, FromPosition: { } from } && _cuts.TryGetValue(from, out var there))
+                (index, position) = (there.FindLastIndex(c => c.Survey <= _cuts[position][index].Survey && (c.Record is null || c.Record.At < record.At) && c.Survey < Math.Max(1, _cuts[position][index].Survey)), from);
+            else index--;
+        }
+        return null;
+    }
+
+    /// <summary>Depth when new of the tyre of a fitting, mm; null where nobody recorded it.</summary>
+    public double? NewDepth(Position position, int index) => Identity(position, index) is { Event: not FittingEvent.Removed } r ? r.NewDepthMm ?? Tyre(r.TyreId)?.NewDepthMm : null;
+}

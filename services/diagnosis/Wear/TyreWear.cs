@@ -1,0 +1,164 @@
+using WearWatch.Diagnosis.Facts;
+using WearWatch.Diagnosis.Statistics;
+using WearWatch.Diagnosis.Tread;
+
+namespace WearWatch.Diagnosis.Wear;
+
+/// <summary>Figures of the tyre now on one position.</summary>
+internal sealed class TyreWear(VehicleTread vehicle, FleetWear fleet, DateOnly asOf, VehicleHistory history, IReadOnlyList<(Estimate Bias, int Reader)> biases)
+{
+    /// <summary>What a tyre of unknown past may have gathered of one-edge wear elsewhere, mm per mm of loss (from memory).</summary>
+    private const double PastEdgePerMm = 0.12, PastShoulderPerMm = 0.15;
+
+    /// <summary>A warm tyre reads about this much above its cold pressure (common practice, no source).</summary>
+    private const double WarmFactor = 1.12;
+
+    /// <summary>Standard error of a pressure reading, share: gauge, and temperature beyond what 'warm' tells (from memory).</summary>
+    private const double PressureSd = 0.025, WarmSd = 0.04;
+
+    public TyreFigures Figures(Fitting fitting)
+    {
+        var normal = fleet.For(vehicle.Vehicle, fitting.Position);
+        var winter = fitting.Winter;
+        var limit = DepthLimits.For(vehicle.Depot.Jurisdiction, vehicle.Vehicle, fitting.Position, winter, asOf, vehicle.Limits);
+        var figures = new TyreFigures
+        {
+            Position = fitting.Position,
+            TyreId = fitting.TyreId,
+            Pattern = fitting.Pattern,
+            NewDepthMm = fitting.NewDepthMm,
+            LimitMm = limit.LimitMm,
+            LimitSource = limit.Source,
+        };
+        if (fitting.Points.Count == 0) return figures;
+        var lines = FittingLines.Fit(fitting.LinePoints, fleet.Noise, s => biases[s], normal.RateMmPer1000Km);
+        var own = lines.Rate(fleet.Noise);
+        var (rate, logSd) = RatePosterior.Of(own, normal);
+        var shaped = WithUnknownStart(fitting, rate) is { } start ? FittingLines.Fit([start, .. fitting.Points], fleet.Noise, s => biases[s], normal.RateMmPer1000Km) : lines;
+        var edge = shaped.EdgeRate(fleet.Noise);
+        var shoulder = shaped.ShoulderRate(fleet.Noise);
+        var alone = RatePosterior.Of(null, normal).LogSd;
+        var last = fitting.Points[^1];
+        return Hand(Depth(figures, fitting, limit, normal, rate, edge, shoulder), fitting) with
+        {
+            SurveyIds = [.. fitting.Points.Select(p => history.Surveys[p.Survey].SurveyId)],
+            RateMmPer1000Km = rate,
+            RateBorrowed = own is null || logSd * logSd > 0.5 * alone * alone,
+            LogRateRatio = RatePosterior.LogRatio(own, normal),
+            EdgeSlopeMmPer1000Km = Beyond(edge, normal.EdgePerMm, rate),
+            ShoulderMmPer1000Km = Beyond(shoulder, normal.ShoulderPerMm, rate),
+            RoundVariationMm = last.Shape?.RoundVariationMm,
+            FeatherMm = fitting.Points.LastOrDefault(p => p.Shape?.FeatherMm is not null)?.Shape!.FeatherMm,
+        };
+    }
+
+    /// <summary>
+    /// Where the start was not recorded but the new depth is known, the tyre lay flat when new: its shape now has grown
+    /// over the loss so far, at places and under conditions unknown, which the error allows for.
+    /// </summary>
+    private static FittingPoint? WithUnknownStart(Fitting fitting, Estimate rate)
+    {
+        if (fitting.Start is not null || fitting.NewDepthMm is not { } n) return null;
+        var first = fitting.Points[0];
+        var loss = n - first.Mean.Value;
+        if (loss < 1) return null;
+        return new FittingPoint
+        {
+            Survey = -1,
+            Km = first.Km - loss / rate.Value * 1000,
+            KmSd = loss / rate.Value * 1000 * rate.StandardError / rate.Value,
+            Mean = new(n, TreadShape.NewDepthSdMm),
+            Edge = new(0, Math.Sqrt(0.15 * 0.15 + PastEdgePerMm * loss * PastEdgePerMm * loss)),
+            Shoulder = new(0, Math.Sqrt(0.3 * 0.3 + PastShoulderPerMm * loss * PastShoulderPerMm * loss)),
+        };
+    }
+
+    private static Estimate? Beyond(Estimate? slope, Estimate normalPerMm, Estimate rate) =>
+        slope is { } s ? s - new Estimate(normalPerMm.Value * rate.Value, Math.Abs(normalPerMm.StandardError * rate.Value)) : null;
+
+    private TyreFigures Depth(TyreFigures figures, Fitting fitting, DepthLimit limit, NormalWear normal, Estimate rate, Estimate? edge, Estimate? shoulder)
+    {
+        var last = fitting.Points[^1];
+        var resolution = history.Surveys[last.Survey].Survey.ResolutionMm;
+        var readingSd = Math.Sqrt(GaugeNoise.ReadingVariance(GaugeNoise.RepeatSdMm, resolution));
+        if (last.Readings is null || DepthLimits.Judge(limit, last.Readings.Depths) is not { } judged) return figures;
+        var bias = fleet.BiasOf(history.Surveys[last.Survey].Survey).StandardError;
+        var edgeTotal = Shrunk(edge, normal.EdgePerMm, normal.EdgeBetweenSd, rate.Value);
+        var shoulderTotal = Shrunk(shoulder, normal.ShoulderPerMm, normal.ShoulderBetweenSd, rate.Value);
+        var until = Grooves(fitting, limit).Select(g => ToLimit(fitting, g, rate, edgeTotal, shoulderTotal, limit.LimitMm)).OfType<Interval>().OrderBy(i => i.Value).ToList();
+        return figures with
+        {
+            RemainingMm = new(judged.GoverningMm, Math.Sqrt(readingSd * readingSd + bias * bias)),
+            GoverningGroove = judged.Groove,
+            RemainingKm = !judged.Legal ? new Interval(0, 0, 0) : until.Count > 0 ? until[0] : null,
+        };
+    }
+
+    private static IEnumerable<int> Grooves(Fitting fitting, DepthLimit limit)
+    {
+        var shape = fitting.Points[^1].Shape!;
+        var outside = limit.Judged is BandJudgement.LeastOfCentralThreeQuarters or BandJudgement.LeastOfThreeQuartersBand && shape.Grooves >= 8;
+        return shape.ByGroove.Select(g => g.Groove).Where(g => !outside || (g != 1 && g != shape.Grooves));
+    }
+
+    /// <summary>Own shape rate pulled towards the normal one, with room for a fault.</summary>
+    private static Estimate Shrunk(Estimate? own, Estimate normalPerMm, double betweenSd, double rate)
+    {
+        var prior = new Estimate(normalPerMm.Value * rate, rate * Math.Sqrt(betweenSd * betweenSd + 0.2 * 0.2));
+        if (own is not { } o) return prior;
+        var (a, b) = (1 / (prior.StandardError * prior.StandardError), 1 / (o.StandardError * o.StandardError));
+        return new((a * prior.Value + b * o.Value) / (a + b), 1 / Math.Sqrt(a + b));
+    }
+
+    /// <summary>Depth of one groove now, from all its readings brought forward at its own rate, and the distance from there to the limit.</summary>
+    private Interval? ToLimit(Fitting fitting, int groove, Estimate rate, Estimate edge, Estimate shoulder, double limitMm)
+    {
+        var last = fitting.Points[^1];
+        var grooves = last.Shape!.Grooves;
+        var u = groove == 0 ? 0 : TreadShape.Across(groove, grooves);
+        var q = groove == 0 || grooves < 3 ? 0 : u * u - TreadShape.MeanSquareAcross(grooves);
+        var own = Math.Max(rate.Value + edge.Value * u / 2 + shoulder.Value * q, 0.2 * rate.Value);
+        var error = Math.Sqrt(Square(rate.StandardError) + Square(edge.StandardError * u / 2) + Square(shoulder.StandardError * q));
+        double sum = 0, weights = 0, gaps = 0;
+        foreach (var p in fitting.Points)
+        {
+            if (p.Shape!.ByGroove.FirstOrDefault(g => g.Groove == groove) is not { Places: > 0 } mean) continue;
+            var survey = history.Surveys[p.Survey].Survey;
+            var bias = fleet.BiasOf(survey);
+            var gap = (last.Km - p.Km) / 1000;
+            var variance = (GaugeNoise.ReadingVariance(GaugeNoise.RepeatSdMm, survey.ResolutionMm) * Square(fleet.Noise.MeanScale) / mean.Places + Square(bias.StandardError) + Square(error * gap)) / p.Weight;
+            sum += (mean.DepthMm - bias.Value - own * gap) / variance;
+            weights += 1 / variance;
+            gaps += gap / variance;
+        }
+        if (weights <= 0) return null;
+        // A common part of the readers' biases stays whatever the number of readings.
+        var depth = new Estimate(sum / weights, Math.Sqrt(1 / weights + Square(error * gaps / weights) + 0.05 * 0.05));
+        return RemainingDistance.Of(depth, new(own, error), limitMm);
+    }
+
+    private TyreFigures Hand(TyreFigures figures, Fitting fitting)
+    {
+        var last = fitting.Points[^1];
+        var rubs = fitting.Points.Select(p => p.Readings?.HandRub ?? HandRub.NotTaken).ToList();
+        return figures with
+        {
+            RubsCatchingOutward = rubs.Count(r => r == HandRub.CatchesOutward),
+            RubsCatchingInward = rubs.Count(r => r == HandRub.CatchesInward),
+            RubsCatchingNeither = rubs.Count(r => r == HandRub.Neither),
+            Seen = last.Readings?.Seen ?? [],
+            PressureShare = Pressure(fitting),
+        };
+    }
+
+    private Estimate? Pressure(Fitting fitting)
+    {
+        if (vehicle.Vehicle.AxleAt(fitting.Position.Axle)?.PressureKpa is not { } set || !(set > 0)) return null;
+        var read = fitting.Points.LastOrDefault(p => p.Readings?.PressureKpa is not null)?.Readings;
+        if (read?.PressureKpa is not { } kpa) return null;
+        var cold = read.PressureWarm ? kpa / WarmFactor : kpa;
+        return new((cold - set) / set, read.PressureWarm ? Math.Sqrt(PressureSd * PressureSd + WarmSd * WarmSd) : PressureSd);
+    }
+
+    private static double Square(double x) => x * x;
+}

@@ -1,0 +1,59 @@
+using WearWatch.Diagnosis.Facts;
+using WearWatch.Diagnosis.Tread;
+using WearWatch.Storage.Facts;
+
+namespace WearWatch.Ingest;
+
+/// <summary>The instant answer to a survey: put before the diagnosis library with what is known of the vehicle.</summary>
+internal static class SurveyJudge
+{
+    public static void Judge(TreadSurvey survey, FactContext context, Judgement judgement)
+    {
+        judgement.NeedsVehicle(context, survey.VehicleId, "survey.vehicle_id");
+        if (context.Vehicle(survey.VehicleId, survey.At) is not { } vehicle) return;
+        var others = context.Surveys(survey.VehicleId).Where(s => s.FactId != judgement.Replaces).ToList();
+        var previous = others.LastOrDefault(s => s.At <= survey.At)?.Body;
+        var next = others.FirstOrDefault(s => s.At > survey.At)?.Body;
+        foreach (var issue in Check(survey, vehicle, previous, context, judgement.Depot)) Say(issue, judgement);
+        if (next is null) return;
+        // A late survey's distance must also lie below that of the one after it.
+        foreach (var issue in Check(survey, vehicle, next, context, judgement.Depot).Where(i => i.Field == "distance_km" && i.Weight == IssueWeight.Hold))
+            Say(issue, judgement);
+    }
+
+    private static IReadOnlyList<ReadingIssue> Check(TreadSurvey survey, Vehicle vehicle, TreadSurvey? other, FactContext context, string depotId)
+    {
+        var fittings = context.Fittings(vehicle.VehicleId).Where(f => f.At <= survey.At).Select(f => f.Body).ToList();
+        var since = other is null ? [] : fittings.Where(f => f.At > other.At).ToList();
+        var depot = context.Depot(vehicle.Depot) ?? context.Depot(depotId);
+        var limits = depot is null ? [] : context.Limits(depot.DepotId);
+        var on = DateOnly.FromDateTime(survey.At.UtcDateTime);
+        return SurveyCheck.Check(survey, vehicle, other, since,
+            position => NewDepth(fittings, position, context),
+            position => DepthLimits.For(depot?.Jurisdiction ?? "", vehicle, position, Last(fittings, position)?.Winter ?? false, on, limits));
+    }
+
+    private static FittingRecord? Last(IReadOnlyList<FittingRecord> fittings, Position position) =>
+        fittings.LastOrDefault(f => f.Position == position && f.Event is not FittingEvent.TurnedOnRim);
+
+    private static double? NewDepth(IReadOnlyList<FittingRecord> fittings, Position position, FactContext context) =>
+        Last(fittings, position) is { Event: not FittingEvent.Removed } fitting
+            ? fitting.NewDepthMm ?? (fitting.TyreId is { } id ? context.Tyre(id)?.NewDepthMm : null) : null;
+
+    private static void Say(ReadingIssue issue, Judgement judgement)
+    {
+        var field = FieldOf(issue.Field);
+        switch (issue.Weight)
+        {
+            case IssueWeight.Refuse: judgement.Refuse(issue.Code, field, issue.Message); break;
+            case IssueWeight.Hold: judgement.Hold(issue.Code, field, issue.Message); break;
+            default: judgement.Tell(issue.Code, field, issue.Message, safety: issue.Code is "below_limit" or "unsafe_seen"); break;
+        }
+    }
+
+    /// <summary>The library names fields of its record; a sender knows those of the contract.</summary>
+    private static string FieldOf(string field) => "survey." + field
+        .Replace(".depths", ".grooves", StringComparison.Ordinal).Replace(".depth_mm", ".depth", StringComparison.Ordinal)
+        .Replace("outboard_edge_mm", "outboard_edge", StringComparison.Ordinal)
+        .Replace("distance_km", "distance", StringComparison.Ordinal).Replace("resolution_mm", "resolution", StringComparison.Ordinal);
+}

@@ -57,9 +57,9 @@ public sealed class FleetScenario
     private static double Exposure(VehicleClass c) => c switch
     {
         VehicleClass.Van => 1.5,
-        VehicleClass.Trailer => 1.2,
+        VehicleClass.Trailer => 1.4,
         VehicleClass.Car => 1,
-        _ => 0.7,
+        _ => 0.55,
     };
 
     private FleetVehicle Draw(int index, Fate fate)

@@ -59,11 +59,11 @@ public sealed record VehicleType
     /// <summary>Alignment job price in the fleet's own bay, EUR; outside it is van 80 to 180, truck 200 to 450, trailer 150 to 350 (from memory).</summary>
     public double JobPriceEur => Class switch
     {
-        VehicleClass.Car => 72,
-        VehicleClass.Van => 98,
-        VehicleClass.Trailer => 175,
-        VehicleClass.Bus => 235,
-        _ => 210 + 25 * (Axles.Length - 2),
+        VehicleClass.Car => 70,
+        VehicleClass.Van => 90,
+        VehicleClass.Trailer => 160,
+        VehicleClass.Bus => 220,
+        _ => 200 + 25 * (Axles.Length - 2),
     };
 }
 
@@ -88,8 +88,8 @@ public static class VehicleTypes
         CruiseKmH = 95,
         Axles =
         [
-            new(0, 9.2, 43, 0.12, 0.22, 8.0, "strut", "205/55 R16", 105, 250, 1.54, Steered: true, Driven: true),
-            new(2.68, 7.8, 37, 0.066, 0.20, 8.0, "double_wishbone", "205/55 R16", 105, 240, 1.53),
+            new(0, 9.2, 40, 0.12, 0.18, 8.0, "strut", "205/55 R16", 115, 250, 1.54, Steered: true, Driven: true),
+            new(2.68, 7.8, 39, 0.066, 0.17, 8.0, "double_wishbone", "205/55 R16", 115, 240, 1.53),
         ],
     };
 
@@ -101,8 +101,8 @@ public static class VehicleTypes
         Electric = true,
         Axles =
         [
-            Car.Axles[0] with { LoadKn = 10.2, StiffnessKnPerRad = 48, BaseRate = 0.13, TyreSize = "215/55 R17", TyrePriceEur = 135 },
-            Car.Axles[1] with { LoadKn = 9.6, StiffnessKnPerRad = 45, BaseRate = 0.078, TyreSize = "215/55 R17", TyrePriceEur = 135 },
+            Car.Axles[0] with { LoadKn = 10.2, StiffnessKnPerRad = 45, BaseRate = 0.13, TyreSize = "215/55 R17", TyrePriceEur = 135 },
+            Car.Axles[1] with { LoadKn = 9.6, StiffnessKnPerRad = 48, BaseRate = 0.078, TyreSize = "215/55 R17", TyrePriceEur = 135 },
         ],
     };
 
@@ -125,8 +125,8 @@ public static class VehicleTypes
         CruiseKmH = 90,
         Axles =
         [
-            new(0, 16.2, 74, 0.145, 0.24, 8.8, "strut", "225/65 R16C", 145, 350, 1.73, Steered: true, Driven: true),
-            new(3.6, 13.8, 68, 0.11, 0.22, 8.8, "beam_leaf", "225/65 R16C", 145, 380, 1.72),
+            new(0, 16.2, 70, 0.145, 0.19, 8.8, "strut", "225/65 R16C", 155, 350, 1.73, Steered: true, Driven: true),
+            new(3.6, 13.8, 68, 0.11, 0.18, 8.8, "beam_leaf", "225/65 R16C", 155, 380, 1.72),
         ],
     };
 
@@ -157,8 +157,8 @@ public static class VehicleTypes
         CruiseKmH = 80,
         Axles =
         [
-            new(0, 52, 165, 0.076, 0.25, 15, "beam_leaf", "295/80 R22.5", 390, 800, 2.05, Steered: true),
-            new(5.0, 88, 130, 0.070, 0.24, 20, "beam_air", "295/80 R22.5", 380, 780, 1.83, Driven: true, Duals: true),
+            new(0, 52, 165, 0.070, 0.20, 15, "beam_leaf", "295/80 R22.5", 390, 800, 2.05, Steered: true),
+            new(5.0, 88, 158, 0.064, 0.20, 20, "beam_air", "295/80 R22.5", 380, 780, 1.83, Driven: true, Duals: true),
         ],
     };
 
@@ -171,9 +171,9 @@ public static class VehicleTypes
         Grooves = 5,
         Axles =
         [
-            new(0, 66, 190, 0.066, 0.24, 15, "beam_leaf", "315/80 R22.5", 430, 850, 2.05, Steered: true),
-            new(4.2, 78, 128, 0.058, 0.24, 20, "beam_air", "315/80 R22.5", 410, 800, 1.83, Driven: true, Duals: true),
-            new(5.55, 78, 128, 0.060, 0.25, 20, "beam_air", "315/80 R22.5", 410, 800, 1.83, Driven: true, Duals: true),
+            new(0, 66, 190, 0.060, 0.20, 15, "beam_leaf", "315/80 R22.5", 430, 850, 2.05, Steered: true),
+            new(4.2, 78, 128, 0.053, 0.20, 20, "beam_air", "315/80 R22.5", 410, 800, 1.83, Driven: true, Duals: true),
+            new(5.55, 78, 128, 0.055, 0.20, 20, "beam_air", "315/80 R22.5", 410, 800, 1.83, Driven: true, Duals: true),
         ],
     };
 
@@ -185,10 +185,10 @@ public static class VehicleTypes
         Consumption = 34,
         Axles =
         [
-            new(0, 64, 185, 0.075, 0.26, 15, "beam_leaf", "315/80 R22.5", 430, 850, 2.05, Steered: true),
-            new(1.9, 64, 185, 0.072, 0.24, 15, "beam_leaf", "315/80 R22.5", 430, 850, 2.05, Steered: true),
-            new(5.3, 82, 132, 0.068, 0.26, 20, "beam_leaf", "315/80 R22.5", 410, 800, 1.83, Driven: true, Duals: true),
-            new(6.65, 82, 132, 0.070, 0.27, 20, "beam_leaf", "315/80 R22.5", 410, 800, 1.83, Driven: true, Duals: true),
+            new(0, 64, 185, 0.068, 0.21, 15, "beam_leaf", "315/80 R22.5", 430, 850, 2.05, Steered: true),
+            new(1.9, 64, 185, 0.065, 0.20, 15, "beam_leaf", "315/80 R22.5", 430, 850, 2.05, Steered: true),
+            new(5.3, 82, 132, 0.062, 0.21, 20, "beam_leaf", "315/80 R22.5", 410, 800, 1.83, Driven: true, Duals: true),
+            new(6.65, 82, 132, 0.063, 0.22, 20, "beam_leaf", "315/80 R22.5", 410, 800, 1.83, Driven: true, Duals: true),
         ],
     };
 
@@ -205,8 +205,8 @@ public static class VehicleTypes
         CruiseKmH = 85,
         Axles =
         [
-            new(0, 68, 195, 0.031, 0.17, 15, "beam_leaf", "315/70 R22.5", 440, 900, 2.05, Steered: true),
-            new(3.7, 96, 140, 0.030, 0.17, 19, "beam_air", "315/70 R22.5", 420, 800, 1.83, Driven: true, Duals: true),
+            new(0, 68, 190, 0.028, 0.15, 15, "beam_leaf", "315/70 R22.5", 440, 900, 2.05, Steered: true),
+            new(3.7, 96, 150, 0.027, 0.15, 19, "beam_air", "315/70 R22.5", 420, 800, 1.83, Driven: true, Duals: true),
         ],
     };
 
@@ -219,8 +219,8 @@ public static class VehicleTypes
         Axles =
         [
             Tractor.Axles[0],
-            new(2.75, 60, 165, 0.036, 0.18, 14, "beam_air", "315/70 R22.5", 430, 850, 2.02, Lifting: true),
-            new(4.05, 92, 138, 0.030, 0.17, 19, "beam_air", "315/70 R22.5", 420, 800, 1.83, Driven: true, Duals: true),
+            new(2.75, 60, 165, 0.032, 0.16, 14, "beam_air", "315/70 R22.5", 430, 850, 2.02, Lifting: true),
+            new(4.05, 92, 148, 0.027, 0.15, 19, "beam_air", "315/70 R22.5", 420, 800, 1.83, Driven: true, Duals: true),
         ],
     };
 
@@ -243,8 +243,8 @@ public static class VehicleTypes
         CruiseKmH = 68,
         Axles =
         [
-            new(0, 58, 175, 0.086, 0.31, 16, "double_wishbone", "275/70 R22.5", 410, 850, 2.08, Steered: true),
-            new(5.9, 98, 140, 0.078, 0.29, 17, "beam_air", "275/70 R22.5", 400, 820, 1.82, Driven: true, Duals: true),
+            new(0, 58, 172, 0.078, 0.27, 16, "double_wishbone", "275/70 R22.5", 410, 850, 2.08, Steered: true),
+            new(5.9, 98, 165, 0.072, 0.25, 17, "beam_air", "275/70 R22.5", 400, 820, 1.82, Driven: true, Duals: true),
         ],
     };
 
@@ -255,7 +255,7 @@ public static class VehicleTypes
         Assist = "electro_hydraulic",
         Consumption = 118,
         Electric = true,
-        Axles = [Bus.Axles[0] with { LoadKn = 66, StiffnessKnPerRad = 190, BaseRate = 0.092 }, Bus.Axles[1] with { LoadKn = 108, BaseRate = 0.086 }],
+        Axles = [Bus.Axles[0] with { LoadKn = 66, StiffnessKnPerRad = 190, BaseRate = 0.080 }, Bus.Axles[1] with { LoadKn = 108, BaseRate = 0.074 }],
     };
 
     public static readonly VehicleType TriAxleTrailer = new()
@@ -269,9 +269,9 @@ public static class VehicleTypes
         RollShare = 0.04,
         Axles =
         [
-            new(6.4, 66, 190, 0.035, 0.19, 13, "trailing_arm", "385/65 R22.5", 380, 900, 2.04),
-            new(7.71, 66, 190, 0.029, 0.17, 13, "trailing_arm", "385/65 R22.5", 380, 900, 2.04),
-            new(9.02, 66, 190, 0.036, 0.19, 13, "trailing_arm", "385/65 R22.5", 380, 900, 2.04),
+            new(6.4, 66, 190, 0.032, 0.16, 13, "trailing_arm", "385/65 R22.5", 410, 900, 2.04),
+            new(7.71, 66, 190, 0.027, 0.15, 13, "trailing_arm", "385/65 R22.5", 410, 900, 2.04),
+            new(9.02, 66, 190, 0.033, 0.16, 13, "trailing_arm", "385/65 R22.5", 410, 900, 2.04),
         ],
     };
 
@@ -289,8 +289,8 @@ public static class VehicleTypes
         Grooves = 5,
         Axles =
         [
-            new(6.2, 76, 125, 0.036, 0.19, 14, "beam_leaf", "275/70 R22.5", 350, 850, 1.84, Duals: true),
-            new(7.55, 76, 125, 0.038, 0.19, 14, "beam_leaf", "275/70 R22.5", 350, 850, 1.84, Duals: true),
+            new(6.2, 76, 125, 0.033, 0.16, 14, "beam_leaf", "275/70 R22.5", 350, 850, 1.84, Duals: true),
+            new(7.55, 76, 125, 0.034, 0.16, 14, "beam_leaf", "275/70 R22.5", 350, 850, 1.84, Duals: true),
         ],
     };
 

@@ -53,10 +53,10 @@ public sealed record Fault(string Quantity, int? Axle, char? Side, Geometry Chan
         var tandem = angles.Any(a => a.Quantity == "tandem_skew");
         (string Name, double Weight)[] weights = type.Class switch
         {
-            VehicleClass.Car => [("front_total_toe", 0.30), ("rear_total_toe", 0.20), ("camber", 0.15), ("camber_split", 0.08), ("caster_split", 0.10), ("thrust", 0.17)],
-            VehicleClass.Van => [("front_total_toe", 0.38), ("rear_total_toe", 0.10), ("camber", 0.12), ("camber_split", 0.08), ("caster_split", 0.12), ("thrust", 0.20)],
-            VehicleClass.Trailer => [("rear_total_toe", 0.36), ("camber", 0.14), ("tandem_skew", 0.34), ("trailer_skew", 0.16)],
-            _ => [("front_total_toe", 0.40), ("rear_total_toe", 0.08), ("camber", 0.10), ("camber_split", 0.06), ("caster_split", 0.08), ("thrust", 0.20), ("tandem_skew", tandem ? 0.25 : 0)],
+            VehicleClass.Car => [("front_total_toe", 0.46), ("rear_total_toe", 0.20), ("camber", 0.10), ("camber_split", 0.05), ("caster_split", 0.08), ("thrust", 0.11)],
+            VehicleClass.Van => [("front_total_toe", 0.55), ("rear_total_toe", 0.12), ("camber", 0.08), ("camber_split", 0.05), ("caster_split", 0.08), ("thrust", 0.12)],
+            VehicleClass.Trailer => [("rear_total_toe", 0.28), ("camber", 0.10), ("tandem_skew", 0.52), ("trailer_skew", 0.10)],
+            _ => [("front_total_toe", 0.42), ("rear_total_toe", 0.10), ("camber", 0.10), ("camber_split", 0.06), ("caster_split", 0.08), ("thrust", 0.15), ("tandem_skew", tandem ? 0.60 : 0)],
         };
         var at = random.Unit() * weights.Sum(w => w.Weight);
         foreach (var (name, weight) in weights)

@@ -33,7 +33,8 @@ public sealed class FleetScenario
         foreach (var depot in Depot.All) _roads[depot.Index] = new(depot, scenario.Seed);
         var n = scenario.Vehicles;
         var fleet = new RandomStream(scenario.Seed, 1);
-        var order = fleet.Order(n);
+        // Delivery vans and trailers meet the most kerbs (common practice, no source): an order weighted by class.
+        var order = Enumerable.Range(0, n).OrderBy(i => -Math.Log(1 - new RandomStream(scenario.Seed, 14, i).Unit()) / Exposure(TypeOf(i).Class)).ToArray();
         var misaligned = (int)Math.Round(n * fleet.Between(0.22, 0.249), MidpointRounding.ToZero);
         var large = (int)Math.Round(0.6 * misaligned);
         var repaired = Math.Max(1, n / 16);
@@ -47,12 +48,24 @@ public sealed class FleetScenario
 
     private enum Fate { Large, Small, Repaired, Sound }
 
+    private static VehicleType TypeOf(int index)
+    {
+        var choices = VehicleTypes.Mix[index % VehicleTypes.Mix.Length];
+        return choices[index / VehicleTypes.Mix.Length % choices.Length];
+    }
+
+    private static double Exposure(VehicleClass c) => c switch
+    {
+        VehicleClass.Van => 1.5,
+        VehicleClass.Trailer => 1.4,
+        VehicleClass.Car => 1,
+        _ => 0.55,
+    };
+
     private FleetVehicle Draw(int index, Fate fate)
     {
         var random = new RandomStream(_scenario.Seed, 2, index);
-        var kind = index % VehicleTypes.Mix.Length;
-        var choices = VehicleTypes.Mix[kind];
-        var type = choices[index / VehicleTypes.Mix.Length % choices.Length];
+        var type = TypeOf(index);
         var depot = Depot.Of(index, _scenario.Vehicles);
         var positions = Position.Of(type);
         var sound = Geometry.DrawSound(type, random);
@@ -62,18 +75,30 @@ public sealed class FleetScenario
             Fate.Small => Fault.Draw(type, sound, random, 1.05, 1.5, _scenario.Days),
             Fate.Repaired => Fault.Draw(type, sound, random, 1.5, 4, _scenario.Days) with
             {
-                Mode = FaultMode.Before, StartDay = -7.0 * random.Whole(8, 40), RepairDay = Math.Floor(_scenario.Days * random.Between(0.35, 0.75)) + 0.6,
+                Mode = FaultMode.Before,
+                StartDay = -7.0 * random.Whole(8, 40),
+                RepairDay = Math.Floor(_scenario.Days * random.Between(0.35, 0.75)) + 0.6,
             },
             _ => null,
         };
+        // A kerb is struck on a day with a logged trip, about noon.
+        if (fault is { Mode: FaultMode.Sudden }) fault = fault with { StartDay = Math.Floor(fault.StartDay / 7) * 7 + VehicleHistory.TripDay(index) + 0.5 };
         var routes = DrawRoutes(type, random, index);
         var kmPerWeek = type.KmPerWeek * random.Between(0.75, 1.25);
         var vehicle = new FleetVehicle
         {
-            Index = index, Id = $"{(type.IsTrailer ? 'T' : 'V')}{index + 1:D3}", Type = type, Depot = depot, Positions = positions,
-            Sound = sound, Fault = fault, AfterRepair = fate == Fate.Repaired ? Geometry.DrawSound(type, random, 0.2) : null,
+            Index = index,
+            Id = $"{(type.IsTrailer ? 'T' : 'V')}{index + 1:D3}",
+            Type = type,
+            Depot = depot,
+            Positions = positions,
+            Sound = sound,
+            Fault = fault,
+            AfterRepair = fate == Fate.Repaired ? Geometry.DrawSound(type, random, 0.2) : null,
             Sensors = SteeringSensors.Draw(type, Slot(index), random),
-            Routes = routes, KmPerWeek = kmPerWeek, OdometerKm = Math.Floor(kmPerWeek * random.Between(60, 300)),
+            Routes = routes,
+            KmPerWeek = kmPerWeek,
+            OdometerKm = Math.Floor(kmPerWeek * random.Between(60, 300)),
             Duty = DrawDuty(type, depot, routes, random),
             PressureShare = [.. positions.Select(_ => Math.Clamp(-0.02 + 0.03 * random.Normal(), -0.1, 0.06))],
             DistanceSource = !type.IsTrailer ? "odometer" : random.Chance(0.55) ? "hub_counter" : "none",

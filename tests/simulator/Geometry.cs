@@ -21,6 +21,18 @@ public sealed class Geometry(int axles)
 
     public int Axles => TotalToe.Length;
 
+    /// <summary>
+    /// These angles as they are when rolling under load: drag and load take up the toe that the target sets on the bench, so
+    /// that a wheel on target runs straight (trucks: loaded toe near zero, tyre trade recommendations; else from memory).
+    /// </summary>
+    public Geometry Rolling(VehicleType type)
+    {
+        var rolling = Plus(this, 0);
+        for (var a = 0; a < Axles; a++)
+            rolling.TotalToe[a] -= (a == 0 && !type.IsTrailer ? Tolerances.FrontTotalToe(type.Class) : Tolerances.RearTotalToe(type.Class)).Target;
+        return rolling;
+    }
+
     /// <summary>Angle of a wheel against the vehicle's centreline, deg, + left: toe-in steers the left wheel right.</summary>
     public double WheelDirection(int axle, bool left) => Direction[axle] + (left ? -0.5 : 0.5) * TotalToe[axle];
 

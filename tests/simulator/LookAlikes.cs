@@ -12,7 +12,7 @@ public static class LookAlikes
         if (type.Class != VehicleClass.Bus) kinds.Add("crown");
         if (!type.IsTrailer) kinds.AddRange(["duty", "drag"]);
         if (light) kinds.AddRange(["conicity", "conicity"]);
-        if (sensors) kinds.Add("sensor_zero_or_front_toe_split");
+        if (sensors) kinds.AddRange(["sensor_zero_or_front_toe_split", "sensor_zero_or_front_toe_split"]);
         if (vehicle.Sensors.Kind == "torque") kinds.Add("torque_zero");
         // Town buses carry one-sided duty anyway.
         if (type.Class == VehicleClass.Bus) kinds.AddRange(["duty", "duty", "roll"]);

@@ -84,16 +84,4 @@ public sealed class RandomStream
         while (Math.Abs(x) > bound);
         return x;
     }
-
-    /// <summary>A random order of 0 … count − 1.</summary>
-    public int[] Order(int count)
-    {
-        var order = Enumerable.Range(0, count).ToArray();
-        for (var i = count - 1; i > 0; i--)
-        {
-            var j = Whole(0, i);
-            (order[i], order[j]) = (order[j], order[i]);
-        }
-        return order;
-    }
 }

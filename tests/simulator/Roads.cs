@@ -81,7 +81,12 @@ public sealed class RoadNetwork
         var backwardFall = kind == RoadKind.OnePlane ? -forwardFall : Depot.RoadSide;
         return new()
         {
-            From = from, To = to, Kind = kind, East = east, North = north, Curvature = curvature,
+            From = from,
+            To = to,
+            Kind = kind,
+            East = east,
+            North = north,
+            Curvature = curvature,
             LimitKmH = kind switch { RoadKind.MultiLane => 105, RoadKind.OnePlane => 85, _ => random.Chance(0.4) ? 75 : 92 },
             BankForward = Bank(points, forwardFall * slope, curvature, 1, random),
             BankBackward = Bank(points, backwardFall * (kind == RoadKind.OnePlane ? slope : slope + random.Between(-0.003, 0.003)), curvature, -1, random),

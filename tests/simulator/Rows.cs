@@ -47,7 +47,7 @@ public sealed class Rows
     {
         null => "",
         bool flag => flag ? "true" : "false",
-        double number => number.ToString("0.######"),
+        double number => number.ToString("0.##########"),
         string text when text.AsSpan().IndexOfAny(",\"\n") >= 0 => $"\"{text.Replace("\"", "\"\"")}\"",
         _ => field.ToString() ?? "",
     };

@@ -27,9 +27,11 @@ public static class StraightRunning
     private const double ConicityArmM = 0.02;
     private const double Friction = 0.8;
 
+    /// <param name="bench">Wheel angles as on the bench.</param>
     /// <param name="sinBank">Sine of the road's bank, + left side higher.</param>
-    public static Straight Solve(VehicleType type, Position[] positions, Geometry g, WheelState[] wheels, double sinBank)
+    public static Straight Solve(VehicleType type, Position[] positions, Geometry bench, WheelState[] wheels, double sinBank)
     {
+        var g = bench.Rolling(type);
         var n = positions.Length;
         var (stiffness, free, load) = (new double[n], new double[n], new double[n]);
         for (var i = 0; i < n; i++)

@@ -27,7 +27,7 @@ public sealed class TreadSurveys
 
     private string DrawBlunder(Technician technician)
     {
-        if (_vehicle.RecordsSwapped && _count is 3 or 5) return _vehicle.RecordsSwapped ? "swapped_sides" : "none";
+        if (_vehicle.RecordsSwapped && _count is 3 or 5) return "swapped_sides";
         return _random.Unit() switch
         {
             < 0.022 => "swapped_sides",
@@ -69,7 +69,7 @@ public sealed class TreadSurveys
     private double? Distance(double odometerKm, string id)
     {
         if (_vehicle.DistanceSource == "none" || _random.Chance(0.04)) return null;
-        if (_vehicle.Index % 64 != 9 || _count != 4) return Math.Round(odometerKm);
+        if (_vehicle.Index % 64 != 10 || _count != 4) return Math.Round(odometerKm);
         Planted.Add(new("distance_back", id));
         return Math.Round(odometerKm) - 6000;
     }

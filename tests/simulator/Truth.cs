@@ -65,7 +65,7 @@ public static class Truth
             OffCentreDeg = steered ? R(h.Steering.OffCentre) : (double?)null,
             AngleZeroDeg = steered ? R(v.Sensors.AngleZeroDeg) : (double?)null,
             TorqueZeroNm = signals == "torque" ? R(v.Sensors.TorqueZeroNm) : (double?)null,
-            LateralBiasMS2 = steered ? R(v.Sensors.LateralBias) : (double?)null,
+            LateralBias = steered ? R(v.Sensors.LateralBias) : (double?)null,
             DriverFactor = R(v.Duty.Driver),
             WearExponent = R(v.Duty.Exponent),
             MeanBank = R(v.Duty.MeanBank, 5),
@@ -83,28 +83,47 @@ public static class Truth
 
     private static object Quantity(Angle a, Fault? fault, Scenario s) => new
     {
-        a.Quantity, a.Axle, a.Side,
-        Value = R(a.Value), a.Tolerance.Target, Tolerance = a.Tolerance.PlusMinus, Ratio = R(a.Ratio),
+        a.Quantity,
+        a.Axle,
+        a.Side,
+        Value = R(a.Value),
+        a.Tolerance.Target,
+        Tolerance = a.Tolerance.PlusMinus,
+        Ratio = R(a.Ratio),
         Since = fault is null ? null : s.Date(fault.StartDay),
         Mode = fault?.Mode.ToString().ToLowerInvariant(),
     };
 
-    private static object Tyre(VehicleHistory h, Position p, Geometry now, double slipDeg)
+    private static TyreTruth Tyre(VehicleHistory h, Position p, Geometry now, double slipDeg)
     {
         var v = h.Vehicle;
         var winter = h.Tyres.Winter[p.Index];
         // Austria: winter tyres of vehicles up to 3.5 t count as such down to 4 mm.
         var limit = winter && v.Depot.Jurisdiction == "AT" ? 4.0 : v.Depot.LimitMm(v.Type);
-        return new
+        return new TyreTruth
         {
             Position = p.Name,
             RateMmPer1000Km = R(h.Tyres.MeanRate(p, now, slipDeg), 5),
             RemainingKm = Math.Round(h.Tyres.RemainingKm(p, now, slipDeg, limit)),
             LimitMm = limit,
-            Depths = Enumerable.Range(0, v.Type.Grooves).Select(k => R(h.Tyres.Tyres[p.Index].SmoothDepth(k, v.Type.Grooves), 3)).ToList(),
+            Depths = [.. Enumerable.Range(0, v.Type.Grooves).Select(k => R(h.Tyres.Tyres[p.Index].SmoothDepth(k, v.Type.Grooves), 3))],
             SlipTowardsToeInDeg = R(-p.Sign * slipDeg),
             SinceKm = Math.Round(h.Tyres.SinceKm[p.Index]),
             OdometerKm = Math.Round(h.OdometerKm),
         };
+    }
+
+    /// <summary>One tyre at the end of the window. Depths are those of its grooves without deviations, outermost first, mm.</summary>
+    private sealed record TyreTruth
+    {
+        public required string Position { get; init; }
+        [JsonPropertyName("rate_mm_per_1000_km")]
+        public required double RateMmPer1000Km { get; init; }
+        public required double RemainingKm { get; init; }
+        public required double LimitMm { get; init; }
+        public required double[] Depths { get; init; }
+        public required double SlipTowardsToeInDeg { get; init; }
+        public required double SinceKm { get; init; }
+        public required double OdometerKm { get; init; }
     }
 }

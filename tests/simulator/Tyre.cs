@@ -26,7 +26,9 @@ public sealed class Tyre
     {
         var tyre = new Tyre
         {
-            Id = id, Pattern = pattern, NewDepthMm = newDepthMm,
+            Id = id,
+            Pattern = pattern,
+            NewDepthMm = newDepthMm,
             StripFactor = [.. Enumerable.Range(0, Strips).Select(_ => 1 + 0.025 * random.Normal())],
             ConicityN = conicitySdN * random.Within(1, 2),
         };

@@ -48,7 +48,7 @@ public sealed class VehicleHistory
     }
 
     /// <summary>Day of the week on which the trip is logged.</summary>
-    private int TripDay => _v.Index % 5;
+    public static int TripDay(int index) => index % 5;
 
     public void Run(string folder)
     {
@@ -58,7 +58,7 @@ public sealed class VehicleHistory
         {
             if (Surveys.Days.Contains(day)) Surveys.Take(day, Odometer(day + 0.3), Tyres.Tyres);
             var morning = Law(day);
-            if (_v.Sensors.Channels.Length > 0 && day % 7 == TripDay) Drive(folder, day);
+            if (_v.Sensors.Channels.Length > 0 && day % 7 == TripDay(_v.Index)) Drive(folder, day);
             Tyres.Run(day, _odometer[day + 1] - _odometer[day]);
             Tyres.Evening(day, _odometer[day + 1]);
             NoteStep(day, morning);
@@ -97,13 +97,14 @@ public sealed class VehicleHistory
         var load = random.Between(0.55, 1);
         var plan = new TripPlan
         {
-            Rows = rows, Law = Law(day), LoadKg = Math.Round(_v.Type.GrossMassKg * 0.6 * (load - 0.5)),
+            Rows = rows,
+            Law = Law(day),
+            LoadKg = Math.Round(_v.Type.GrossMassKg * 0.6 * (load - 0.5)),
             DragTorqueNm = DragTorque(day),
         };
         if (_v.Fault is { Mode: FaultMode.Sudden } f && Math.Floor(f.StartDay) == day)
         {
-            // Until the kerb is struck on this trip the vehicle is as it was the day before.
-            plan = plan with { Law = Law(day - 0.01), LawAfter = Law(day + 0.01), StrikeRow = rows / 3 };
+            plan = plan with { LawAfter = Law(day + 0.999), StrikeRow = rows / 3 };
         }
         var name = $"steering/{_v.Id}/{_s.Date(day)}.csv.gz";
         Directory.CreateDirectory(Path.Combine(folder, "steering", _v.Id));

@@ -20,7 +20,8 @@ public sealed record AxleType(
 /// memory); cornering stiffness: light tyres 0.165 of the load per degree, heavy 0.085 to 0.11 (from memory,
 /// measured sets in Fancher et al., UMTRI-86-12, 1986); base wear rates: line-haul trucks 0.025 to 0.05, city
 /// 0.08 to 0.10 mm per 1000 km (fleet trade press); car front 0.10 to 0.20, rear 0.06 to 0.12, van 0.12 to 0.25,
-/// bus 0.08 to 0.15, trailer 0.03 to 0.08 (from memory).
+/// bus 0.08 to 0.15, trailer 0.03 to 0.08 (from memory); the base
+/// rates below leave room for what the roads' crown adds.
 /// </summary>
 public sealed record VehicleType
 {
@@ -55,14 +56,14 @@ public sealed record VehicleType
     public double WheelbaseM => Axles[^1].PositionM - Axles[0].PositionM;
     public IEnumerable<int> FixedAxles => Enumerable.Range(0, Axles.Length).Where(a => !Axles[a].Steered);
 
-    /// <summary>Alignment job price, EUR: van 80 to 180, truck 200 to 450, trailer 150 to 350 (from memory).</summary>
+    /// <summary>Alignment job price in the fleet's own bay, EUR; outside it is van 80 to 180, truck 200 to 450, trailer 150 to 350 (from memory).</summary>
     public double JobPriceEur => Class switch
     {
-        VehicleClass.Car => 95,
-        VehicleClass.Van => 130,
-        VehicleClass.Trailer => 230,
-        VehicleClass.Bus => 310,
-        _ => 280 + 25 * (Axles.Length - 2),
+        VehicleClass.Car => 70,
+        VehicleClass.Van => 90,
+        VehicleClass.Trailer => 160,
+        VehicleClass.Bus => 220,
+        _ => 200 + 25 * (Axles.Length - 2),
     };
 }
 
@@ -70,144 +71,226 @@ public static class VehicleTypes
 {
     public static readonly VehicleType Car = new()
     {
-        Name = "pool car", Class = VehicleClass.Car, GrossMassKg = 2050, KmPerWeek = 520, SteeringRatio = 15.5,
-        Assist = "electric", Consumption = 5.8, MechanicalTrailM = 0.022, PneumaticTrailM = 0.025, HubOffsetM = 0.056,
-        ScrubRadiusM = -0.008, CentreHeightM = 0.56, Grooves = 4, RollShare = 0.05, CruiseKmH = 95,
+        Name = "pool car",
+        Class = VehicleClass.Car,
+        GrossMassKg = 2050,
+        KmPerWeek = 620,
+        SteeringRatio = 15.5,
+        Assist = "electric",
+        Consumption = 5.8,
+        MechanicalTrailM = 0.022,
+        PneumaticTrailM = 0.025,
+        HubOffsetM = 0.056,
+        ScrubRadiusM = -0.008,
+        CentreHeightM = 0.56,
+        Grooves = 4,
+        RollShare = 0.05,
+        CruiseKmH = 95,
         Axles =
         [
-            new(0, 9.2, 43, 0.14, 0.22, 8.0, "strut", "205/55 R16", 105, 250, 1.54, Steered: true, Driven: true),
-            new(2.68, 7.8, 37, 0.085, 0.20, 8.0, "double_wishbone", "205/55 R16", 105, 240, 1.53),
+            new(0, 9.2, 40, 0.12, 0.18, 8.0, "strut", "205/55 R16", 115, 250, 1.54, Steered: true, Driven: true),
+            new(2.68, 7.8, 39, 0.066, 0.17, 8.0, "double_wishbone", "205/55 R16", 115, 240, 1.53),
         ],
     };
 
     public static readonly VehicleType ElectricCar = Car with
     {
-        Name = "electric pool car", GrossMassKg = 2350, Consumption = 17.5, Electric = true,
+        Name = "electric pool car",
+        GrossMassKg = 2350,
+        Consumption = 17.5,
+        Electric = true,
         Axles =
         [
-            Car.Axles[0] with { LoadKn = 10.2, StiffnessKnPerRad = 48, BaseRate = 0.15, TyreSize = "215/55 R17", TyrePriceEur = 135 },
-            Car.Axles[1] with { LoadKn = 9.6, StiffnessKnPerRad = 45, BaseRate = 0.10, TyreSize = "215/55 R17", TyrePriceEur = 135 },
+            Car.Axles[0] with { LoadKn = 10.2, StiffnessKnPerRad = 45, BaseRate = 0.13, TyreSize = "215/55 R17", TyrePriceEur = 135 },
+            Car.Axles[1] with { LoadKn = 9.6, StiffnessKnPerRad = 48, BaseRate = 0.078, TyreSize = "215/55 R17", TyrePriceEur = 135 },
         ],
     };
 
     public static readonly VehicleType Van = new()
     {
-        Name = "delivery van", Class = VehicleClass.Van, GrossMassKg = 3500, KmPerWeek = 760, SteeringRatio = 16,
-        Assist = "electric", Consumption = 9.8, MechanicalTrailM = 0.027, PneumaticTrailM = 0.025, HubOffsetM = 0.056,
-        ScrubRadiusM = -0.01, CentreHeightM = 0.78, Grooves = 3, RollShare = 0.08, CruiseKmH = 90,
+        Name = "delivery van",
+        Class = VehicleClass.Van,
+        GrossMassKg = 3500,
+        KmPerWeek = 900,
+        SteeringRatio = 16,
+        Assist = "electric",
+        Consumption = 9.8,
+        MechanicalTrailM = 0.027,
+        PneumaticTrailM = 0.025,
+        HubOffsetM = 0.056,
+        ScrubRadiusM = -0.01,
+        CentreHeightM = 0.78,
+        Grooves = 3,
+        RollShare = 0.08,
+        CruiseKmH = 90,
         Axles =
         [
-            new(0, 16.2, 74, 0.175, 0.25, 8.8, "strut", "225/65 R16C", 145, 350, 1.73, Steered: true, Driven: true),
-            new(3.6, 13.8, 68, 0.14, 0.23, 8.8, "beam_leaf", "225/65 R16C", 145, 380, 1.72),
+            new(0, 16.2, 70, 0.145, 0.19, 8.8, "strut", "225/65 R16C", 155, 350, 1.73, Steered: true, Driven: true),
+            new(3.6, 13.8, 68, 0.11, 0.18, 8.8, "beam_leaf", "225/65 R16C", 155, 380, 1.72),
         ],
     };
 
     public static readonly VehicleType HydraulicVan = Van with
     {
-        Name = "older van", Assist = "hydraulic", Grooves = 4,
-        Axles = [Van.Axles[0] with { Driven = false }, Van.Axles[1] with { Driven = true, BaseRate = 0.16 }],
+        Name = "older van",
+        Assist = "hydraulic",
+        Grooves = 4,
+        Axles = [Van.Axles[0] with { Driven = false }, Van.Axles[1] with { Driven = true, BaseRate = 0.125 }],
     };
 
     public static readonly VehicleType Rigid = new()
     {
-        Name = "two-axle rigid", Class = VehicleClass.Truck, GrossMassKg = 16000, KmPerWeek = 1250, SteeringRatio = 20,
-        Assist = "hydraulic", Consumption = 23, MechanicalTrailM = 0.030, PneumaticTrailM = 0.036, HubOffsetM = 0.09,
-        ScrubRadiusM = 0.068, CentreHeightM = 1.35, Grooves = 4, RollShare = 0.07, CruiseKmH = 80,
+        Name = "two-axle rigid",
+        Class = VehicleClass.Truck,
+        GrossMassKg = 16000,
+        KmPerWeek = 1350,
+        SteeringRatio = 20,
+        Assist = "hydraulic",
+        Consumption = 23,
+        MechanicalTrailM = 0.030,
+        PneumaticTrailM = 0.036,
+        HubOffsetM = 0.09,
+        ScrubRadiusM = 0.068,
+        CentreHeightM = 1.35,
+        Grooves = 4,
+        RollShare = 0.07,
+        CruiseKmH = 80,
         Axles =
         [
-            new(0, 52, 165, 0.082, 0.25, 15, "beam_leaf", "295/80 R22.5", 390, 800, 2.05, Steered: true),
-            new(5.0, 88, 130, 0.078, 0.24, 20, "beam_air", "295/80 R22.5", 380, 780, 1.83, Driven: true, Duals: true),
+            new(0, 52, 165, 0.070, 0.20, 15, "beam_leaf", "295/80 R22.5", 390, 800, 2.05, Steered: true),
+            new(5.0, 88, 158, 0.064, 0.20, 20, "beam_air", "295/80 R22.5", 380, 780, 1.83, Driven: true, Duals: true),
         ],
     };
 
     public static readonly VehicleType TandemRigid = Rigid with
     {
-        Name = "three-axle rigid, tandem drive", GrossMassKg = 26000, KmPerWeek = 1150, Consumption = 30, Grooves = 5,
+        Name = "three-axle rigid, tandem drive",
+        GrossMassKg = 26000,
+        KmPerWeek = 1150,
+        Consumption = 30,
+        Grooves = 5,
         Axles =
         [
-            new(0, 66, 190, 0.082, 0.24, 15, "beam_leaf", "315/80 R22.5", 430, 850, 2.05, Steered: true),
-            new(4.2, 78, 128, 0.078, 0.24, 20, "beam_air", "315/80 R22.5", 410, 800, 1.83, Driven: true, Duals: true),
-            new(5.55, 78, 128, 0.080, 0.25, 20, "beam_air", "315/80 R22.5", 410, 800, 1.83, Driven: true, Duals: true),
+            new(0, 66, 190, 0.060, 0.20, 15, "beam_leaf", "315/80 R22.5", 430, 850, 2.05, Steered: true),
+            new(4.2, 78, 128, 0.053, 0.20, 20, "beam_air", "315/80 R22.5", 410, 800, 1.83, Driven: true, Duals: true),
+            new(5.55, 78, 128, 0.055, 0.20, 20, "beam_air", "315/80 R22.5", 410, 800, 1.83, Driven: true, Duals: true),
         ],
     };
 
     public static readonly VehicleType TwinSteer = Rigid with
     {
-        Name = "four-axle rigid, two steered", GrossMassKg = 32000, KmPerWeek = 950, Consumption = 34,
+        Name = "four-axle rigid, two steered",
+        GrossMassKg = 32000,
+        KmPerWeek = 950,
+        Consumption = 34,
         Axles =
         [
-            new(0, 64, 185, 0.085, 0.26, 15, "beam_leaf", "315/80 R22.5", 430, 850, 2.05, Steered: true),
-            new(1.9, 64, 185, 0.080, 0.24, 15, "beam_leaf", "315/80 R22.5", 430, 850, 2.05, Steered: true),
-            new(5.3, 82, 132, 0.085, 0.26, 20, "beam_leaf", "315/80 R22.5", 410, 800, 1.83, Driven: true, Duals: true),
-            new(6.65, 82, 132, 0.087, 0.27, 20, "beam_leaf", "315/80 R22.5", 410, 800, 1.83, Driven: true, Duals: true),
+            new(0, 64, 185, 0.068, 0.21, 15, "beam_leaf", "315/80 R22.5", 430, 850, 2.05, Steered: true),
+            new(1.9, 64, 185, 0.065, 0.20, 15, "beam_leaf", "315/80 R22.5", 430, 850, 2.05, Steered: true),
+            new(5.3, 82, 132, 0.062, 0.21, 20, "beam_leaf", "315/80 R22.5", 410, 800, 1.83, Driven: true, Duals: true),
+            new(6.65, 82, 132, 0.063, 0.22, 20, "beam_leaf", "315/80 R22.5", 410, 800, 1.83, Driven: true, Duals: true),
         ],
     };
 
     public static readonly VehicleType Tractor = Rigid with
     {
-        Name = "two-axle tractor", GrossMassKg = 18000, KmPerWeek = 2100, SteeringRatio = 19, Consumption = 29,
-        CentreHeightM = 1.2, Grooves = 5, RollShare = 0.05, CruiseKmH = 85,
+        Name = "two-axle tractor",
+        GrossMassKg = 18000,
+        KmPerWeek = 2400,
+        SteeringRatio = 19,
+        Consumption = 29,
+        CentreHeightM = 1.2,
+        Grooves = 5,
+        RollShare = 0.05,
+        CruiseKmH = 85,
         Axles =
         [
-            new(0, 68, 195, 0.050, 0.18, 15, "beam_leaf", "315/70 R22.5", 440, 900, 2.05, Steered: true),
-            new(3.7, 96, 140, 0.047, 0.18, 19, "beam_air", "315/70 R22.5", 420, 800, 1.83, Driven: true, Duals: true),
+            new(0, 68, 190, 0.028, 0.15, 15, "beam_leaf", "315/70 R22.5", 440, 900, 2.05, Steered: true),
+            new(3.7, 96, 150, 0.027, 0.15, 19, "beam_air", "315/70 R22.5", 420, 800, 1.83, Driven: true, Duals: true),
         ],
     };
 
     public static readonly VehicleType LiftTractor = Tractor with
     {
-        Name = "three-axle tractor, lifting axle", GrossMassKg = 26000, KmPerWeek = 1950, Consumption = 31,
+        Name = "three-axle tractor, lifting axle",
+        GrossMassKg = 26000,
+        KmPerWeek = 2300,
+        Consumption = 31,
         Axles =
         [
             Tractor.Axles[0],
-            new(2.75, 60, 165, 0.055, 0.19, 14, "beam_air", "315/70 R22.5", 430, 850, 2.02, Lifting: true),
-            new(4.05, 92, 138, 0.047, 0.18, 19, "beam_air", "315/70 R22.5", 420, 800, 1.83, Driven: true, Duals: true),
+            new(2.75, 60, 165, 0.032, 0.16, 14, "beam_air", "315/70 R22.5", 430, 850, 2.02, Lifting: true),
+            new(4.05, 92, 148, 0.027, 0.15, 19, "beam_air", "315/70 R22.5", 420, 800, 1.83, Driven: true, Duals: true),
         ],
     };
 
     public static readonly VehicleType Bus = new()
     {
-        Name = "town bus", Class = VehicleClass.Bus, GrossMassKg = 18500, KmPerWeek = 1180, SteeringRatio = 20.5,
-        Assist = "hydraulic", Consumption = 36, MechanicalTrailM = 0.030, PneumaticTrailM = 0.034, HubOffsetM = 0.085,
-        ScrubRadiusM = 0.06, CentreHeightM = 1.15, Grooves = 4, RollShare = 0.12, CruiseKmH = 68,
+        Name = "town bus",
+        Class = VehicleClass.Bus,
+        GrossMassKg = 18500,
+        KmPerWeek = 1180,
+        SteeringRatio = 20.5,
+        Assist = "hydraulic",
+        Consumption = 36,
+        MechanicalTrailM = 0.030,
+        PneumaticTrailM = 0.034,
+        HubOffsetM = 0.085,
+        ScrubRadiusM = 0.06,
+        CentreHeightM = 1.15,
+        Grooves = 4,
+        RollShare = 0.12,
+        CruiseKmH = 68,
         Axles =
         [
-            new(0, 58, 175, 0.105, 0.31, 16, "double_wishbone", "275/70 R22.5", 410, 850, 2.08, Steered: true),
-            new(5.9, 98, 140, 0.100, 0.29, 17, "beam_air", "275/70 R22.5", 400, 820, 1.82, Driven: true, Duals: true),
+            new(0, 58, 172, 0.078, 0.27, 16, "double_wishbone", "275/70 R22.5", 410, 850, 2.08, Steered: true),
+            new(5.9, 98, 165, 0.072, 0.25, 17, "beam_air", "275/70 R22.5", 400, 820, 1.82, Driven: true, Duals: true),
         ],
     };
 
     public static readonly VehicleType ElectricBus = Bus with
     {
-        Name = "electric town bus", GrossMassKg = 19500, Assist = "electro_hydraulic", Consumption = 118, Electric = true,
-        Axles = [Bus.Axles[0] with { LoadKn = 66, StiffnessKnPerRad = 190, BaseRate = 0.115 }, Bus.Axles[1] with { LoadKn = 108, BaseRate = 0.11 }],
+        Name = "electric town bus",
+        GrossMassKg = 19500,
+        Assist = "electro_hydraulic",
+        Consumption = 118,
+        Electric = true,
+        Axles = [Bus.Axles[0] with { LoadKn = 66, StiffnessKnPerRad = 190, BaseRate = 0.080 }, Bus.Axles[1] with { LoadKn = 108, BaseRate = 0.074 }],
     };
 
     public static readonly VehicleType TriAxleTrailer = new()
     {
-        Name = "tri-axle semi-trailer", Class = VehicleClass.Trailer, GrossMassKg = 36000, KmPerWeek = 1750,
-        CentreHeightM = 1.6, Grooves = 4, RollShare = 0.04,
+        Name = "tri-axle semi-trailer",
+        Class = VehicleClass.Trailer,
+        GrossMassKg = 36000,
+        KmPerWeek = 2100,
+        CentreHeightM = 1.6,
+        Grooves = 4,
+        RollShare = 0.04,
         Axles =
         [
-            new(6.4, 66, 180, 0.056, 0.21, 13, "trailing_arm", "385/65 R22.5", 380, 900, 2.04),
-            new(7.71, 66, 180, 0.044, 0.18, 13, "trailing_arm", "385/65 R22.5", 380, 900, 2.04),
-            new(9.02, 66, 180, 0.058, 0.21, 13, "trailing_arm", "385/65 R22.5", 380, 900, 2.04),
+            new(6.4, 66, 190, 0.032, 0.16, 13, "trailing_arm", "385/65 R22.5", 410, 900, 2.04),
+            new(7.71, 66, 190, 0.027, 0.15, 13, "trailing_arm", "385/65 R22.5", 410, 900, 2.04),
+            new(9.02, 66, 190, 0.033, 0.16, 13, "trailing_arm", "385/65 R22.5", 410, 900, 2.04),
         ],
     };
 
     public static readonly VehicleType LiftTrailer = TriAxleTrailer with
     {
         Name = "tri-axle semi-trailer, first axle lifting",
-        Axles = [TriAxleTrailer.Axles[0] with { Lifting = true, BaseRate = 0.045 }, TriAxleTrailer.Axles[1], TriAxleTrailer.Axles[2]],
+        Axles = [TriAxleTrailer.Axles[0] with { Lifting = true, BaseRate = 0.031 }, TriAxleTrailer.Axles[1], TriAxleTrailer.Axles[2]],
     };
 
     public static readonly VehicleType TwinTrailer = TriAxleTrailer with
     {
-        Name = "twin-axle semi-trailer", GrossMassKg = 28000, KmPerWeek = 1350, Grooves = 5,
+        Name = "twin-axle semi-trailer",
+        GrossMassKg = 28000,
+        KmPerWeek = 1700,
+        Grooves = 5,
         Axles =
         [
-            new(6.2, 76, 125, 0.052, 0.20, 14, "beam_leaf", "275/70 R22.5", 350, 850, 1.84, Duals: true),
-            new(7.55, 76, 125, 0.054, 0.20, 14, "beam_leaf", "275/70 R22.5", 350, 850, 1.84, Duals: true),
+            new(6.2, 76, 125, 0.033, 0.16, 14, "beam_leaf", "275/70 R22.5", 350, 850, 1.84, Duals: true),
+            new(7.55, 76, 125, 0.034, 0.16, 14, "beam_leaf", "275/70 R22.5", 350, 850, 1.84, Duals: true),
         ],
     };
 

@@ -42,7 +42,7 @@ public static class OffCentreWheelRule
             ],
             Causes = causes,
             FirstCheck = FirstCheck.For(CheckFor.OffCentreWheel),
-            // Both the rear axle's direction and an unequal front toe are set on the bench; a sensor zero alone is not.
+            // A sensor zero is no alignment matter and cannot be told from an unequal front toe: only the rear tyres settle it.
             AlignmentMends = rearAgrees,
             Caution = Cautions.LiveSteering,
             Strength = RuleLimits.Strength(angle),

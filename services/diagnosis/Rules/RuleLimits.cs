@@ -20,10 +20,10 @@ public static class RuleLimits
     private const string Practice = "common practice, no source";
     private const string Memory = "from memory";
 
-    // Noise. A vehicle shows some twenty figures: three standard errors on a figure that stands alone keep chance
-    // findings to a few in a hundred sound vehicles; two wheels that agree need less each.
-    public static readonly RuleLimit AloneErrors = new("a figure standing alone, standard errors", 3, "1", "two-sided normal tail 0.27 %, times about twenty figures a vehicle");
-    public static readonly RuleLimit AgreeingErrors = new("two wheels together or the only figure of its kind, standard errors", 2, "1", "two-sided normal tail 4.6 %");
+    // Noise. A ten-tyred vehicle shows some fifty figures, and each is a chance to be wrong: so a figure that stands
+    // alone must be surer than two wheels that agree.
+    public static readonly RuleLimit AloneErrors = new("a figure standing alone, standard errors", 3.3, "1", "two-sided normal tail 0.1 %, times about fifty figures of a ten-tyred vehicle");
+    public static readonly RuleLimit AgreeingErrors = new("two wheels together or the only figure of its kind, standard errors", 2.5, "1", "two-sided normal tail 1.2 %");
     public static readonly RuleLimit MateErrors = new("a mate tyre or second witness that agrees, standard errors", 1.64, "1", "two-sided normal tail 10 %");
     public static readonly RuleLimit MateShare = new("a mate tyre that agrees, share of the worse tyre's figure", 0.4, "1", Practice);
 
@@ -36,7 +36,7 @@ public static class RuleLimits
     public static readonly RuleLimit ShoulderShare = new("shoulders over centre or centre over shoulders beyond normal, share of the normal rate", 0.30, "1", Memory);
     public static readonly RuleLimit Feather = new("step of the rib edges", 0.3, "mm", Memory);
     public static readonly RuleLimit FeltStep = new("step that a hand rub speaks for", 0.5, "mm", Memory);
-    public static readonly RuleLimit FeltStepError = new("standard error of one hand rub", 0.4, "mm", Memory);
+    public static readonly RuleLimit FeltStepError = new("standard error of one hand rub", 0.38, "mm", Memory);
     public static readonly RuleLimit RoundVariation = new("depth varying round the tyre, standard deviation", 0.5, "mm", Memory);
     public static readonly RuleLimit FastWear = new("wear rate over the normal rate", 1.5, "1", "drivers alone move wear by up to 35 % (Fleet Maintenance, 10 March 2017); beyond that with a margin from memory");
 

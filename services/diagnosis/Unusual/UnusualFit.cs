@@ -83,7 +83,8 @@ public sealed record UnusualFit
         return Against(z, own.SquaredPredictionError, own.HotellingT2);
     }
 
-    internal UnusualDistances Against(double[] z, DistanceSpread speSpread, DistanceSpread t2Spread)
+    /// <summary>Distances of standardised figures (NaN where not known) against these spreads.</summary>
+    public UnusualDistances Against(double[] z, DistanceSpread speSpread, DistanceSpread t2Spread)
     {
         var scores = PrincipalScores.Of(z, Components, ComponentVariance);
         var residual = PrincipalScores.Residual(z, scores, Components);

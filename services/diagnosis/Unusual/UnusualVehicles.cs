@@ -17,7 +17,7 @@ public static class UnusualVehicles
     public const int LeastVehicles = 8;
 
     /// <summary>Vehicles of a class from which its distances have a spread of their own; below, the fleet's is used.</summary>
-    private const int LeastForOwnSpread = 30;
+    private const int LeastForOwnSpread = 100;
 
     /// <summary>Median absolute deviation to standard deviation, normal law.</summary>
     private const double MadToSigma = 1.482602218505602;
@@ -27,28 +27,46 @@ public static class UnusualVehicles
 
     private const int MostDirections = 5;
 
+    /// <summary>Parts the fleet is cut into when distances are learnt: each part is measured by a fit of the others.</summary>
+    private const int Parts = 5;
+
     /// <summary>Fits what is usual. Order of the fleet does not matter; the latest figures of a vehicle given twice count.</summary>
     public static UnusualFit Fit(IReadOnlyList<VehicleFigures> fleet)
     {
-        var sorted = fleet.GroupBy(f => f.Vehicle.VehicleId).Select(g => g.MaxBy(f => f.AsOf)!).OrderBy(f => f.Vehicle.VehicleId, StringComparer.Ordinal).ToList();
+        var sorted = fleet.GroupBy(f => f.Vehicle.VehicleId).Select(g => g.MaxBy(f => f.AsOf)!).OrderBy(f => f.Vehicle.Class).ThenBy(f => f.Vehicle.VehicleId, StringComparer.Ordinal).ToList();
+        var fit = WithoutDistances(sorted);
+        if (fit.Classes.Count == 0) return fit;
+        // A vehicle that helped to set the centre and the spread looks nearer than a new one will: so each is measured by
+        // a fit that has not seen it, with the figures that a rule has named left out, exactly as it will be judged.
+        var unit = new DistanceSpread(0, 1);
+        var distances = new List<(VehicleClass Class, UnusualDistances Of)>();
+        for (var part = 0; part < Parts; part++)
+        {
+            var others = WithoutDistances([.. sorted.Where((_, i) => i % Parts != part)]);
+            others = others with { Classes = [.. others.Classes.Select(c => c with { SquaredPredictionError = unit, HotellingT2 = unit })] };
+            foreach (var own in sorted.Where((_, i) => i % Parts == part))
+                if (others.Distances(own, GeometryRules.Find(own)) is { } distance) distances.Add((own.Vehicle.Class, distance));
+        }
+        return WithDistances(fit, distances);
+    }
+
+    private static UnusualFit WithoutDistances(IReadOnlyList<VehicleFigures> sorted)
+    {
         var classes = sorted.GroupBy(f => f.Vehicle.Class).Where(g => g.Count() >= LeastVehicles).OrderBy(g => g.Key).Select(g => Spread(g.Key, [.. g])).ToList();
         var rows = sorted
             .Select(f => (Figures: f, Class: classes.FirstOrDefault(c => c.Class == f.Vehicle.Class)))
             .Where(x => x.Class is not null)
-            .Select(x => (x.Class!.Class, Z: Standardise(x.Figures, x.Class)))
-            .Where(x => x.Z.Any(double.IsFinite)).ToList();
-        var width = UnusualFigures.All.Count;
+            .Select(x => Standardise(x.Figures, x.Class!))
+            .Where(z => z.Any(double.IsFinite)).ToList();
         var fit = new UnusualFit
         {
             Figures = [.. UnusualFigures.All.Select(f => f.Name)],
             Classes = classes,
             Components = [],
             ComponentVariance = [],
-            ResidualScale = [.. Enumerable.Repeat(1.0, width)],
+            ResidualScale = [.. Enumerable.Repeat(1.0, UnusualFigures.All.Count)],
         };
-        if (rows.Count == 0) return fit;
-        fit = WithDirections(fit, [.. rows.Select(r => r.Z)]);
-        return WithDistances(fit, rows);
+        return rows.Count == 0 ? fit : WithDirections(fit, rows);
     }
 
     /// <summary>
@@ -110,10 +128,8 @@ public static class UnusualVehicles
         return known.Count < LeastVehicles ? 1 : Math.Max(0.2, RobustSigma(known, 0));
     }
 
-    private static UnusualFit WithDistances(UnusualFit fit, IReadOnlyList<(VehicleClass Class, double[] Z)> rows)
+    private static UnusualFit WithDistances(UnusualFit fit, IReadOnlyList<(VehicleClass Class, UnusualDistances Of)> distances)
     {
-        var unit = new DistanceSpread(0, 1);
-        var distances = rows.Select(r => (r.Class, Of: fit.Against(r.Z, unit, unit))).ToList();
         var (fleetSpe, fleetT2) = (Of(distances.Select(d => d.Of.SquaredPredictionError)), Of(distances.Select(d => d.Of.HotellingT2)));
         return fit with
         {
@@ -130,8 +146,10 @@ public static class UnusualVehicles
     private static DistanceSpread Of(IEnumerable<double> meanSquares)
     {
         var roots = meanSquares.Select(Math.Cbrt).ToList();
+        if (roots.Count == 0) return new(1, 1);
         var centre = roots.Median();
-        return new(centre, Math.Max(RobustSigma(roots, centre), 0.05));
+        // The upper half only: it is the upper tail that a limit is set on, and it is the longer one.
+        return new(centre, Math.Max(RobustSigma([.. roots.Where(r => r >= centre)], centre), 0.05));
     }
 
     /// <summary>From the median absolute deviation; from the mean absolute deviation where more than half the values are equal.</summary>

@@ -14,6 +14,12 @@ internal sealed class FleetFitting(FactReader facts, RunStore runs, TimeProvider
     /// <summary>Workshop records older than this, in days before the as-of date, no longer anchor the steering's zero.</summary>
     private const int InOrderDays = 180;
 
+    /// <summary>Days before the as-of date that tell how a vehicle steers now, and the straight runs that suffice.</summary>
+    private const int PresentDays = 42, PresentRuns = 20;
+
+    /// <summary>Marks the vehicle as it was before; no id may hold a blank.</summary>
+    private const string AsItWas = " before";
+
     /// <summary>The snapshot as of a day, or as of the newest fact (never in the future) where none is given.</summary>
     /// <returns>The snapshot, and how many vehicles and straight runs it rests on.</returns>
     public async Task<(FleetSnapshot Snapshot, int Vehicles, int Runs)> Make(DateOnly? asOf, CancellationToken cancel)
@@ -37,13 +43,44 @@ internal sealed class FleetFitting(FactReader facts, RunStore runs, TimeProvider
     private static FleetSnapshot Fit(IReadOnlyList<VehicleFacts> fleet, IReadOnlyDictionary<string, DepotSettings> settings, IReadOnlyList<StraightRun> straight, IReadOnlyList<VehicleSteeringStudy> studies, DateOnly day)
     {
         var torque = TorqueKinds(straight, studies);
-        var roads = RoadModel.Fit(straight, [.. fleet.Select(v => RoadVehicle(v, torque.GetValueOrDefault(v.Vehicle.VehicleId), day))]);
+        var roads = Roads(fleet, straight, torque, day);
         var tread = fleet.Select(v => VehicleFiguresOf.Tread(v, settings.GetValueOrDefault(v.Depot.DepotId))).ToList();
         var wear = FleetWear.Fit(tread, day);
         var figures = fleet.AsParallel().AsOrdered()
             .Select((v, i) => VehicleFiguresOf.Figures(v, settings.GetValueOrDefault(v.Depot.DepotId), VehicleWear.Estimate(tread[i], wear, day), roads.Of(v.Vehicle.VehicleId), day))
             .ToList();
         return new FleetSnapshot { AsOf = day, Wear = wear, Roads = roads, Unusual = UnusualVehicles.Fit(figures) };
+    }
+
+    /// <summary>
+    /// Roads keep their bank, a vehicle does not keep its alignment. So each vehicle enters twice: as it is now (the last
+    /// weeks, but never from before an alignment) and as it was, which only helps to measure the roads.
+    /// </summary>
+    private static RoadFit Roads(IReadOnlyList<VehicleFacts> fleet, IReadOnlyList<StraightRun> straight, Dictionary<string, TorqueKind> torque, DateOnly day)
+    {
+        var runs = new List<StraightRun>(straight.Count);
+        var vehicles = new List<RoadVehicle>();
+        var byVehicle = straight.ToLookup(r => r.VehicleId);
+        foreach (var v in fleet)
+        {
+            var now = RoadVehicle(v, torque.GetValueOrDefault(v.Vehicle.VehicleId), day);
+            vehicles.Add(now);
+            var since = PresentSince(v, byVehicle[now.VehicleId], day);
+            var before = now with { VehicleId = now.VehicleId + AsItWas, FoundInOrder = false };
+            foreach (var run in byVehicle[now.VehicleId]) runs.Add(run.Start >= since ? run : run with { VehicleId = before.VehicleId });
+            if (byVehicle[now.VehicleId].Any(r => r.Start < since)) vehicles.Add(before);
+        }
+        var fit = RoadModel.Fit(runs, vehicles);
+        return fit with { Vehicles = [.. fit.Vehicles.Where(v => !v.VehicleId.EndsWith(AsItWas, StringComparison.Ordinal))] };
+    }
+
+    private static DateTimeOffset PresentSince(VehicleFacts v, IEnumerable<StraightRun> runs, DateOnly day)
+    {
+        var alignment = v.WorkshopRecords.LastOrDefault(w => w.Body.Result == WorkshopResult.Adjusted)?.At ?? DateTimeOffset.MinValue;
+        var window = new DateTimeOffset(day.AddDays(-PresentDays), TimeOnly.MinValue, TimeSpan.Zero);
+        // A vehicle that hardly drove of late is judged on what there is since its alignment.
+        var since = runs.Count(r => r.Start >= window) >= PresentRuns ? window : DateTimeOffset.MinValue;
+        return since > alignment ? since : alignment;
     }
 
     private static RoadVehicle RoadVehicle(VehicleFacts v, TorqueKind torque, DateOnly day) =>

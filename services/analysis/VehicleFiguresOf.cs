@@ -13,7 +13,8 @@ internal static class VehicleFiguresOf
     {
         Vehicle = v.Vehicle,
         Depot = v.Depot,
-        Surveys = [.. v.Surveys.Select(s => new StoredSurvey(s.FactId, s.Body))],
+        // A survey that is held counts too, but only as far as its most probable explanation carries it.
+        Surveys = [.. v.Surveys.Concat(v.HeldSurveys).Select(s => new StoredSurvey(s.FactId, s.Body))],
         Fittings = [.. v.Fittings.Select(f => f.Body)],
         Tyres = [.. v.Tyres.Select(t => t.Body)],
         Limits = Limits(settings),

@@ -3,6 +3,7 @@ using Grpc.Core;
 using Grpc.Net.Client;
 using WearWatch.Contracts.V1;
 using WearWatch.Storage;
+using WearWatch.Storage.Cluster;
 
 namespace WearWatch;
 

@@ -35,7 +35,7 @@ internal sealed class DemoCommand : AsyncCommand<DemoCommand.Settings>
             Directory.Exists(Folder) ? ValidationResult.Success() : ValidationResult.Error("start the demo with deploy/wearwatch demo: it makes the fleet first");
     }
 
-    protected override async Task<int> ExecuteAsync(CommandContext context, Settings settings, CancellationToken cancel)
+    public override async Task<int> ExecuteAsync(CommandContext context, Settings settings, CancellationToken cancel)
     {
         var data = Path.Combine(Installation.DataFolder, $"demo-{Environment.ProcessId}");
         try

@@ -24,7 +24,7 @@ internal sealed class ImportCommand : AsyncCommand<ImportCommand.Settings>
             Directory.Exists(Folder) ? ValidationResult.Success() : ValidationResult.Error($"the folder '{Folder}' is not there");
     }
 
-    protected override async Task<int> ExecuteAsync(CommandContext context, Settings settings, CancellationToken cancel)
+    public override async Task<int> ExecuteAsync(CommandContext context, Settings settings, CancellationToken cancel)
     {
         await using var installation = await Installation.Reach(cancel);
         var outcomes = await Waiting.Show("Importing", progress => ImportFolder.Run(settings.Folder, installation.Ingest, progress, cancel));

@@ -34,7 +34,7 @@ internal sealed class ServeCommand : AsyncCommand<ServeCommand.Settings>
                 : Port is < 0 or > 65535 ? ValidationResult.Error("--port must lie in 0 to 65535") : ValidationResult.Success();
     }
 
-    protected override async Task<int> ExecuteAsync(CommandContext context, Settings settings, CancellationToken cancel)
+    public override async Task<int> ExecuteAsync(CommandContext context, Settings settings, CancellationToken cancel)
     {
         var options = new HostOptions { Port = settings.Port, Only = settings.Services, Database = settings.Database, Verbose = settings.Verbose };
         await using var installation = await Installation.Start(Path.Combine(Installation.DataFolder, "fleet"), options, cancel);

@@ -7,7 +7,7 @@ namespace WearWatch.Commands;
 /// <summary>Where the services are and how far they have come.</summary>
 internal sealed class StatusCommand : AsyncCommand<OutputSettings>
 {
-    protected override async Task<int> ExecuteAsync(CommandContext context, OutputSettings settings, CancellationToken cancel)
+    public override async Task<int> ExecuteAsync(CommandContext context, OutputSettings settings, CancellationToken cancel)
     {
         await using var installation = await Installation.Reach(cancel);
         var deadline = DateTime.UtcNow.AddMinutes(1);

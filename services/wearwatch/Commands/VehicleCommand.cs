@@ -17,7 +17,7 @@ internal sealed class VehicleCommand : AsyncCommand<VehicleCommand.Settings>
         public string VehicleId { get; init; } = "";
     }
 
-    protected override async Task<int> ExecuteAsync(CommandContext context, Settings settings, CancellationToken cancel)
+    public override async Task<int> ExecuteAsync(CommandContext context, Settings settings, CancellationToken cancel)
     {
         await using var installation = await Installation.Reach(cancel);
         try

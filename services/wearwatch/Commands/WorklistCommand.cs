@@ -42,7 +42,7 @@ internal sealed class WorklistCommand : AsyncCommand<WorklistCommand.Settings>
             : Csv && Json ? ValidationResult.Error("--csv and --json exclude each other") : ValidationResult.Success();
     }
 
-    protected override async Task<int> ExecuteAsync(CommandContext context, Settings settings, CancellationToken cancel)
+    public override async Task<int> ExecuteAsync(CommandContext context, Settings settings, CancellationToken cancel)
     {
         await using var installation = await Installation.Reach(cancel);
         var list = await WorklistPages.Read(installation.Report, settings.Depot, settings.Order!.Value, cancel);

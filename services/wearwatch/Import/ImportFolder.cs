@@ -100,7 +100,7 @@ internal static class ImportFolder
         try
         {
             // A file that breaks off halfway is refused whole: its samples are read before any is sent.
-            var chunks = file.Chunks().ToList();
+            var chunks = file.Chunks();
             using var call = ingest.StreamSteering(deadline: DateTime.UtcNow.AddMinutes(10), cancellationToken: cancel);
             var samples = new ConcurrentDictionary<long, int>();
             var answers = Task.Run(async () =>
@@ -110,13 +110,22 @@ internal static class ImportFolder
                     lock (outcome) Count(outcome, $"{file.File} chunk {answer.Sequence}", answer.Outcome, answer.Known, answer.Remarks, samples.GetValueOrDefault(answer.Sequence));
                 }
             }, cancel);
-            await call.RequestStream.WriteAsync(new StreamSteeringRequest { Header = file.Header }, cancel);
-            foreach (var chunk in chunks)
+            try
             {
-                samples[chunk.Sequence] = Math.Max(chunk.Columns[0].Values.Count, chunk.Columns[0].PreciseValues.Count);
-                await call.RequestStream.WriteAsync(new StreamSteeringRequest { Chunk = chunk }, cancel);
+                await call.RequestStream.WriteAsync(new StreamSteeringRequest { Header = file.Header }, cancel);
+                foreach (var chunk in chunks)
+                {
+                    samples[chunk.Sequence] = Math.Max(chunk.Columns[0].Values.Count, chunk.Columns[0].PreciseValues.Count);
+                    await call.RequestStream.WriteAsync(new StreamSteeringRequest { Chunk = chunk }, cancel);
+                }
+                await call.RequestStream.CompleteAsync();
             }
-            await call.RequestStream.CompleteAsync();
+            catch (RpcException)
+            {
+                // The stream ended while it was being written: why, the answers' end tells.
+                await answers;
+                throw;
+            }
             await answers;
         }
         catch (InvalidDataException broken)

@@ -53,12 +53,13 @@ internal sealed record SteeringFile(StreamHeader Header, string Path, string Fil
 
     /// <summary>Reads the file chunk by chunk; a gap in <c>time_s</c> starts a new chunk.</summary>
     /// <exception cref="InvalidDataException">A column is unknown or missing, or a field is not a number (with its line).</exception>
-    public IEnumerable<SteeringChunk> Chunks()
+    public List<SteeringChunk> Chunks()
     {
         using var text = CsvTable.OpenText(Path);
         using var reader = Sep.New(',').Reader(o => o with { DisableColCountCheck = true }).From(text);
         var columns = Columns(reader.Header.ColNames);
         var chunk = new ChunkBuilder(Header, Start);
+        var chunks = new List<SteeringChunk>();
         var last = double.NaN;
         while (reader.MoveNext())
         {
@@ -66,13 +67,14 @@ internal sealed record SteeringFile(StreamHeader Header, string Path, string Fil
             if (row.ColCount != columns.Length)
                 throw new InvalidDataException($"line {row.LineNumberFrom}: {row.ColCount} fields, the header has {columns.Length} (a decimal comma? Use a point as the decimal mark)");
             var time = Time(row[0].Span, row.LineNumberFrom);
-            if (chunk.Samples > 0 && (chunk.Samples == ChunkSamples || time - last > 1.5 / Header.RateHz || time <= last)) yield return chunk.Take();
+            if (chunk.Samples > 0 && (chunk.Samples == ChunkSamples || time - last > 1.5 / Header.RateHz || time <= last)) chunks.Add(chunk.Take());
             chunk.Begin(time);
             for (var i = 1; i < columns.Length; i++) chunk.Add(columns[i], row[i].Span, row.LineNumberFrom);
             chunk.Samples++;
             last = time;
         }
-        if (chunk.Samples > 0) yield return chunk.Take();
+        if (chunk.Samples > 0) chunks.Add(chunk.Take());
+        return chunks;
     }
 
     private Channel[] Columns(IReadOnlyList<string> names)

@@ -1,5 +1,4 @@
 using System.Globalization;
-using WearWatch.Contracts.V1;
 using WearWatch.Import;
 
 namespace WearWatch.Output;

@@ -73,7 +73,7 @@ internal static class Screen
         console.MarkupLineInterpolated($"[italic]{report.Notice}[/]");
     }
 
-    private static void Causes(IAnsiConsole console, Diagnosis d)
+    private static void Causes(IAnsiConsole console, Contracts.V1.Diagnosis d)
     {
         var table = new Table().Border(TableBorder.Simple).AddColumns("cause", "axle", "side", "if so: value (90 %)", "beyond tolerance", "probability");
         foreach (var c in d.Causes.Where(c => c.Probability >= 0.01).Take(8))
@@ -84,7 +84,7 @@ internal static class Screen
         if (table.Rows.Count > 0) console.Write(table);
     }
 
-    private static void Tyres(IAnsiConsole console, Diagnosis d)
+    private static void Tyres(IAnsiConsole console, Contracts.V1.Diagnosis d)
     {
         var table = new Table().Border(TableBorder.Simple).AddColumns("tyre", "depth at governing groove", "wear mm/1000 km", "to the limit km", "limit mm");
         foreach (var t in d.Tyres)

@@ -22,7 +22,8 @@ public sealed record CorrelatedLine
     public required double[] Standardised { get; init; }
     public required int Count { get; init; }
 
-    public double ChiSquare => Standardised.Sum(r => r * r);
+    /// <summary>Residuals against their whole covariance, r'V⁻¹r on n − 2 degrees of freedom, with the robust weights in.</summary>
+    public required double ChiSquare { get; init; }
 
     /// <summary>Null with fewer than two places.</summary>
     public static CorrelatedLine? Fit(IReadOnlyList<LineReading> readings)
@@ -47,6 +48,7 @@ public sealed record CorrelatedLine
             Slope = new(fit.B, Math.Sqrt(fit.Bb)),
             AtLast = new(fit.A, Math.Sqrt(fit.Aa)),
             Standardised = residuals,
+            ChiSquare = fit.ChiSquare,
             Count = n,
         };
     }
@@ -69,7 +71,7 @@ public sealed record CorrelatedLine
         return change > 1e-4;
     }
 
-    private static (double A, double B, double Aa, double Bb) Solve(IReadOnlyList<LineReading> readings, double[] weights, double x0, double[] residuals)
+    private static (double A, double B, double Aa, double Bb, double ChiSquare) Solve(IReadOnlyList<LineReading> readings, double[] weights, double x0, double[] residuals)
     {
         var n = readings.Count;
         var v = new double[n, n];
@@ -99,8 +101,14 @@ public sealed record CorrelatedLine
         var determinant = s11 * sxx - s1x * s1x;
         var b = (s11 * sxy - s1x * s1y) / determinant;
         var a = (sxx * s1y - s1x * sxy) / determinant;
-        for (var i = 0; i < n; i++) residuals[i] = readings[i].Y - a - b * (readings[i].X - x0);
-        return (a, b, sxx / determinant, s11 / determinant);
+        double chiSquare = 0;
+        for (var i = 0; i < n; i++)
+        {
+            residuals[i] = readings[i].Y - a - b * (readings[i].X - x0);
+            var white = y[i] - a * one[i] - b * x[i];
+            chiSquare += white * white;
+        }
+        return (a, b, sxx / determinant, s11 / determinant, chiSquare);
     }
 }
 

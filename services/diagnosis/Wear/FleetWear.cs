@@ -1,8 +1,17 @@
 using WearWatch.Diagnosis.Facts;
-using WearWatch.Diagnosis.Statistics;
 using WearWatch.Diagnosis.Tread;
 
 namespace WearWatch.Diagnosis.Wear;
+
+/// <summary>Bias of one survey's depths, mm.</summary>
+/// <param name="Mm">How much too deep it reads.</param>
+/// <param name="OwnSd">Error of that against the fleet's other readers.</param>
+/// <param name="CommonSd">Error that all readers may share.</param>
+public readonly record struct ReadingBias(double Mm, double OwnSd, double CommonSd)
+{
+    /// <summary>Error of both parts.</summary>
+    public double Sd => Math.Sqrt(OwnSd * OwnSd + CommonSd * CommonSd);
+}
 
 /// <summary>
 /// What the whole fleet says of normal wear, of its technicians and gauges, and of the noise of its readings. Immutable
@@ -28,11 +37,16 @@ public sealed record FleetWear
 
     public NormalWear For(Vehicle vehicle, Position position) => For(vehicle.Class, WearPrior.RoleOf(vehicle, position.Axle), position.Dual);
 
-    /// <summary>How much too deep a survey reads, mm: its technician's and its gauge's bias; an unknown hand has the prior's width.</summary>
-    public Estimate BiasOf(TreadSurvey survey)
+    /// <summary>How much too deep a survey reads: its technician's and its gauge's bias; an unknown hand has the prior's width.</summary>
+    public ReadingBias BiasOf(TreadSurvey survey)
     {
-        var technician = Technicians.FirstOrDefault(t => t.Reader == survey.Technician)?.BiasMm ?? new(0, GaugeNoise.TechnicianSdMm);
-        var gauge = Gauges.FirstOrDefault(g => g.Reader == survey.Gauge)?.BiasMm ?? new(0, survey.Gauge is null ? 0 : GaugeNoise.GaugeSdMm);
-        return technician + gauge;
+        var technician = Technicians.FirstOrDefault(t => t.Reader == survey.Technician);
+        var gauge = Gauges.FirstOrDefault(g => g.Reader == survey.Gauge);
+        var unknown = (technician is null ? Square(GaugeNoise.TechnicianSdMm) : 0) + (gauge is null && survey.Gauge is not null ? Square(GaugeNoise.GaugeSdMm) : 0);
+        var own = unknown + Square(technician?.AgainstOthersSdMm ?? 0) + Square(gauge?.AgainstOthersSdMm ?? 0);
+        var whole = unknown + Square(technician?.BiasMm.StandardError ?? 0) + Square(gauge?.BiasMm.StandardError ?? 0);
+        return new((technician?.BiasMm.Value ?? 0) + (gauge?.BiasMm.Value ?? 0), Math.Sqrt(own), Math.Sqrt(Math.Max(0, whole - own)));
     }
+
+    private static double Square(double x) => x * x;
 }

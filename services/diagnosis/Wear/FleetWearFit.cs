@@ -68,8 +68,8 @@ internal sealed class FleetWearFit
     {
         var (t, g) = (_technicianOf[vehicle][survey], _gaugeOf[vehicle][survey]);
         if (_fleet.Technicians.Count == 0 && _fleet.Gauges.Count == 0) return (new(0, GaugeNoise.TechnicianSdMm), t < 0 ? -1 : t);
-        var technician = t >= 0 ? _fleet.Technicians[t].BiasMm : new(0, GaugeNoise.TechnicianSdMm);
-        return (technician + (g >= 0 ? _fleet.Gauges[g].BiasMm : new(0, 0)), t < 0 ? -1 : t);
+        var technician = t >= 0 ? _fleet.Technicians[t].BiasMm with { StandardError = _fleet.Technicians[t].AgainstOthersSdMm } : new(0, GaugeNoise.TechnicianSdMm);
+        return (technician + (g >= 0 ? _fleet.Gauges[g].BiasMm with { StandardError = _fleet.Gauges[g].AgainstOthersSdMm } : new(0, 0)), t < 0 ? -1 : t);
     }
 
     private List<ReaderBiases.Reading> Readings(Fitting fitting, int vehicle) =>

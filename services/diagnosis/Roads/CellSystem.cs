@@ -18,6 +18,9 @@ public sealed class CellSystem(int globals, int cells, CellRow[] rows)
     /// <summary>Beyond this many unknowns the solve is iterative and standard errors come from random probes.</summary>
     public const int LargestDense = 2000;
 
+    /// <summary>Up to here the solve itself is direct; the inverse for the errors is direct up to <see cref="LargestDense"/>.</summary>
+    private const int LargestDirect = 256;
+
     private const int Probes = 64;
 
     private readonly double[] _pivot = Pivots(cells, rows);
@@ -27,7 +30,7 @@ public sealed class CellSystem(int globals, int cells, CellRow[] rows)
     /// <summary>Solves for the globals; <c>start</c> only speeds the iterative way up.</summary>
     public double[] Solve(double[] start)
     {
-        if (globals > LargestDense) return ConjugateGradients(Right(), start);
+        if (globals > LargestDirect) return ConjugateGradients(Right(), start);
         return Schur().Cholesky().Solve(Vector<double>.Build.DenseOfArray(Right())).ToArray();
     }
 
@@ -49,9 +52,10 @@ public sealed class CellSystem(int globals, int cells, CellRow[] rows)
         var variance = new double[cells];
         var diagonal = GlobalVariances();
         var inverse = globals <= LargestDense ? Inverse() : null;
+        var slot = Slots();
         foreach (var (cell, from, to) in Groups())
         {
-            var load = Loads(from, to);
+            var load = Loads(from, to, slot);
             variance[cell] = 1 / _pivot[cell];
             foreach (var (j, lj) in load)
             {
@@ -83,39 +87,72 @@ public sealed class CellSystem(int globals, int cells, CellRow[] rows)
         }
     }
 
-    /// <summary>Σ weight·cellFactor·factor for each global the cell's equations touch, by index.</summary>
-    private SortedDictionary<int, double> Loads(int from, int to)
+    /// <summary>Σ weight·cellFactor·factor for each global the cell's equations touch, in order of first touch.</summary>
+    private (int Index, double Load)[] Loads(int from, int to, int[] slot)
     {
-        var load = new SortedDictionary<int, double>();
+        var load = new (int Index, double Load)[Math.Min(globals, 3 * (to - from))];
+        var used = 0;
+        void Touch(int index, double value)
+        {
+            if (index < 0) return;
+            if (slot[index] < 0)
+            {
+                slot[index] = used;
+                load[used++] = (index, 0);
+            }
+            load[slot[index]].Load += value;
+        }
         for (var i = from; i < to; i++)
         {
-            var r = rows[i];
+            ref readonly var r = ref rows[i];
             var w = r.Weight * r.CellFactor;
-            if (r.A >= 0) load[r.A] = load.GetValueOrDefault(r.A) + w * r.FactorA;
-            if (r.B >= 0) load[r.B] = load.GetValueOrDefault(r.B) + w * r.FactorB;
-            if (r.C >= 0) load[r.C] = load.GetValueOrDefault(r.C) + w * r.FactorC;
+            Touch(r.A, w * r.FactorA);
+            Touch(r.B, w * r.FactorB);
+            Touch(r.C, w * r.FactorC);
         }
+        Array.Resize(ref load, used);
+        foreach (var (index, _) in load) slot[index] = -1;
         return load;
+    }
+
+    private int[] Slots()
+    {
+        var slot = new int[globals];
+        Array.Fill(slot, -1);
+        return slot;
     }
 
     private Matrix<double> Schur()
     {
-        var schur = Matrix<double>.Build.Dense(globals, globals);
-        foreach (var r in rows)
+        var schur = new double[globals * globals]; // symmetric, so that row and column order are one
+        void Add(int j, int k, double value)
         {
-            Span<(int Index, double Factor)> parts = [(r.A, r.FactorA), (r.B, r.FactorB), (r.C, r.FactorC)];
-            foreach (var (j, fj) in parts)
-                foreach (var (k, fk) in parts)
-                    if (j >= 0 && k >= 0) schur[j, k] += r.Weight * fj * fk;
+            if (j >= 0 && k >= 0) schur[j * globals + k] += value;
         }
+        foreach (ref readonly var r in rows.AsSpan())
+        {
+            Add(r.A, r.A, r.Weight * r.FactorA * r.FactorA);
+            Add(r.B, r.B, r.Weight * r.FactorB * r.FactorB);
+            Add(r.C, r.C, r.Weight * r.FactorC * r.FactorC);
+            Add(r.A, r.B, r.Weight * r.FactorA * r.FactorB);
+            Add(r.B, r.A, r.Weight * r.FactorA * r.FactorB);
+            Add(r.A, r.C, r.Weight * r.FactorA * r.FactorC);
+            Add(r.C, r.A, r.Weight * r.FactorA * r.FactorC);
+            Add(r.B, r.C, r.Weight * r.FactorB * r.FactorC);
+            Add(r.C, r.B, r.Weight * r.FactorB * r.FactorC);
+        }
+        var slot = Slots();
         foreach (var (cell, from, to) in Groups())
         {
-            var load = Loads(from, to);
+            var load = Loads(from, to, slot);
             foreach (var (j, lj) in load)
-                foreach (var (k, lk) in load)
-                    schur[j, k] -= lj * lk / _pivot[cell];
+            {
+                var row = schur.AsSpan(j * globals, globals);
+                var scaled = lj / _pivot[cell];
+                foreach (var (k, lk) in load) row[k] -= scaled * lk;
+            }
         }
-        return schur;
+        return Matrix<double>.Build.Dense(globals, globals, schur);
     }
 
     private double[] Right()
@@ -153,9 +190,13 @@ public sealed class CellSystem(int globals, int cells, CellRow[] rows)
             if (r.A >= 0) diagonal[r.A] += r.Weight * r.FactorA * r.FactorA;
             if (r.B >= 0) diagonal[r.B] += r.Weight * r.FactorB * r.FactorB;
             if (r.C >= 0) diagonal[r.C] += r.Weight * r.FactorC * r.FactorC;
+            if (r.A >= 0 && r.A == r.B) diagonal[r.A] += 2 * r.Weight * r.FactorA * r.FactorB;
+            if (r.A >= 0 && r.A == r.C) diagonal[r.A] += 2 * r.Weight * r.FactorA * r.FactorC;
+            if (r.B >= 0 && r.B == r.C) diagonal[r.B] += 2 * r.Weight * r.FactorB * r.FactorC;
         }
+        var slot = Slots();
         foreach (var (cell, from, to) in Groups())
-            foreach (var (j, lj) in Loads(from, to)) diagonal[j] -= lj * lj / _pivot[cell];
+            foreach (var (j, lj) in Loads(from, to, slot)) diagonal[j] -= lj * lj / _pivot[cell];
         return diagonal;
     }
 

@@ -10,13 +10,15 @@ namespace WearWatch.Diagnosis.Roads;
 /// </summary>
 internal sealed class RoadSolve
 {
-    private const int MostIterations = 100;
-    private const double Settled = 1e-8;
+    private const int MostIterations = 300;
+    private const double Settled = 1e-7;
 
     private readonly RoadProblem _p;
     private readonly double[] _weight;
     private readonly double[] _prior;
     private readonly double[] _scale;
+    private readonly double[] _centre;
+    private readonly int[] _byCell;
     private CellSystem _system;
 
     public RoadSolve(RoadProblem problem)
@@ -30,6 +32,8 @@ internal sealed class RoadSolve
         PullSpread = problem.Gains.Select(g => RoadPriors.PullSpread(g.Class)).ToArray();
         OffCentreSpread = problem.Gains.Select(_ => RoadPriors.OffCentreSpread).ToArray();
         Start();
+        _centre = Enumerable.Range(0, problem.Unknowns).Select(Centre).ToArray();
+        _byCell = Enumerable.Range(0, problem.Observations.Count).OrderBy(k => problem.Observations[k].Cell).ToArray();
         _system = new(0, 0, []);
     }
 
@@ -49,6 +53,13 @@ internal sealed class RoadSolve
     {
         var (run, trip) = Noise[(int)o.Witness];
         return o.Variance + run * run + _p.SizeOfTrip[o.Trip] * trip * trip;
+    }
+
+    /// <summary>One standard deviation of a single observation about the vehicle and its road.</summary>
+    public double SpreadOf(in Observation o)
+    {
+        var (run, trip) = Noise[(int)o.Witness];
+        return Math.Sqrt(o.Variance + run * run + trip * trip);
     }
 
     public double WeightOf(int observation) => _weight[observation] / VarianceOf(_p.Observations[observation]);
@@ -135,19 +146,21 @@ internal sealed class RoadSolve
         foreach (var c in _p.Component) if (c >= 0) _scale[c] = RoadPriors.NetworkError;
     }
 
+    /// <summary>Priors of the unknowns first, then each cell's prior followed by its observations.</summary>
     private CellRow[] Rows()
     {
-        var rows = new List<CellRow>(_p.Unknowns + Bank.Length + _p.Observations.Count);
-        for (var i = 0; i < _p.Unknowns; i++) rows.Add(new(-1, 0, i, 1, -1, 0, -1, 0, Centre(i), _prior[i] / (_scale[i] * _scale[i])));
-        var ofCell = new List<CellRow>(Bank.Length + _p.Observations.Count);
+        var rows = new CellRow[_p.Unknowns + Bank.Length + _p.Observations.Count];
+        var at = 0;
+        for (var i = 0; i < _p.Unknowns; i++) rows[at++] = new(-1, 0, i, 1, -1, 0, -1, 0, _centre[i], _prior[i] / (_scale[i] * _scale[i]));
+        var next = 0;
         for (var c = 0; c < Bank.Length; c++)
         {
             var (side, vehicle, _) = _p.CellList[c];
-            ofCell.Add(new(c, 1, _p.Crown[side], -1, _p.Component[_p.ComponentOfVehicle[vehicle]], -1, -1, 0, 0, 1 / (RoadPriors.CellWidth * RoadPriors.CellWidth)));
+            rows[at++] = new(c, 1, _p.Crown[side], -1, _p.Component[_p.ComponentOfVehicle[vehicle]], -1, -1, 0, 0, 1 / (RoadPriors.CellWidth * RoadPriors.CellWidth));
+            for (; next < _byCell.Length && _p.Observations[_byCell[next]].Cell == c; next++)
+                rows[at++] = Row(_p.Observations[_byCell[next]], WeightOf(_byCell[next]));
         }
-        for (var k = 0; k < _p.Observations.Count; k++) ofCell.Add(Row(_p.Observations[k], WeightOf(k)));
-        rows.AddRange(ofCell.OrderBy(r => r.Cell));
-        return [.. rows];
+        return rows;
     }
 
     private double Centre(int unknown)
@@ -182,12 +195,11 @@ internal sealed class RoadSolve
     {
         var residuals = new double[_p.Observations.Count];
         for (var k = 0; k < residuals.Length; k++) residuals[k] = Residual(_p.Observations[k]);
-        foreach (var witness in Enum.GetValues<Witness>()) Noise[(int)witness] = TripSpread.Of(witness, _p, residuals, _weight, this);
+        (double, double)[] noise = [.. Enum.GetValues<Witness>().Select(w => TripSpread.Of(w, _p, residuals, this))];
+        noise.CopyTo(Noise, 0);
         for (var k = 0; k < residuals.Length; k++)
         {
-            var o = _p.Observations[k];
-            var (run, trip) = Noise[(int)o.Witness];
-            _weight[k] = Huber(residuals[k] / Math.Sqrt(o.Variance + run * run + trip * trip));
+            _weight[k] = Huber(residuals[k] / SpreadOf(_p.Observations[k]));
         }
         for (var v = 0; v < _p.Vehicles.Length; v++)
         {

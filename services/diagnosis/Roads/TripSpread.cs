@@ -2,34 +2,43 @@ namespace WearWatch.Diagnosis.Roads;
 
 /// <summary>
 /// How much a witness varies beyond its runs' own standard errors: within a trip, and between the trips of a vehicle (wind, load,
-/// the sensor's zero at key-on). Moments of the residuals, each drawn to its prior by four observations' worth.
+/// the sensor's zero at key-on). Moments of the residuals, cut at 2.5 of their present standard deviations so that gross errors do not
+/// blow the spread up, each drawn to its prior by four observations' worth.
 /// </summary>
 internal static class TripSpread
 {
-    public static (double Run, double Trip) Of(Witness witness, RoadProblem p, double[] residuals, double[] weight, RoadSolve solve)
+    private const double Cut = 2.5;
+
+    /// <summary>Share of a normal variance left by the cut: 2Φ(k) − 1 − 2kφ(k) + 2k²(1 − Φ(k)) at k = 2.5.</summary>
+    private const double LeftByCut = 0.97757;
+
+    public static (double Run, double Trip) Of(Witness witness, RoadProblem p, double[] residuals, RoadSolve solve)
     {
         var (priorRun, priorTrip) = RoadPriors.Noise(witness);
-        var trips = new SortedDictionary<int, (int Vehicle, int N, double Sum, double Squares, double Own)>();
+        var byTrip = new (int Vehicle, int N, double Sum, double Squares, double Own)[p.SizeOfTrip.Count];
         var used = new double[p.CellList.Count];
         var precision = new double[p.CellList.Count];
         for (var k = 0; k < residuals.Length; k++)
         {
             var o = p.Observations[k];
             var load = CellLoad(o.Witness, o.Gain, p, solve);
-            precision[o.Cell] += load * load * solve.WeightOf(k);
+            var weighed = load * load * solve.WeightOf(k);
+            precision[o.Cell] += weighed;
             if (o.Witness != witness) continue;
-            used[o.Cell] += load * load * solve.WeightOf(k);
-            var t = trips.GetValueOrDefault(o.Trip);
-            var r = Math.Sqrt(weight[k]) * residuals[k]; // Huber's winsorised square
-            trips[o.Trip] = (o.Vehicle, t.N + 1, t.Sum + weight[k] * residuals[k], t.Squares + r * r, t.Own + o.Variance);
+            used[o.Cell] += weighed;
+            var t = byTrip[o.Trip];
+            var bound = Cut * solve.SpreadOf(o);
+            var cut = Math.Clamp(residuals[k], -bound, bound) / Math.Sqrt(LeftByCut);
+            byTrip[o.Trip] = (o.Vehicle, t.N + 1, t.Sum + cut, t.Squares + cut * cut, t.Own + o.Variance);
         }
-        if (trips.Count == 0) return (priorRun, priorTrip);
+        var trips = byTrip.Where(t => t.N > 0).ToArray(); // trips are counted per witness
+        if (trips.Length == 0) return (priorRun, priorTrip);
         var taken = 0.0; // residuals that the cells themselves took up
         for (var c = 0; c < used.Length; c++) taken += used[c] / (precision[c] + 1 / (RoadPriors.CellWidth * RoadPriors.CellWidth));
-        var all = trips.Values.Sum(t => t.N);
+        var all = trips.Sum(t => t.N);
         var kept = Math.Max(0.1, 1 - taken / all);
         var (within, freedom, own) = (0.0, 0.0, 0.0);
-        foreach (var t in trips.Values)
+        foreach (var t in trips)
         {
             within += t.Squares - t.Sum * t.Sum / t.N;
             freedom += (t.N - 1) * kept;
@@ -37,7 +46,7 @@ internal static class TripSpread
         }
         var run = Shrink(freedom > 0 ? within / freedom - own / all : 0, freedom, priorRun);
         var (between, degrees) = (0.0, 0.0);
-        foreach (var vehicle in trips.Values.GroupBy(t => t.Vehicle).Where(g => g.Count() > 1))
+        foreach (var vehicle in trips.GroupBy(t => t.Vehicle).Where(g => g.Count() > 1))
         {
             var means = vehicle.Select(t => (Mean: t.Sum / t.N, Error: (run * run + t.Own / t.N) / t.N)).ToArray();
             var centre = means.Average(m => m.Mean);

@@ -15,10 +15,12 @@ public readonly record struct BlockSummary(float Mean, float Min, float Max)
 /// <summary>Reduces one block of samples, NaN being missing. The vector form is the one used; the scalar form is its test oracle.</summary>
 public static class BlockPass
 {
+    private const int ShortestVectors = 3;
+
     public static BlockSummary Vectorised(ReadOnlySpan<float> samples)
     {
         var width = Vector<float>.Count;
-        if (samples.Length < width) return Scalar(samples);
+        if (samples.Length < ShortestVectors * width) return Scalar(samples); // the lanes would cost more to gather than they save
         var sum = Vector<float>.Zero;
         var min = new Vector<float>(float.PositiveInfinity);
         var max = new Vector<float>(float.NegativeInfinity);
@@ -35,8 +37,8 @@ public static class BlockPass
         var (total, least, most, absent) = (Vector.Sum(sum), float.PositiveInfinity, float.NegativeInfinity, Vector.Sum(missing));
         for (var lane = 0; lane < width; lane++)
         {
-            if (min[lane] < least) least = min[lane];
-            if (max[lane] > most) most = max[lane];
+            least = float.MinNative(min[lane], least);
+            most = float.MaxNative(max[lane], most);
         }
         for (var i = vectors.Length * width; i < samples.Length; i++) Take(samples[i], ref total, ref least, ref most, ref absent);
         return Close(samples.Length, total, least, most, absent);
@@ -53,8 +55,8 @@ public static class BlockPass
     {
         if (float.IsNaN(x)) { absent++; return; }
         total += x;
-        if (x < least) least = x;
-        if (x > most) most = x;
+        least = float.MinNative(x, least); // one instruction each; NaN is already out
+        most = float.MaxNative(x, most);
     }
 
     private static BlockSummary Close(int length, float total, float least, float most, int absent)

@@ -84,36 +84,35 @@ internal sealed class GatedStream
         if (!Blocks.Has(SteeringChannel.Speed)) return;
         var (hasYaw, hasAngle) = (Blocks.Has(SteeringChannel.YawRate), Blocks.Has(SteeringChannel.SteeringWheelAngle));
         if (!hasYaw && !hasAngle) return;
-        var middle = hasYaw ? 0 : MedianAngleMoving();
-        var lane = Blocks.Max(SteeringChannel.LaneKeeping);
+        var side = Blocks.Mean(hasYaw ? SteeringChannel.YawRate : SteeringChannel.SteeringWheelAngle);
+        var middle = hasYaw ? (float)YawBiasDegS : MedianAngleMoving();
+        var bound = hasYaw ? StraightGates.YawRateDegS : StraightGates.AngleFromMedianDeg;
         var least = Blocks.Min(SteeringChannel.SteeringWheelAngle);
         var most = Blocks.Max(SteeringChannel.SteeringWheelAngle);
+        var speed = Blocks.Mean(SteeringChannel.Speed);
+        var brake = Blocks.Max(SteeringChannel.Brake);
+        var drive = Blocks.Mean(SteeringChannel.DriveTorque);
+        var lane = Blocks.Max(SteeringChannel.LaneKeeping);
         var driven = DriveThreshold();
         for (var i = 0; i < Blocks.Count; i++)
         {
-            var lateral = hasYaw
-                ? Math.Abs(Yaw(i)) < StraightGates.YawRateDegS
-                : Math.Abs(Blocks.Mean(SteeringChannel.SteeringWheelAngle)[i] - middle) < StraightGates.AngleFromMedianDeg;
-            if (!lateral) continue;
-            if (hasAngle && (most[i] - least[i]) / Blocks.Seconds[i] > StraightGates.SteeringRateDegS) continue;
-            var mode = LongitudinalMode(i, driven);
+            if (!(Math.Abs(side[i] - middle) < bound)) continue;
+            if (hasAngle && most[i] - least[i] > StraightGates.SteeringRateDegS * Blocks.Seconds[i]) continue;
+            var mode = LongitudinalMode(speed[i], Slope[i], !brake.IsEmpty && brake[i] > 0, !drive.IsEmpty && drive[i] > driven);
             if (mode == NoRun) continue;
-            if (!lane.IsEmpty && lane[i] > 0) { LaneKeepingSeconds += Blocks.Seconds[i]; continue; }
-            _mode[i] = mode;
+            if (!lane.IsEmpty && lane[i] > 0) LaneKeepingSeconds += Blocks.Seconds[i];
+            else _mode[i] = mode;
         }
     }
 
-    private int LongitudinalMode(int i, float driven)
+    private static int LongitudinalMode(float speed, float slope, bool braking, bool driven)
     {
-        var speed = Blocks.Mean(SteeringChannel.Speed)[i];
-        var braking = Blocks.Has(SteeringChannel.Brake) && Blocks.Max(SteeringChannel.Brake)[i] > 0;
         if (braking)
-            return speed > StraightGates.BrakingSpeedKmH && Math.Abs(Slope[i]) <= StraightGates.BrakeAcceleration ? (int)RunMode.Brake : NoRun;
+            return speed > StraightGates.BrakingSpeedKmH && Math.Abs(slope) <= StraightGates.BrakeAcceleration ? (int)RunMode.Brake : NoRun;
         if (!(speed > StraightGates.SpeedKmH)) return NoRun;
-        if (Slope[i] > StraightGates.SteadyAcceleration) return Slope[i] <= StraightGates.DriveAcceleration ? (int)RunMode.Drive : NoRun;
-        if (!(Slope[i] >= -StraightGates.SteadyAcceleration)) return NoRun;
-        var drive = Blocks.Mean(SteeringChannel.DriveTorque);
-        return !drive.IsEmpty && drive[i] > driven ? (int)RunMode.Drive : (int)RunMode.Coast;
+        if (slope > StraightGates.SteadyAcceleration) return slope <= StraightGates.DriveAcceleration ? (int)RunMode.Drive : NoRun;
+        if (!(slope >= -StraightGates.SteadyAcceleration)) return NoRun;
+        return driven ? (int)RunMode.Drive : (int)RunMode.Coast;
     }
 
     private float DriveThreshold()
@@ -139,12 +138,13 @@ internal sealed class GatedStream
         var slope = new float[blocks.Count];
         if (!blocks.Has(SteeringChannel.Speed)) return slope;
         var speed = blocks.Mean(SteeringChannel.Speed);
+        var (joined, ticks) = (blocks.Joined, blocks.StartTicks);
         for (var i = 0; i < slope.Length; i++)
         {
             var (from, to) = (i, i);
-            while (from > i - 2 && from > 0 && blocks.Joined[from]) from--;
-            while (to < i + 2 && to + 1 < slope.Length && blocks.Joined[to + 1]) to++;
-            var seconds = (blocks.StartTicks[to] - blocks.StartTicks[from]) / (double)TimeSpan.TicksPerSecond;
+            while (from > i - 2 && from > 0 && joined[from]) from--;
+            while (to < i + 2 && to + 1 < slope.Length && joined[to + 1]) to++;
+            var seconds = (ticks[to] - ticks[from]) / (double)TimeSpan.TicksPerSecond;
             slope[i] = seconds > 0 ? (float)((speed[to] - speed[from]) / 3.6 / seconds) : 0;
         }
         return slope;

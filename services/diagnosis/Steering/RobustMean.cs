@@ -17,11 +17,11 @@ public static class RobustMean
     /// by (1+3ρ)/n (Kendall 1954, from memory) and held to 0…0.9. A step that noise does not dither adds its full step²/12.</remarks>
     public static Estimate? Of(ReadOnlySpan<double> blocks, double resolution, double sampleRange, int samples)
     {
-        var kept = new double[blocks.Length];
+        Span<double> kept = blocks.Length <= 128 ? stackalloc double[blocks.Length] : new double[blocks.Length];
         var n = 0;
         foreach (var x in blocks) if (!double.IsNaN(x)) kept[n++] = x;
         if (n < 3) return null;
-        var values = kept.AsSpan(0, n);
+        var values = kept[..n];
         var centre = Huber(values);
         var variance = 0.0;
         var lagged = 0.0;
@@ -39,30 +39,42 @@ public static class RobustMean
     }
 
     /// <summary>Huber's location with the scale fixed at the median absolute deviation; the mean where that is 0.</summary>
+    /// <remarks>Newton's steps on Σψ, which end exactly once no value changes sides; should a step leave all the data it goes half way back to the median.</remarks>
     public static double Huber(ReadOnlySpan<double> values)
     {
-        var sorted = values.ToArray();
-        Array.Sort(sorted);
-        var centre = Median(sorted);
-        var deviations = new double[sorted.Length];
-        for (var i = 0; i < sorted.Length; i++) deviations[i] = Math.Abs(sorted[i] - centre);
-        Array.Sort(deviations);
+        var n = values.Length;
+        Span<double> sorted = n <= 128 ? stackalloc double[n] : new double[n];
+        Span<double> deviations = n <= 128 ? stackalloc double[n] : new double[n];
+        values.CopyTo(sorted);
+        sorted.Sort();
+        var median = Median(sorted);
+        for (var i = 0; i < n; i++) deviations[i] = Math.Abs(sorted[i] - median);
+        deviations.Sort();
         var bound = HuberK * Median(deviations) / 0.6745;
-        if (!(bound > 0)) return sorted.Average();
+        if (!(bound > 0)) return Mean(sorted);
+        var centre = median;
         for (var iteration = 0; iteration < 100; iteration++)
         {
-            var (weighted, weights) = (0.0, 0.0);
+            var (pull, inside) = (0.0, 0);
             foreach (var x in sorted)
             {
-                var w = Math.Abs(x - centre) <= bound ? 1 : bound / Math.Abs(x - centre);
-                weighted += w * x;
-                weights += w;
+                var away = x - centre;
+                if (Math.Abs(away) <= bound) inside++;
+                pull += Math.Clamp(away, -bound, bound);
             }
-            var next = weighted / weights;
-            if (Math.Abs(next - centre) <= 1e-10 * bound) return next;
+            // At least half the values lie within the bound of the median; should a step lose them all, half a step goes back.
+            var next = inside > 0 ? centre + pull / inside : (centre + median) / 2;
+            if (Math.Abs(next - centre) <= 1e-12 * bound) return next;
             centre = next;
         }
         return centre;
+    }
+
+    private static double Mean(ReadOnlySpan<double> values)
+    {
+        var sum = 0.0;
+        foreach (var x in values) sum += x;
+        return sum / values.Length;
     }
 
     internal static double Median(ReadOnlySpan<double> sorted) =>

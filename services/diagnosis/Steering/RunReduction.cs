@@ -52,7 +52,7 @@ public static class RunReduction
             while (to < blocks.Count && blocks.Joined[to] && stream.Mode(to) == mode) to++;
             if (mode is not null)
             {
-                var seconds = blocks.Seconds.AsSpan(from, to - from).ToArray().Sum();
+                var seconds = RunReader.Sum(blocks.Seconds, from, to);
                 var parts = (int)Math.Ceiling(seconds / StraightGates.LongestRunS - 1e-6);
                 if (seconds >= StraightGates.ShortestRunS - 1e-3)
                     for (var p = 0; p < parts; p++)
@@ -143,6 +143,14 @@ internal sealed class RunReader(string vehicleId, string streamId, GatedStream s
             hi = Math.Max(hi, most[i]);
             samples += stream.Blocks.Samples[i];
         }
+        var coarse = channel switch
+        {
+            SteeringChannel.DriverTorque => StraightGates.CoarseTorqueNm,
+            SteeringChannel.SteeringWheelAngle => StraightGates.CoarseAngleDeg,
+            _ => double.PositiveInfinity,
+        };
+        // The rounding error of an unmoved coarse step is the same in run after run: averaging over runs would hide it.
+        if (resolution >= coarse && hi - lo <= 2 * resolution) return null;
         return RobustMean.Of(_scratch.AsSpan(0, to - from), resolution, hi - lo, samples);
     }
 
@@ -153,7 +161,7 @@ internal sealed class RunReader(string vehicleId, string streamId, GatedStream s
         return (double.NaN, double.NaN);
     }
 
-    private static double Sum(ReadOnlySpan<float> values, int from, int to)
+    internal static double Sum(ReadOnlySpan<float> values, int from, int to)
     {
         var sum = 0.0;
         foreach (var x in values[from..to]) sum += x;

@@ -23,6 +23,8 @@ public static class StraightGates
     public const double ShortestRunS = 5;
     /// <summary>Longest run, s: near the length of a road cell at speed.</summary>
     public const double LongestRunS = 30;
+    /// <summary>Steps from which a signal is too coarse unless its own noise moves it over more than two of them: torque N·m, angle deg (from memory).</summary>
+    public const double CoarseTorqueNm = 0.5, CoarseAngleDeg = 0.5;
     /// <summary>A channel that does not change for this long while moving is frozen, s.</summary>
     public const double FrozenS = 30;
     /// <summary>Slower than this is standing, km/h (from memory).</summary>

@@ -44,6 +44,8 @@ internal static class StreamStudy
         };
     }
 
+    private static string Invariant(double value) => value.ToString("0.###", System.Globalization.CultureInfo.InvariantCulture);
+
     private static bool Present(Blocks blocks, SteeringChannel channel) => channel switch
     {
         SteeringChannel.Latitude => blocks.Latitude.Any(double.IsFinite),
@@ -59,11 +61,15 @@ internal static class StreamStudy
         else if (!blocks.Has(SteeringChannel.DriverTorque)) yield return "steering pull: no driver torque; a driver torque channel in N·m would help";
         else if (compensation && !blocks.Has(SteeringChannel.AssistTorque)) yield return "steering pull: pull compensation takes it off the driver's torque; the assist torque would help";
         if (!blocks.Has(SteeringChannel.SteeringWheelAngle)) yield return "off-centre angle: no steering-wheel angle; a steering-wheel angle channel would help";
+        if (blocks.Resolution(SteeringChannel.DriverTorque) is var step and >= StraightGates.CoarseTorqueNm)
+            yield return $"steering pull: torque comes in steps of {Invariant(step)} N·m, too coarse where its own noise does not move it; steps of 0.1 N·m or finer would help";
+        if (blocks.Resolution(SteeringChannel.SteeringWheelAngle) is var turn and >= StraightGates.CoarseAngleDeg)
+            yield return $"off-centre angle: angle comes in steps of {Invariant(turn)} deg, too coarse where its own noise does not move it; steps of 0.1 deg or finer would help";
         if (!blocks.Has(SteeringChannel.YawRate)) yield return "curvature and bank: no yaw rate; a yaw rate channel would help";
         else if (stream.YawZero == YawZero.NotTaken) yield return "zero of the yaw rate: the vehicle neither stood for 5 s nor drove straight for 60 s; a log from key-on would help";
         if (!blocks.Has(SteeringChannel.LateralAcceleration)) yield return "own bank reading: no lateral acceleration; a lateral acceleration channel would help";
         if (!blocks.Latitude.Any(double.IsFinite)) yield return "roads shared with other vehicles: no position; latitude and longitude would help";
-        foreach (var (channel, seconds) in frozen.OrderBy(f => f.Key)) yield return $"{channel} stood frozen for {seconds:0} s of driving and was left out there";
+        foreach (var (channel, seconds) in frozen.OrderBy(f => f.Key)) yield return $"{channel} stood frozen for {Invariant(Math.Round(seconds))} s of driving and was left out there";
         if (together < 0) yield return "signs: steering-wheel angle and yaw rate have opposite signs; one of the two is not positive to the left";
         if (runs.Count > 0) yield break;
         yield return stream.LaneKeepingSeconds > 0

@@ -16,6 +16,13 @@ public static class ChunkCodec
     public const byte Version = 1;
 
     private const int ZstdLevel = 3;
+    // A context costs more to make than a minute's chunk to pack; one a thread is kept.
+    [ThreadStatic]
+    private static Compressor? _compressor;
+
+    [ThreadStatic]
+    private static Decompressor? _decompressor;
+
     private const int FixedBytes = 1 + 1 + 8 + 8 + 4 + 1;
 
     /// <exception cref="ArgumentException">A value is infinite or too large for its resolution.</exception>
@@ -24,8 +31,7 @@ public static class ChunkCodec
         var present = columns.Columns.ToArray();
         var plain = new ArrayBufferWriter<byte>(64 + columns.Count * present.Length * 2);
         foreach (var column in present) ColumnCodec.Write(plain, column);
-        using var compressor = new Compressor(ZstdLevel);
-        var packed = compressor.Wrap(plain.WrittenSpan);
+        var packed = (_compressor ??= new Compressor(ZstdLevel)).Wrap(plain.WrittenSpan);
         var head = FixedBytes + present.Length + 4;
         var bytes = new byte[head + packed.Length];
         (bytes[0], bytes[1]) = (Version, (byte)columns.TorqueUnit);
@@ -91,8 +97,7 @@ public static class ChunkCodec
         int written;
         try
         {
-            using var decompressor = new Decompressor();
-            if (!decompressor.TryUnwrap(frame, plain, out written)) throw new InvalidDataException("compressed columns are longer than they say");
+            if (!(_decompressor ??= new Decompressor()).TryUnwrap(frame, plain, out written)) throw new InvalidDataException("compressed columns are longer than they say");
         }
         catch (ZstdException e)
         {

@@ -132,6 +132,19 @@ public class RunReductionTests
     }
 
     [Fact]
+    public void Whole_newton_metres_and_degrees_give_no_figure_and_say_so()
+    {
+        var chunks = Usual().Chunks().Select(c => (c.Item1, new SteeringColumns(c.Item2.Start, c.Item2.RateHz, c.Item2.Columns.Select(k =>
+            k.Channel is SteeringChannel.DriverTorque or SteeringChannel.AssistTorque or SteeringChannel.SteeringWheelAngle
+                ? SteeringColumn.Of(k.Channel, k.Values!.Select(x => MathF.Round(x)).ToArray(), 1) : k)))).ToList();
+        var result = Reduce(chunks);
+        Assert.NotEmpty(result.Runs);
+        Assert.All(result.Runs, r => Assert.True(r.TorqueNm is null && r.AngleDeg is null && r.BankReading is not null));
+        Assert.Contains(result.Study.NotPossible, n => n.Contains("steps of 1 N·m"));
+        Assert.Contains(result.Study.NotPossible, n => n.Contains("steps of 1 deg"));
+    }
+
+    [Fact]
     public void Standing_still_gives_no_run_and_says_why()
     {
         var result = Reduce(new Drive().Stand(300).Chunks());

@@ -11,6 +11,7 @@ public static class CauseEstimate
 {
     /// <summary>Angle stories that are weighed jointly with each look-alike; the rest are combined by a bound.</summary>
     private const int WeighedJointly = 3;
+    private const double WorthWeighing = 0.02, PairWorthWeighing = 0.003;
 
     /// <summary>Share of posterior below which a cell is left out of what the money needs.</summary>
     private const double LeastEffect = 1e-4;
@@ -20,12 +21,12 @@ public static class CauseEstimate
         var model = new VehicleModel(figures);
         var weigher = new StoryWeigher(model);
         var stories = Stories.Of(model, priors);
-        var angles = stories.Where(s => s.IsAngle).Select(s => weigher.Weigh(s)).ToArray();
-        var looks = stories.Where(s => !s.IsAngle).Select(s => weigher.Weigh(s)).ToArray();
-        var mixture = new Mixture(angles, looks, weigher.InOrder(), priors.MisalignedShare);
-        foreach (var angle in Enumerable.Range(0, angles.Length).OrderByDescending(a => mixture.AngleShare(a)).Take(WeighedJointly).ToArray())
-            for (var look = 0; look < looks.Length; look++)
-                if (looks[look].Story.Moves.Count > 0) mixture.Refine(angle, look, weigher.Weigh(angles[angle].Story, looks[look].Story));
+        var inOrder = weigher.InOrder();
+        var alone = weigher.Weigh([.. stories.Select(s => (s, (Story?)null))], inOrder);
+        var angles = alone.Where(f => f.Story.IsAngle).ToArray();
+        var looks = alone.Where(f => !f.Story.IsAngle).ToArray();
+        var mixture = new Mixture(angles, looks, inOrder, priors.MisalignedShare);
+        WeighPairs(weigher, mixture, Math.Max(inOrder, alone.Max(f => f.Evidence)));
         return new Verdict
         {
             MisalignedProbability = mixture.Misaligned,
@@ -33,6 +34,17 @@ public static class CauseEstimate
             CannotTell = CannotTellWords.Of(model, mixture.Misaligned),
             Effects = Effects(model, mixture),
         };
+    }
+
+    private static void WeighPairs(StoryWeigher weigher, Mixture mixture, double best)
+    {
+        var likely = Enumerable.Range(0, mixture.Angles.Count).Where(a => mixture.AngleShare(a) >= WorthWeighing)
+            .OrderByDescending(mixture.AngleShare).Take(WeighedJointly).ToArray();
+        var moving = Enumerable.Range(0, mixture.Looks.Count).Where(l => mixture.Looks[l].Story.Moves.Count > 0).ToArray();
+        (int Angle, int Look)[] pairs = [.. likely.SelectMany(a => moving.Where(l => mixture.PairShare(a, l) >= PairWorthWeighing).Select(l => (a, l)))];
+        if (pairs.Length == 0) return;
+        var fits = weigher.Weigh([.. pairs.Select(p => (mixture.Angles[p.Angle].Story, (Story?)mixture.Looks[p.Look].Story))], best);
+        for (var i = 0; i < pairs.Length; i++) mixture.Refine(pairs[i].Angle, pairs[i].Look, fits[i]);
     }
 
     private static IReadOnlyList<Cause> Causes(Mixture mixture) =>
@@ -69,7 +81,7 @@ public static class CauseEstimate
             var (fit, share, cells) = (mixture.Angles[a], mixture.AngleShare(a), mixture.AngleCells(a));
             for (var i = 0; i < cells.Length; i++)
                 if (share * cells[i] >= LeastEffect)
-                    effects.Add(StoryEffect.Of(model, fit.Story, fit.Story.Cells[i].Middle, share * cells[i], fit.LogServiceSlip[i]));
+                    effects.Add(StoryEffect.Of(model, fit.Story, fit.Story.Cells[i].Middle, share * cells[i], fit.LogSlipScale[i]));
         }
         return effects;
     }

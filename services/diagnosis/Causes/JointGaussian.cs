@@ -18,14 +18,27 @@ public readonly record struct JointFit(double LogLikelihood, int Worst, double W
 /// </remarks>
 public sealed class JointGaussian
 {
-    private const int Sensitivity = 10; // service slip, edge, camber edge, feather, torque gain, ratio, vehicle rate, roll front, roll rear, scrub share
+    /// <summary>Shared unknowns beside the states, in this order.</summary>
+    private enum Shared { SlipAgainstEdge, CamberEdge, Feather, TorqueGain, Ratio, VehicleRate, RollFront, RollRear, ScrubShare, Count }
+
+    private const int Sensitivity = (int)Shared.Count;
+
+    // Slip scale (one over service slip) and edge share, as logarithms, are turned into the sum that moves every edge
+    // (Gain, held fixed at each call) and the difference that moves rates against edges (a Gaussian unknown).
+    private static readonly double GainSd = Math.Sqrt(Sq(Sensitivities.ServiceSlipSpread) + Sq(Sensitivities.EdgeSpread));
+    private static readonly double SlipPerGain = Sq(Sensitivities.ServiceSlipSpread) / GainSd, EdgePerGain = Sq(Sensitivities.EdgeSpread) / GainSd;
+    private static readonly double Difference = Sensitivities.ServiceSlipSpread * Sensitivities.EdgeSpread / GainSd;
+
     private readonly VehicleModel _model;
     private readonly IReadOnlyList<Observable> _rows;
     private readonly double[] _priorSd;
-    private readonly double[,] _a; // whitened Jacobian
-    private readonly double[,] _lower; // Cholesky factor of I + AᵀA, then its inverse
+    private readonly double[] _a; // one row of the Jacobian
+    private readonly double[] _upper, _inverse; // U of I + AᵀA = UᵀU and U⁻¹, row by row
     private readonly bool[] _wild;
-    private readonly double[] _residual, _slip, _duty, _camber, _shared, _b, _mean, _variance;
+    private readonly int[] _columns; // nonzero columns of one row
+    private readonly (int[] Columns, double[] Values)[] _sparse;
+    private double _slipScale = 1, _edgeScale = 1;
+    private readonly double[] _forward, _residual, _slip, _duty, _camber, _shared, _b, _mean, _variance;
     private readonly int[][] _support; // states that reach a tyre at all
 
     public JointGaussian(VehicleModel model, IReadOnlyList<Observable> rows)
@@ -33,8 +46,10 @@ public sealed class JointGaussian
         (_model, _rows) = (model, rows);
         _priorSd = [.. model.Dimensions.Select(d => d.PriorSd)];
         var (n, p, tyres) = (rows.Count, States + Sensitivity, model.Positions.Count);
-        (_a, _lower, _wild) = (new double[n, p], new double[p, p], new bool[n]);
+        (_a, _upper, _inverse, _forward, _wild) = (new double[p], new double[p * p], new double[p * p], new double[p], new bool[n]);
         (_residual, _b, _mean, _variance) = (new double[n], new double[p], new double[p], new double[p]);
+        _columns = new int[p];
+        _sparse = [.. Enumerable.Range(0, n).Select(_ => (Array.Empty<int>(), Array.Empty<double>()))];
         (_slip, _duty, _camber, _shared) = (new double[tyres], new double[tyres], new double[tyres], new double[tyres]);
         _support = [.. Enumerable.Range(0, tyres).Select(i => Enumerable.Range(0, States)
             .Where(d => model.Slip[i, d] != 0 || model.Duty[i, d] != 0 || model.Camber[i, d] != 0).ToArray())];
@@ -42,8 +57,13 @@ public sealed class JointGaussian
 
     public int States => _model.Dimensions.Count;
 
-    /// <summary>Index of the service slip's logarithm among the unknowns.</summary>
-    public int ServiceSlip => States;
+    /// <summary>Posterior mean and SD of the slip scale's logarithm after <see cref="At"/>: above zero, slip wears more than the class's prior says.</summary>
+    public (double Mean, double Sd) LogSlipScale() =>
+        (Math.Log(_slipScale) + Difference * _mean[States], Difference * Math.Sqrt(_variance[States]));
+
+    /// <summary>Holds the gain common to all edges at so many prior SDs; it scales everything, so that a Gaussian would miss its tails.</summary>
+    public void HoldGain(double standardDeviations) =>
+        (_slipScale, _edgeScale) = (Math.Exp(SlipPerGain * standardDeviations), Math.Exp(EdgePerGain * standardDeviations));
 
     /// <summary>Evaluates at a state; the priors of the story's own dimensions are replaced by <paramref name="priorSd"/>.</summary>
     /// <param name="state">Departures from target, one per dimension.</param>
@@ -53,14 +73,14 @@ public sealed class JointGaussian
     {
         var sd = priorSd.IsEmpty ? _priorSd : priorSd;
         TyreStates(state);
-        Array.Clear(_a);
         Array.Clear(_wild);
         for (var r = 0; r < _rows.Count; r++)
         {
+            Array.Clear(_a);
             var row = _rows[r];
-            var predicted = row.Tyre < 0 ? FillSteering(r, row.Kind, state, sd) : FillTyre(r, row.Kind, row.Tyre, sd);
+            var predicted = row.Tyre < 0 ? FillSteering(row.Kind, state, sd) : FillTyre(row.Kind, row.Tyre, sd);
             var white = 1 / Math.Sqrt(row.Variance);
-            for (var k = 0; k < States + Sensitivity; k++) _a[r, k] *= white;
+            Compress(r, white);
             _residual[r] = (row.Value - predicted) * white;
         }
         return Solve();
@@ -82,7 +102,7 @@ public sealed class JointGaussian
         var (mean, variance) = (_slip[tyre] + _duty[tyre], 0.0);
         foreach (var d in _support[tyre])
         {
-            var reach = (_model.Slip[tyre, d] + _model.Duty[tyre, d]) * priorSd[d];
+            var reach = (_slipScale * _model.Slip[tyre, d] + _model.Duty[tyre, d]) * priorSd[d];
             mean += reach * _mean[d];
             variance += reach * reach * _variance[d];
         }
@@ -112,15 +132,16 @@ public sealed class JointGaussian
             foreach (var d in _support[i])
             {
                 if (state[d] == 0) continue;
-                _slip[i] += _model.Slip[i, d] * state[d];
+                var slip = _slipScale * _model.Slip[i, d] * state[d];
+                _slip[i] += slip;
                 _duty[i] += _model.Duty[i, d] * state[d];
                 _camber[i] += _model.Camber[i, d] * state[d];
-                if (_model.ShareUncertain[d]) _shared[i] += _model.Slip[i, d] * state[d];
+                if (_model.ShareUncertain[d]) _shared[i] += slip;
             }
         }
     }
 
-    private double FillSteering(int r, ObservableKind kind, ReadOnlySpan<double> state, ReadOnlySpan<double> sd)
+    private double FillSteering(ObservableKind kind, ReadOnlySpan<double> state, ReadOnlySpan<double> sd)
     {
         var map = kind == ObservableKind.SteeringPull ? _model.Torque : _model.WheelAngle;
         double predicted = 0, gained = 0;
@@ -129,120 +150,153 @@ public sealed class JointGaussian
             predicted += map[d] * state[d];
             // The sensor's own zero is not scaled by the steering ratio.
             if (_model.Dimensions[d].Quantity != Facts.Quantity.SensorZeroOrFrontToeSplit) gained += map[d] * state[d];
-            _a[r, d] = map[d] * sd[d];
+            _a[d] = map[d] * sd[d];
         }
         if (kind == ObservableKind.SteeringPull)
-            _a[r, States + 4] = gained * Math.Sqrt(Math.Pow(Sensitivities.TorqueGainSpread, 2) + Math.Pow(_model.AssistSpread, 2));
+            _a[Column(Shared.TorqueGain)] = gained * Math.Sqrt(Sq(Sensitivities.TorqueGainSpread) + Sq(_model.AssistSpread));
         else
-            _a[r, States + 5] = gained * (_model.Figures.Vehicle.SteeringRatio is null ? Sensitivities.RatioSpreadClass : Sensitivities.RatioSpreadKnown);
+            _a[Column(Shared.Ratio)] = gained * (_model.Figures.Vehicle.SteeringRatio is null ? Sensitivities.RatioSpreadClass : Sensitivities.RatioSpreadKnown);
         return predicted;
     }
 
-    private double FillTyre(int r, ObservableKind kind, int i, ReadOnlySpan<double> sd)
+    private double FillTyre(ObservableKind kind, int i, ReadOnlySpan<double> sd)
     {
         var z = _slip[i];
         var shape = z + _duty[i]; // one-way turning shapes the tread but wears no faster than service
-        double predicted, bySlip, byCamber = 0;
+        double predicted, bySlip, byCamber = 0, byEdge = 0;
         switch (kind)
         {
             case ObservableKind.LogRate:
                 predicted = Math.Log(1 + z * z);
                 bySlip = 2 * z / (1 + z * z);
-                _a[r, States + 6] = Sensitivities.LogRateVehicle;
+                _a[Column(Shared.VehicleRate)] = Sensitivities.LogRateVehicle;
                 break;
             case ObservableKind.EdgeSlope:
-                var (slipEdge, slope) = Observables.EdgeOfSlip(shape);
+                var (edge, slope) = Observables.EdgeOfSlip(shape);
                 var camberEdge = Sensitivities.CamberEdgeShare * _camber[i];
-                (predicted, bySlip, byCamber) = (slipEdge + camberEdge, slope, Sensitivities.CamberEdgeShare);
-                _a[r, States + 1] = slipEdge * Sensitivities.EdgeSpread;
-                _a[r, States + 2] = camberEdge * Sensitivities.CamberEdgeSpread;
-                _a[r, States + (_model.Positions[i].Axle == 1 ? 7 : 8)] = _model.Class.RollShare;
+                byEdge = _edgeScale * edge;
+                (predicted, bySlip, byCamber) = (byEdge + camberEdge, _edgeScale * slope, Sensitivities.CamberEdgeShare);
+                _a[Column(Shared.CamberEdge)] = camberEdge * Sensitivities.CamberEdgeSpread;
+                _a[Column(_model.Positions[i].Axle == 1 ? Shared.RollFront : Shared.RollRear)] = _model.Class.RollShare;
                 break;
             default:
                 var tanh = Math.Tanh(shape);
                 (predicted, bySlip) = (Sensitivities.FeatherMm * tanh, Sensitivities.FeatherMm * (1 - tanh * tanh));
-                _a[r, States + 3] = predicted * Sensitivities.FeatherSpread;
+                _a[Column(Shared.Feather)] = predicted * Sensitivities.FeatherSpread;
                 break;
         }
         foreach (var d in _support[i])
         {
             var duty = kind == ObservableKind.LogRate ? 0 : _model.Duty[i, d];
-            _a[r, d] = (bySlip * (_model.Slip[i, d] + duty) + byCamber * _model.Camber[i, d]) * sd[d];
+            _a[d] = (bySlip * (_slipScale * _model.Slip[i, d] + duty) + byCamber * _model.Camber[i, d]) * sd[d];
         }
-        _a[r, States] = -bySlip * z * Sensitivities.ServiceSlipSpread; // more service slip: fewer of it per degree
-        _a[r, States + 9] = bySlip * _shared[i] * Sensitivities.ShareSpread;
+        _a[Column(Shared.SlipAgainstEdge)] = (bySlip * z - byEdge) * Difference;
+        _a[Column(Shared.ScrubShare)] = bySlip * _shared[i] * Sensitivities.ShareSpread;
         return predicted;
+    }
+
+    private int Column(Shared unknown) => States + (int)unknown;
+
+    private static double Sq(double x) => x * x;
+
+    /// <summary>Whitens a row of the Jacobian and keeps its nonzero columns: a tyre hears of few states.</summary>
+    private void Compress(int r, double white)
+    {
+        var count = 0;
+        for (var k = 0; k < States + Sensitivity; k++)
+            if (_a[k] != 0) _columns[count++] = k;
+        var (columns, values) = _sparse[r];
+        if (columns.Length != count) _sparse[r] = (columns, values) = (new int[count], new double[count]);
+        for (var c = 0; c < count; c++) (columns[c], values[c]) = (_columns[c], _a[_columns[c]] *= white);
     }
 
     private JointFit Solve()
     {
         var (n, p) = (_rows.Count, States + Sensitivity);
-        for (var j = 0; j < p; j++)
-            for (var k = 0; k <= j; k++) _lower[j, k] = j == k ? 1 : 0;
+        Array.Clear(_upper);
         Array.Clear(_b);
+        for (var j = 0; j < p; j++) _upper[j * p + j] = 1;
         double log = 0, quad = 0;
         for (var r = 0; r < n; r++)
         {
             if (_wild[r]) continue;
             quad += _residual[r] * _residual[r];
             log += LogGood - 0.5 * Math.Log(2 * Math.PI * _rows[r].Variance);
-            for (var j = 0; j < p; j++)
+            var (columns, values) = _sparse[r];
+            for (var c = 0; c < columns.Length; c++)
             {
-                var aj = _a[r, j];
-                if (aj == 0) continue;
-                _b[j] += aj * _residual[r];
-                for (var k = 0; k <= j; k++) _lower[j, k] += aj * _a[r, k];
+                _b[columns[c]] += values[c] * _residual[r];
+                for (var e = c; e < columns.Length; e++) _upper[columns[c] * p + columns[e]] += values[c] * values[e];
             }
         }
-        log -= 0.5 * FactorAndInvert(p);
+        log -= 0.5 * Factor(p);
+        Invert(p);
         Posterior(p);
         for (var j = 0; j < p; j++) quad -= _b[j] * _mean[j];
         var (worst, odds) = Worst(p);
         return new(log - 0.5 * quad, worst, odds, _mean, _variance);
     }
 
-    /// <summary>Cholesky factor in place, then its inverse in place; returns the logarithm of the determinant.</summary>
-    private double FactorAndInvert(int p)
+    /// <summary>Cholesky factor in place, by rows, passing over zeros: tyres of different axles meet only in the last columns. Returns the log determinant.</summary>
+    private double Factor(int p)
     {
         double logDet = 0;
-        for (var j = 0; j < p; j++)
+        for (var m = 0; m < p; m++)
         {
-            for (var k = 0; k <= j; k++)
-            {
-                var sum = _lower[j, k];
-                for (var m = 0; m < k; m++) sum -= _lower[j, m] * _lower[k, m];
-                _lower[j, k] = j == k ? Math.Sqrt(sum) : sum / _lower[k, k];
-            }
-            logDet += 2 * Math.Log(_lower[j, j]);
-        }
-        for (var j = 0; j < p; j++)
-        {
-            var diagonal = 1 / _lower[j, j];
-            for (var k = 0; k < j; k++)
-            {
-                double sum = 0;
-                for (var m = k; m < j; m++) sum += _lower[j, m] * _lower[m, k];
-                _lower[j, k] = -sum * diagonal;
-            }
-            _lower[j, j] = diagonal;
+            var pivot = _upper.AsSpan(m * p, p);
+            var root = Math.Sqrt(pivot[m]);
+            logDet += 2 * Math.Log(root);
+            for (var k = m; k < p; k++) pivot[k] /= root;
+            for (var j = m + 1; j < p; j++)
+                if (pivot[j] != 0) Subtract(_upper.AsSpan(j * p + j, p - j), pivot[j..], pivot[j]);
         }
         return logDet;
     }
 
-    private void Posterior(int p)
+    private void Invert(int p)
     {
-        Array.Clear(_mean);
-        Array.Clear(_variance);
-        for (var j = 0; j < p; j++)
+        Array.Clear(_inverse);
+        for (var k = 0; k < p; k++)
         {
-            double t = 0;
-            for (var k = 0; k <= j; k++) t += _lower[j, k] * _b[k];
-            for (var k = 0; k <= j; k++)
+            var row = _inverse.AsSpan(k * p, p);
+            row[k] = 1;
+            for (var m = k; m < p; m++)
             {
-                _mean[k] += _lower[j, k] * t;
-                _variance[k] += _lower[j, k] * _lower[j, k];
+                if (row[m] == 0) continue;
+                row[m] /= _upper[m * p + m];
+                Subtract(row[(m + 1)..], _upper.AsSpan(m * p + m + 1, p - m - 1), row[m]);
             }
         }
+    }
+
+    private void Posterior(int p)
+    {
+        Forward(p, _b);
+        for (var k = 0; k < p; k++)
+        {
+            double mean = 0, variance = 0;
+            for (var j = k; j < p; j++)
+            {
+                var w = _inverse[k * p + j];
+                mean += w * _forward[j];
+                variance += w * w;
+            }
+            (_mean[k], _variance[k]) = (mean, variance);
+        }
+    }
+
+    /// <summary>U⁻ᵀ times a column.</summary>
+    private void Forward(int p, ReadOnlySpan<double> column)
+    {
+        Array.Clear(_forward);
+        for (var k = 0; k < p; k++)
+            if (column[k] != 0) Subtract(_forward.AsSpan(k), _inverse.AsSpan(k * p + k, p - k), -column[k]);
+    }
+
+    private static void Subtract(Span<double> from, ReadOnlySpan<double> row, double factor)
+    {
+        row = row[..from.Length];
+        for (var i = 0; i < from.Length; i++) from[i] -= factor * row[i];
     }
 
     private (int Row, double LogOdds) Worst(int p)
@@ -252,15 +306,14 @@ public sealed class JointGaussian
         {
             if (_wild[r]) continue;
             double reach = 0, fitted = 0;
-            for (var j = 0; j < p; j++) fitted += _a[r, j] * _mean[j];
+            var (columns, values) = _sparse[r];
+            for (var c = 0; c < columns.Length; c++) fitted += values[c] * _mean[columns[c]];
             var left = _residual[r] - fitted;
-            if (left * left < 1 && worst >= 0) continue; // a reading that fits this well is not the one
-            for (var j = 0; j < p; j++)
-            {
-                double t = 0;
-                for (var k = 0; k <= j; k++) t += _lower[j, k] * _a[r, k];
-                reach += t * t;
-            }
+            if (left * left < 1) continue; // a reading that fits this well is not wild
+            Array.Clear(_a);
+            for (var c = 0; c < columns.Length; c++) _a[columns[c]] = values[c];
+            Forward(p, _a);
+            foreach (var f in _forward) reach += f * f;
             var variance = _rows[r].Variance / Math.Max(1e-9, 1 - reach); // of this reading given the others
             var departure = left / Math.Sqrt(_rows[r].Variance) * variance;
             var odds = LogWild(r) - LogGood - LogNormal(departure, variance);

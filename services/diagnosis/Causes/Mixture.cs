@@ -49,6 +49,9 @@ public sealed class Mixture
 
     public double AngleShare(int angle) => Enumerable.Range(0, Looks.Count + 1).Sum(l => Shares()[angle, l]);
 
+    /// <summary>Posterior share of an angle and a look-alike together.</summary>
+    public double PairShare(int angle, int look) => Shares()[angle, look];
+
     public double LookShare(int look) => Enumerable.Range(0, Angles.Count + 1).Sum(a => Shares()[a, look]);
 
     /// <summary>Posterior share of each cell of an angle story, given that it is out.</summary>

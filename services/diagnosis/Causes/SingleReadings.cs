@@ -5,6 +5,9 @@ using WearWatch.Diagnosis.Wear;
 
 namespace WearWatch.Diagnosis.Causes;
 
+/// <summary>What single readings are compared with at one state: slip that shapes each tyre, torque (N·m) and wheel angle (deg), each with mean and SD.</summary>
+public sealed record StateSeen((double Mean, double Sd)[] Slip, (double Mean, double Sd) Torque, (double Mean, double Sd) WheelAngle);
+
 /// <summary>
 /// Evidence that needs no joint law: hand rubs, pressures, shoulder wear, unevenness round the tyre, pull under
 /// braking, what was seen and what drivers said. Each is weighed against what the story predicts for it.
@@ -29,12 +32,15 @@ public sealed class SingleReadings
 
     private readonly VehicleModel _model;
     private readonly TyreFigures?[] _tyres;
+    private readonly double[] _pressureInOrder, _roundInOrder;
     private readonly int _pullsLeft, _pullsRight, _notStraight, _shakes;
 
     public SingleReadings(VehicleModel model)
     {
         _model = model;
         _tyres = [.. model.Positions.Select(p => model.Figures.At(p))];
+        _pressureInOrder = [.. _tyres.Select(t => t is null ? 0 : Pressure(t, 0))];
+        _roundInOrder = [.. _tyres.Select(t => t is null ? 0 : Round(t, null))];
         var recent = model.Figures.DriverReports
             .Where(r => model.Figures.AsOf.DayNumber - DateOnly.FromDateTime(r.At.UtcDateTime).DayNumber is >= 0 and <= ReportDays)
             .CountBy(r => r.Symptom).ToDictionary();
@@ -44,18 +50,20 @@ public sealed class SingleReadings
         _shakes = recent.GetValueOrDefault(Symptom.Shakes);
     }
 
-    /// <summary>Log likelihood of all of it, up to what every story shares, at the state the joint law was last evaluated at.</summary>
-    public double LogLikelihood(Story? story, double magnitude, JointGaussian joint, ReadOnlySpan<double> state, ReadOnlySpan<double> priorSd)
+    /// <summary>Log likelihood of all of it, up to what every story shares.</summary>
+    public double LogLikelihood(Story? story, double magnitude, StateSeen seen)
     {
-        var sum = Reports(story, joint, state, priorSd) + Brake(story);
+        var sum = Reports(story, seen) + Brake(story);
         double straight = 0, swapped = 0;
         for (var i = 0; i < _tyres.Length; i++)
         {
             if (_tyres[i] is not { } tyre) continue;
             var at = story is not null && story.Axle == tyre.Position.Axle && (story.Side is null || story.Side == tyre.Position.Side);
-            sum += Pressure(tyre, at && story!.Quantity == Quantity.Pressure ? magnitude : 0);
-            var (slip, sd) = joint.ShapeSlip(i, priorSd);
-            sum += Round(tyre, at && story!.Quantity == Quantity.Damper ? magnitude : null, slip);
+            var (slip, sd) = seen.Slip[i];
+            var damper = at && story!.Quantity == Quantity.Damper;
+            sum += at && story!.Quantity == Quantity.Pressure ? Pressure(tyre, magnitude) : _pressureInOrder[i];
+            sum += (damper ? Round(tyre, magnitude) : _roundInOrder[i]) + Cupped(tyre, damper, slip);
+            if (tyre.RubsCatchingOutward + tyre.RubsCatchingInward + tyre.RubsCatchingNeither == 0) continue;
             straight += Rubs(tyre.RubsCatchingOutward, tyre.RubsCatchingInward, tyre.RubsCatchingNeither, slip, sd);
             swapped += Rubs(tyre.RubsCatchingInward, tyre.RubsCatchingOutward, tyre.RubsCatchingNeither, slip, sd);
         }
@@ -72,19 +80,19 @@ public sealed class SingleReadings
         return sum;
     }
 
-    private static double Round(TyreFigures tyre, double? damper, double slip)
+    private static double Round(TyreFigures tyre, double? damper) =>
+        tyre.RoundVariationMm is { } round ? Guarded(round, damper ?? RoundUsual, RoundRest, 1.5) : 0;
+
+    private static double Cupped(TyreFigures tyre, bool damper, double slip)
     {
-        double sum = 0;
-        if (tyre.RoundVariationMm is { } round) sum += Guarded(round, damper ?? RoundUsual, RoundRest, 1.5);
         // Steady slip can start cupping on a free-rolling tyre.
-        var chance = damper is not null ? 0.4 : Math.Abs(slip) > 1.5 ? 0.06 : 0.015;
-        return sum + Math.Log(tyre.Seen.Contains(Seen.Cupped) ? chance : 1 - chance);
+        var chance = damper ? 0.4 : Math.Abs(slip) > 1.5 ? 0.06 : 0.015;
+        return Math.Log(tyre.Seen.Contains(Seen.Cupped) ? chance : 1 - chance);
     }
 
     private static double Rubs(int outward, int inward, int neither, double slip, double sd)
     {
         var count = outward + inward + neither;
-        if (count == 0) return 0;
         var spread = Math.Sqrt(RubSpread * RubSpread + sd * sd);
         var feltOutward = Normal.CDF(0, 1, (slip - RubThreshold) / spread);
         var feltInward = Normal.CDF(0, 1, (-slip - RubThreshold) / spread);
@@ -101,12 +109,11 @@ public sealed class SingleReadings
         return Guarded(pull, 0, (story?.Quantity == Quantity.Drag ? BrakeDragNm : BrakeRestNm) * share, 4 * share);
     }
 
-    private double Reports(Story? story, JointGaussian joint, ReadOnlySpan<double> state, ReadOnlySpan<double> priorSd)
+    private double Reports(Story? story, StateSeen seen)
     {
         if (_model.IsTrailer || _pullsLeft + _pullsRight + _notStraight + _shakes == 0) return 0;
         var felt = 0.35 * Math.Max(0.3, _model.AssistShare); // N·m that a driver notices, from memory
-        var (pull, pullSd) = joint.Steering(_model.Torque, state, priorSd);
-        var (angle, angleSd) = joint.Steering(_model.WheelAngle, state, priorSd);
+        var ((pull, pullSd), (angle, angleSd)) = (seen.Torque, seen.WheelAngle);
         var width = Math.Sqrt(felt * felt + pullSd * pullSd);
         var aside = Math.Sqrt(3 * 3 + angleSd * angleSd);
         return Weak(_pullsRight, Normal.CDF(0, 1, (pull - felt) / width)) + Weak(_pullsLeft, Normal.CDF(0, 1, (-pull - felt) / width))

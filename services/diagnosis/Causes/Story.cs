@@ -34,8 +34,8 @@ public sealed record Story
 public static class Stories
 {
     /// <summary>Edges of the magnitude's cells, in tolerances; finer where faults are frequent.</summary>
-    private static readonly double[] Slight = [1, 1.12, 1.25, 1.37, 1.5];
-    private static readonly double[] Plain = [1.5, 1.8, 2.1, 2.5, 3, 3.5, 4];
+    private static readonly double[] Slight = [1, 1.15, 1.3, 1.5];
+    private static readonly double[] Plain = [1.5, 1.85, 2.3, 2.8, 3.4, 4];
     private static readonly double[] Gross = [4, 5];
 
     /// <summary>SD of an angle sensor's zero that is worth naming, deg at the wheel (from memory).</summary>
@@ -98,7 +98,7 @@ public static class Stories
         double Share(Quantity q) => priors.LookAlikeShares.GetValueOrDefault(q);
         Story Moving(Quantity q, double low, double high, double leftShare = 0.5)
         {
-            Cell[] positive = [.. Cells([.. Enumerable.Range(0, 8).Select(i => low + (high - low) * i / 7)], 1, leftShare)];
+            Cell[] positive = [.. Cells([.. Enumerable.Range(0, 6).Select(i => low + (high - low) * i / 5)], 1, leftShare)];
             Cell[] negative = [.. Mirrored(positive).Select(c => c with { Share = c.Share * (1 - leftShare) / leftShare })];
             return new() { Quantity = q, Moves = [(model.IndexOf(q), 1)], Cells = [.. negative, .. positive], Share = Share(q) };
         }

@@ -13,7 +13,7 @@ public sealed record StoryEffect(double Probability, IReadOnlyDictionary<Positio
     /// <summary>Extra wear of camber alone: the loaded shoulder goes first, a share of the mean rate per degree (from memory).</summary>
     private const double CamberWearPerDeg = 0.08;
 
-    internal static StoryEffect Of(VehicleModel model, Story story, double magnitude, double probability, (double Mean, double Sd) logServiceSlip)
+    internal static StoryEffect Of(VehicleModel model, Story story, double magnitude, double probability, (double Mean, double Sd) logSlipScale)
     {
         var wear = new Dictionary<Position, double>();
         double drag = 0;
@@ -26,10 +26,10 @@ public sealed record StoryEffect(double Probability, IReadOnlyDictionary<Positio
                 camber += model.Camber[i, state] * magnitude * weight;
             }
             drag += ToeDrag.TyreN(model.Class.TyreStiffnessNPerRad, slip * Sensitivities.ServiceSlipDeg);
-            var z = slip * Math.Exp(-logServiceSlip.Mean);
+            var z = slip * Math.Exp(logSlipScale.Mean);
             var extra = z * z + CamberWearPerDeg * Math.Abs(camber);
             if (extra > 0) wear[model.Positions[i]] = extra;
         }
-        return new StoryEffect(probability, wear, 2 * logServiceSlip.Sd, drag);
+        return new StoryEffect(probability, wear, 2 * logSlipScale.Sd, drag);
     }
 }

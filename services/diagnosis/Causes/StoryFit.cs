@@ -3,14 +3,18 @@ namespace WearWatch.Diagnosis.Causes;
 /// <summary>A story weighed against everything: the log likelihood of each cell of its magnitude.</summary>
 /// <param name="Story">What.</param>
 /// <param name="LogLikelihood">Per cell.</param>
-/// <param name="LogServiceSlip">Posterior mean and SD of the service slip's logarithm, per cell, in units of 1.</param>
-public sealed record StoryFit(Story Story, double[] LogLikelihood, (double Mean, double Sd)[] LogServiceSlip)
+/// <param name="LogSlipScale">Posterior mean and SD of the slip scale's logarithm, per cell.</param>
+public sealed record StoryFit(Story Story, double[] LogLikelihood, (double Mean, double Sd)[] LogSlipScale)
 {
     /// <summary>Log likelihood of the story with its magnitude integrated out.</summary>
-    public double Evidence { get; } = LogSum(Story.Cells.Select((c, i) => Math.Log(c.Share) + LogLikelihood[i]));
+    public double Evidence => LogSum(Story.Cells.Select((c, i) => Math.Log(c.Share) + LogLikelihood[i]));
 
     /// <summary>Posterior share of each cell, given the story.</summary>
-    public double[] CellShares() => [.. Story.Cells.Select((c, i) => Math.Exp(Math.Log(c.Share) + LogLikelihood[i] - Evidence))];
+    public double[] CellShares()
+    {
+        var evidence = Evidence;
+        return [.. Story.Cells.Select((c, i) => Math.Exp(Math.Log(c.Share) + LogLikelihood[i] - evidence))];
+    }
 
     /// <summary>ln Σ exp, safe against overflow.</summary>
     public static double LogSum(IEnumerable<double> logs)

@@ -204,7 +204,7 @@ public partial class RuleSetTests
                     ShoulderMmPer1000Km = Noise(RuleLimits.ShoulderShare.Value * normal),
                     FeatherMm = Noise(RuleLimits.Feather.Value),
                     LogRateRatio = Noise(Math.Log(RuleLimits.FastWear.Value)),
-                    PressureShare = new(Normal() * 0.03, 0.03),
+                    PressureShare = new(Normal() * 0.02, 0.02),
                 });
             v = v with { Steering = v.Signals() with { SteeringPullNm = Noise(RuleLimits.SteeringPull.Value), OffCentreDeg = Noise(RuleLimits.OffCentre.Value) } };
             if (GeometryRules.Find(v).Count > 0) found++;

@@ -51,6 +51,19 @@ public static class AxleSkewRule
 
     internal static SkewedAxle? Strongest(VehicleFigures figures) => Standing(figures).MaxBy(a => a.Strength);
 
+    /// <summary>
+    /// Sign of the tandem scrub angle ψ (front axle's direction less the rear one's) as far as the tyres tell; 0 when they do
+    /// not, or when the axles point alike.
+    /// </summary>
+    internal static int TandemSign(VehicleFigures figures)
+    {
+        var numbers = figures.Vehicle.FixedAxles().Select(a => a.Number).ToList();
+        if (numbers.Count < 2) return 0;
+        var standing = Standing(figures);
+        double Of(int axle) => standing.FirstOrDefault(a => a.Axle.Number == axle)?.Sign ?? 0;
+        return Math.Sign(Of(numbers[0]) - Of(numbers[^1]));
+    }
+
     internal static IEnumerable<Evidence> EvidenceOf(VehicleFigures figures, SkewedAxle skewed)
     {
         foreach (var dual in WheelPair.Members(skewed.Axle))

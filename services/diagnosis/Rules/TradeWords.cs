@@ -56,23 +56,3 @@ internal static class TradeWords
 
     private static bool OnlySteerAxle(Vehicle vehicle, int axle) => vehicle.IsFront(axle) && vehicle.Axles.Count(a => vehicle.IsFront(a.Number)) == 1;
 }
-
-/// <summary>What the rules need to know of a vehicle's axles.</summary>
-internal static class AxleKinds
-{
-    /// <summary>The foremost axle of a motor vehicle and steered axles that follow it directly.</summary>
-    public static bool IsFront(this Vehicle vehicle, int axle) =>
-        vehicle.Class != VehicleClass.Trailer
-        && (axle == vehicle.Axles.Min(a => a.Number) || vehicle.Axles.Where(a => a.Number <= axle).All(a => a.Steered || a.Number == vehicle.Axles.Min(b => b.Number)));
-
-    public static Axle? SteerAxle(this Vehicle vehicle) => vehicle.Axles.Where(a => vehicle.IsFront(a.Number)).MinBy(a => a.Number);
-
-    /// <summary>Axles that keep their direction: neither front nor steered.</summary>
-    public static IReadOnlyList<Axle> FixedAxles(this Vehicle vehicle) =>
-        [.. vehicle.Axles.Where(a => !vehicle.IsFront(a.Number) && !a.Steered).OrderBy(a => a.Number)];
-
-    public static Quantity ToeOf(this Vehicle vehicle, int axle) => vehicle.IsFront(axle) ? Quantity.FrontTotalToe : Quantity.RearTotalToe;
-
-    /// <summary>+1 where the usual crown makes the driver steer left (traffic keeps right, the road falls right), −1 otherwise.</summary>
-    public static int CrownSign(this Depot depot) => depot.TrafficSide == TrafficSide.Right ? 1 : -1;
-}

@@ -1,41 +1,7 @@
-using MathNet.Numerics.LinearAlgebra;
-using WearWatch.Diagnosis.Facts;
 using WearWatch.Diagnosis.Rules;
 using WearWatch.Diagnosis.Statistics;
 
 namespace WearWatch.Diagnosis.Unusual;
-
-/// <summary>How one class stands: the centre and spread of each figure, and of the two distances.</summary>
-public sealed record ClassSpread
-{
-    public required VehicleClass Class { get; init; }
-    /// <summary>Vehicles the class was fitted on.</summary>
-    public required int Vehicles { get; init; }
-    /// <summary>Median of each figure, in its unit.</summary>
-    public required double[] Centre { get; init; }
-    /// <summary>Robust standard deviation of each figure, in its unit; 0 where too few vehicles of the class have it.</summary>
-    public required double[] Scale { get; init; }
-    /// <summary>Median standard error of each figure, in its unit.</summary>
-    public required double[] TypicalError { get; init; }
-    public required DistanceSpread SquaredPredictionError { get; init; }
-    public required DistanceSpread HotellingT2 { get; init; }
-}
-
-/// <summary>
-/// Centre and robust standard deviation of the cube root of a mean squared distance. The cube root of a chi-square over its
-/// degrees of freedom is close to normal (Wilson &amp; Hilferty, PNAS 17 (1931) 684), whatever its scale and degrees.
-/// </summary>
-public sealed record DistanceSpread(double Centre, double Scale)
-{
-    /// <summary>Normal quantile with 0.5 % above it: two distances, about 1 % of sound vehicles together.</summary>
-    public const double LimitErrors = 2.5758293035489004;
-
-    /// <summary>Robust standard deviations of the class above its centre.</summary>
-    public double Errors(double meanSquare) => (Math.Cbrt(meanSquare) - Centre) / Scale;
-
-    /// <summary>Mean squared distance above which a vehicle is unusual.</summary>
-    public double Limit => Math.Pow(Centre + LimitErrors * Scale, 3);
-}
 
 /// <summary>Distances of one vehicle from its class; both are mean squares (about 1 on a usual vehicle) and grow with the square of a deviation.</summary>
 /// <param name="SquaredPredictionError">Per figure: what the common directions do not explain.</param>
@@ -135,34 +101,5 @@ public sealed record UnusualFit
         var unit = figure.Unit == "1" ? "" : $" {figure.Unit}";
         return new($"{figure.Name} {TradeWords.Number(value.Value, figure.Decimals)}{unit} ({TradeWords.Range(value, figure.Decimals)}), "
             + $"where nine in ten of its class lie between {TradeWords.Number(usual.Low, figure.Decimals)} and {TradeWords.Number(usual.High, figure.Decimals)}{unit}", UnusualFigures.Rests(figure, figures));
-    }
-}
-
-/// <summary>Scores along the common directions from the figures that are known.</summary>
-internal static class PrincipalScores
-{
-    /// <summary>
-    /// Ridge least squares over the known figures: (V'V + Λ⁻¹) t = V'z, the posterior mean of probabilistic principal
-    /// components with unit noise (Tipping &amp; Bishop, J. R. Statist. Soc. B 61 (1999) 611), so that missing figures pull nothing.
-    /// </summary>
-    public static double[] Of(double[] z, double[][] components, double[] variance)
-    {
-        var k = components.Length;
-        if (k == 0) return [];
-        var known = Enumerable.Range(0, z.Length).Where(j => double.IsFinite(z[j])).ToArray();
-        var normal = Matrix<double>.Build.Dense(k, k, (a, b) => known.Sum(j => components[a][j] * components[b][j]) + (a == b ? 1 / variance[a] : 0));
-        var right = Vector<double>.Build.Dense(k, a => known.Sum(j => components[a][j] * z[j]));
-        return normal.Cholesky().Solve(right).ToArray();
-    }
-
-    public static double[] Residual(double[] z, double[] scores, double[][] components)
-    {
-        var residual = new double[z.Length];
-        for (var j = 0; j < z.Length; j++)
-        {
-            residual[j] = z[j];
-            for (var k = 0; k < scores.Length; k++) residual[j] -= scores[k] * components[k][j];
-        }
-        return residual;
     }
 }

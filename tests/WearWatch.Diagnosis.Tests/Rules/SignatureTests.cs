@@ -62,6 +62,21 @@ public class SignatureTests
         Assert.True(wear.AlignmentMends);
     }
 
+    [Theory]
+    [InlineData(+1, true)]
+    [InlineData(-1, false)]
+    public void A_tandem_pushes_the_steer_axle_away_from_where_its_front_axle_points(int frontAxlePointsLeft, bool agrees)
+    {
+        // Steer tyres worn toward the vehicle's left: the road pushes them right, as with the tandem's front axle pointing left.
+        var truck = Vehicles.Truck().Edge("1L", 0.04, 0.005).Edge("1R", -0.04, 0.005);
+        foreach (var dual in new[] { "O", "I" })
+            truck = truck.Edge($"2L{dual}", -0.03 * frontAxlePointsLeft, 0.005).Edge($"2R{dual}", 0.03 * frontAxlePointsLeft, 0.005)
+                .Edge($"3L{dual}", 0.03 * frontAxlePointsLeft, 0.005).Edge($"3R{dual}", -0.03 * frontAxlePointsLeft, 0.005);
+        var wear = GeometryRules.Find(truck).Only(FindingKind.OneEdgeWear);
+        Assert.Equal(agrees, wear.Sentence.Contains("rear tyres agree", StringComparison.Ordinal));
+        Assert.Equal(agrees, !wear.EvidenceAgainst.Any(e => e.Rests.Contains("survey-2LO")));
+    }
+
     [Fact]
     public void Crown_wears_the_nearside_of_both_steer_tyres_and_is_a_cause_only_on_that_side()
     {

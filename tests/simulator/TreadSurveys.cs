@@ -152,7 +152,7 @@ public sealed class TreadSurveys
     /// </summary>
     private string HandRub(Tyre tyre)
     {
-        var strength = Math.Abs(tyre.FeatherMm) / 0.18;
+        var strength = Math.Abs(tyre.FeatherMm) / 0.27;
         if (!_random.Chance(0.06 + 0.9 * (1 - Math.Exp(-strength * strength)))) return "neither";
         var outward = tyre.FeatherMm > 0 != _random.Chance(strength < 1 ? 0.3 : 0.12);
         return outward ? "catches_outward" : "catches_inward";

@@ -78,7 +78,7 @@ public sealed class FolderWriter(Scenario scenario)
         rows.Add("readings", "s-V999-01", "1L", 1, "6.2", null, null);
         _planted.Add(new("unknown_vehicle", "s-V999-01"));
         var again = histories[Math.Min(12, histories.Length - 1)].Vehicle;
-        rows.Add("surveys", $"s-{again.Id}-02", again.Id, scenario.Time(end + 1), "tech-1", "gauge-1", 0.1, "mm", null, null, "none", true);
-        _planted.Add(new("resent_other_content", $"s-{again.Id}-02"));
+        rows.Add("surveys", $"s-{again.Id}-01", again.Id, scenario.Time(end + 1), "tech-1", "gauge-1", 0.1, "mm", null, null, "none", true);
+        _planted.Add(new("resent_other_content", $"s-{again.Id}-01"));
     }
 }

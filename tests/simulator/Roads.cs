@@ -152,10 +152,11 @@ public sealed class RoadNetwork
         return (road, road.From == from);
     }
 
-    /// <summary>Ten roads in a row without turning round, where it can be helped.</summary>
+    /// <summary>Ten roads in a row without turning round; fewer, where a crowned network has no way on.</summary>
     private (Road, bool)[] Walk(RandomStream random, bool onlyCrowned)
     {
-        while (true)
+        List<(Road Road, bool Forward)> longest = [];
+        for (var attempt = 0; attempt < 60 && longest.Count < 10; attempt++)
         {
             var here = random.Whole(0, Columns * Rows - 1);
             var walk = new List<(Road Road, bool Forward)>();
@@ -168,7 +169,8 @@ public sealed class RoadNetwork
                 walk.Add((road, road.From == here));
                 here = road.From == here ? road.To : road.From;
             }
-            if (walk.Count >= (onlyCrowned ? 4 : 10)) return [.. walk];
+            if (walk.Count > longest.Count) longest = walk;
         }
+        return [.. longest];
     }
 }

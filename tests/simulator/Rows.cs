@@ -23,7 +23,6 @@ public sealed class Rows
         ("routes", "id,vehicle_id,from,route,loop,left_turn_share,urban"),
         ("prices", "id,depot_id,kind,class,amount,currency,from"),
         ("settings", "id,depot_id,from,name,class,value"),
-        ("decisions", "id,depot_id,kind,vehicle_id,about,at,until,answer,who"),
         ("steering_streams", "stream_id,vehicle_id,file,start,rate_hz"),
         ("steering_channels", "vehicle_id,channel,unit,resolution"),
     ];

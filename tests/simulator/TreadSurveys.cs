@@ -68,10 +68,12 @@ public sealed class TreadSurveys
 
     private double? Distance(double odometerKm, string id)
     {
-        if (_vehicle.DistanceSource == "none" || _random.Chance(0.04)) return null;
-        if (_vehicle.Index % 64 != 10 || _count != 4) return Math.Round(odometerKm);
-        Planted.Add(new("distance_back", id));
-        return Math.Round(odometerKm) - 6000;
+        if (_vehicle.DistanceSource != "none" && _vehicle.Index % 64 == 10 && _count == 3)
+        {
+            Planted.Add(new("distance_back", id));
+            return Math.Round(odometerKm) - 9000;
+        }
+        return _vehicle.DistanceSource == "none" || _random.Chance(0.04) ? null : Math.Round(odometerKm);
     }
 
     /// <summary>Position under which a tyre's readings are written down.</summary>
@@ -107,7 +109,7 @@ public sealed class TreadSurveys
                 if (_vehicle.Index % 16 == 5 && _count == 2 && p.Index == 0 && groove == 0 && place == 0)
                 {
                     Planted.Add(new("depth_above_new", id, name));
-                    text = ((technician.In32nds ? tyre.NewDepthMm / Technician.MmPer32nd : tyre.NewDepthMm) + 3).ToString("0.0");
+                    text = technician.In32nds ? (tyre.NewDepthMm / Technician.MmPer32nd + 4).ToString("0") : (tyre.NewDepthMm + 3).ToString("0.0");
                 }
                 double? edge = technician.FeelsEdges && groove is > 0 and < 4 ? Math.Round((tyre.FeatherMm + 0.12 * _random.Normal()) / step) * (technician.In32nds ? 1 : 0.1) : null;
                 _rows.Add("readings", id, name, groove + 1, text, places == 1 ? null : clock, edge);
@@ -150,7 +152,7 @@ public sealed class TreadSurveys
     /// </summary>
     private string HandRub(Tyre tyre)
     {
-        var strength = Math.Abs(tyre.FeatherMm) / 0.18;
+        var strength = Math.Abs(tyre.FeatherMm) / 0.27;
         if (!_random.Chance(0.06 + 0.9 * (1 - Math.Exp(-strength * strength)))) return "neither";
         var outward = tyre.FeatherMm > 0 != _random.Chance(strength < 1 ? 0.3 : 0.12);
         return outward ? "catches_outward" : "catches_inward";

@@ -84,7 +84,7 @@ public sealed class TyreSet
         for (var axle = 0; axle < v.Type.Axles.Length; axle++)
         {
             var here = v.Positions.Where(p => p.Axle == axle).ToArray();
-            var share = _random.Between(0.03, 0.72);
+            var share = _random.Between(0.03, 0.6);
             while (true)
             {
                 foreach (var p in here) Tyres[p.Index] = New(p);

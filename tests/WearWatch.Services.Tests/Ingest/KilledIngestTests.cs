@@ -57,7 +57,7 @@ public sealed class KilledIngestTests(PostgresFixture postgres)
         {
             for (var i = 1; i <= Chunks && !reading.IsCompleted; i++) await call.RequestStream.WriteAsync(new StreamSteeringRequest { Chunk = Streams.Chunk(i) });
         }
-        catch (Exception error) when (error is RpcException or InvalidOperationException)
+        catch (Exception error) when (error is RpcException or InvalidOperationException or IOException)
         {
             // Cut while sending; reading ends with the same error.
         }

@@ -244,11 +244,12 @@ public sealed class SteeringStreamTests(PostgresFixture postgres) : IngestTest(p
         await call.RequestStream.WriteAsync(new StreamSteeringRequest { Chunk = Streams.Chunk(1) });
         var huge = Streams.Chunk(2);
         foreach (var column in huge.Columns) column.Values.AddRange(Enumerable.Repeat(1f, 500_000));
-        await call.RequestStream.WriteAsync(new StreamSteeringRequest { Chunk = huge });
+        var writing = call.RequestStream.WriteAsync(new StreamSteeringRequest { Chunk = huge }); // cut short when the service answers
         var error = await Assert.ThrowsAsync<RpcException>(async () =>
         {
             while (await call.ResponseStream.MoveNext(default)) { }
         });
+        await Xunit.Record.ExceptionAsync(() => writing);
         Assert.Equal(StatusCode.ResourceExhausted, error.StatusCode);
         Assert.Equal([1L], (await Stored()).Select(c => c.Sequence));
     }

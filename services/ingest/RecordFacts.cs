@@ -52,13 +52,12 @@ internal sealed class RecordFacts(IngestFacts facts, TimeProvider clock)
 
     private static FactAnswer Answer(ReadFact item, FactBatch batch)
     {
+        var known = batch.Context.Known(item.Key);
+        if (known is not null && known.ContentHash.AsSpan().SequenceEqual(item.Row.ContentHash))
+            return Answered(item, known.Held ? Outcome.Held : Outcome.Stored, known.Remarks, known: true);
         if (item.Refusals.Count > 0) return Refuse(item, batch, item.Refusals);
-        if (batch.Context.Known(item.Key) is { } known)
-        {
-            return known.ContentHash.AsSpan().SequenceEqual(item.Row.ContentHash)
-                ? Answered(item, known.Held ? Outcome.Held : Outcome.Stored, known.Remarks, known: true)
-                : Refuse(item, batch, [new("id_in_use", "id", $"{item.Row.Id} is stored with other content; both are kept. To correct it, send a new id that replaces it.")]);
-        }
+        if (known is not null)
+            return Refuse(item, batch, [new("id_in_use", "id", $"{item.Row.Id} is stored with other content; both are kept. To correct it, send a new id that replaces it.")]);
         var judgement = new Judgement(item.Row.Depot, item.Row.Replaces);
         if (item.Row.Kind != FactKind.Depot && batch.Context.Depot(item.Row.Depot) is null)
             judgement.Refuse("unknown_depot", "depot_id", $"depot {item.Row.Depot} is not known; send its depot fact first");
@@ -164,7 +163,7 @@ internal sealed record ReadFact(Fact Sent, FactRow Row, FactBody? Body, IReadOnl
         string?[] Others(FactRow row) => [row.Id, row.Replaces, row.Retracts, row.Releases];
         return new BatchScope
         {
-            Keys = sound.SelectMany(r => Others(r).OfType<string>().Select(id => new FactKey(r.Depot, id))).Distinct().ToList(),
+            Keys = sound.SelectMany(r => Others(r).OfType<string>().Select(id => new FactKey(r.Depot, id))).Concat(items.Select(i => i.Key)).Distinct().ToList(),
             Vehicles = sound.SelectMany(r => new[] { r.VehicleId, r.TractorId }).OfType<string>().Distinct().ToList(),
             Depots = sound.Select(r => r.Depot).Distinct().ToList(),
             Tyres = sound.Select(r => r.TyreId).OfType<string>().Distinct().ToList(),

@@ -1,7 +1,7 @@
 namespace WearWatch.Hosting;
 
 /// <summary>Why a whole request cannot be served.</summary>
-public enum RefusedBecause { Invalid, NotFound, AlreadyExists, TooMuch }
+internal enum RefusedBecause { Invalid, NotFound, AlreadyExists, TooMuch }
 
 /// <summary>A request refused as a whole; what is wrong with a single item is answered beside it instead.</summary>
 internal sealed class RequestRefused(RefusedBecause because, string field, string message) : Exception(message)

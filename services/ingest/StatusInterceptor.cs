@@ -45,11 +45,14 @@ internal sealed partial class StatusInterceptor(ILogger<StatusInterceptor> log) 
         PostgresException { SqlState: PostgresErrorCodes.LockNotAvailable or PostgresErrorCodes.QueryCanceled } => Plain(StatusCode.DeadlineExceeded, "the database took too long; send again"),
         PostgresException { SqlState: PostgresErrorCodes.DeadlockDetected or PostgresErrorCodes.SerializationFailure } => Plain(StatusCode.Unavailable, "another sender was in the way; send again"),
         PostgresException { SqlState: PostgresErrorCodes.DiskFull } => Plain(StatusCode.Unavailable, "the database's disk is full; what was acknowledged is safe"),
+        PostgresException { SqlState: PostgresErrorCodes.AdminShutdown or PostgresErrorCodes.CrashShutdown or PostgresErrorCodes.CannotConnectNow } => Away(),
         PostgresException known when !known.IsTransient => Unexpected(known),
         NpgsqlException { InnerException: TimeoutException } => Plain(StatusCode.DeadlineExceeded, "the database took too long; send again"),
-        NpgsqlException => Plain(StatusCode.Unavailable, "the database is away; send again, what was acknowledged is safe"),
+        NpgsqlException => Away(),
         _ => Unexpected(error),
     };
+
+    private static RpcException Away() => Plain(StatusCode.Unavailable, "the database is away; send again, what was acknowledged is safe");
 
     private static RpcException Gone(ServerCallContext context) =>
         context.Deadline <= DateTime.UtcNow ? Plain(StatusCode.DeadlineExceeded, "the time given was up") : Plain(StatusCode.Cancelled, "the caller went away");

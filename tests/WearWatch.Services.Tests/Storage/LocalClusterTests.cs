@@ -63,4 +63,18 @@ public sealed class LocalClusterTests : IAsyncLifetime
         await using var connection = new NpgsqlConnection(wrong);
         await Assert.ThrowsAsync<PostgresException>(() => connection.OpenAsync());
     }
+
+    [SkippableFact]
+    public async Task A_folder_closed_to_the_servers_user_has_its_cluster_elsewhere_and_says_where()
+    {
+        Skip.If(OperatingSystem.IsWindows() || !Environment.IsPrivilegedProcess, "only root runs the server as another user");
+        Directory.CreateDirectory(_folder);
+        if (!OperatingSystem.IsWindows()) File.SetUnixFileMode(_folder, UnixFileMode.UserRead | UnixFileMode.UserWrite | UnixFileMode.UserExecute);
+        var closed = Path.Combine(_folder, "data");
+        _last = await LocalCluster.Start(closed);
+        Assert.Equal(1, await Ask(_last, "SELECT 1"));
+        var place = await File.ReadAllTextAsync(Path.Combine(closed, "postgresql.location"));
+        await _last.Stop();
+        Directory.Delete(place, recursive: true);
+    }
 }

@@ -18,10 +18,15 @@ public sealed record PooledLocation(Estimate Centre, double BetweenSd, int Count
         if (members.Count == 0) throw new ArgumentException("no members", nameof(members));
         var centre = WeightedMedian(members, leastBetweenSd);
         var between = leastBetweenSd;
-        double sumWeights = 0, sumSquares = 0;
+        double sumWeights = 0, sumSquares = 0, spreadAt = centre;
         for (var step = 0; step < 60; step++)
         {
-            between = Math.Max(leastBetweenSd, Spread(members, centre, between));
+            // The spread moves little once the centre has settled, and costs most of the time.
+            if (step == 0 || Math.Abs(centre - spreadAt) > 0.02 * between)
+            {
+                between = Math.Max(leastBetweenSd, Spread(members, centre, between));
+                spreadAt = centre;
+            }
             double sum = 0;
             sumWeights = sumSquares = 0;
             foreach (var m in members)
@@ -65,7 +70,7 @@ public sealed record PooledLocation(Estimate Centre, double BetweenSd, int Count
         var total = members.Select(m => Math.Abs(m.Value - centre)).ToArray();
         double low = 0, high = Math.Max(start, 4 * Medians.MadToSd * total.Max() + 1e-12);
         var ratios = new double[total.Length];
-        for (var step = 0; step < 40; step++)
+        for (var step = 0; step < 24; step++)
         {
             var mid = (low + high) / 2;
             for (var i = 0; i < ratios.Length; i++) ratios[i] = total[i] / Math.Sqrt(members[i].StandardError * members[i].StandardError + mid * mid);

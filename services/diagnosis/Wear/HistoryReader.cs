@@ -334,14 +334,17 @@ internal sealed class HistoryReader
         for (var s = 0; s < _surveys.Count; s++) _weighed[s] = Weigh(s);
         for (var s = 0; s < _surveys.Count; s++)
         {
-            var used = _weighed[s].FirstOrDefault(w => w.Explanation == _explanation[s]);
-            if (used is { Weight: >= SurveyExplanation.Clear }) continue;
+            // Whether one axle or all were exchanged cannot show where the sides of the other axle are alike, nor does it matter there.
+            var used = _weighed[s].Where(w => w.Explanation == _explanation[s] || (SidesExchanged(w.Explanation) && SidesExchanged(_explanation[s]))).Sum(w => w.Weight);
+            if (used >= SurveyExplanation.Clear) continue;
             _explanation[s] = Explanation.AsWritten;
             _weight[s] = Math.Max(0.05, _weighed[s].FirstOrDefault(w => w.Explanation.Kind == ExplanationKind.AsWritten)?.Weight ?? 0);
         }
         foreach (var ((s, position), probability) in _misread.OrderBy(m => m.Key.Survey).ThenBy(m => m.Key.Position))
             _odd[s].Add(new(new(ExplanationKind.TyreMisread, Position: position), probability));
     }
+
+    private static bool SidesExchanged(Explanation e) => e.Kind is ExplanationKind.SidesSwapped or ExplanationKind.AxleSidesSwapped;
 
     public IReadOnlyList<SurveyJudgement> Judgements() =>
     [

@@ -22,6 +22,7 @@ public sealed class CellSystem(int globals, int cells, CellRow[] rows)
     private const int LargestDirect = 256;
 
     private const int Probes = 64;
+    private const double ProbeEnergy = 1e-10; // far below the probes' own scatter
 
     private readonly double[] _pivot = Pivots(cells, rows);
     private Matrix<double>? _inverse;
@@ -200,7 +201,7 @@ public sealed class CellSystem(int globals, int cells, CellRow[] rows)
         return diagonal;
     }
 
-    private double[] ConjugateGradients(double[] right, double[] start)
+    private double[] ConjugateGradients(double[] right, double[] start, double relativeEnergy = 1e-20)
     {
         var diagonal = SchurDiagonal();
         var u = (double[])start.Clone();
@@ -209,7 +210,7 @@ public sealed class CellSystem(int globals, int cells, CellRow[] rows)
         var scaled = residual.Zip(diagonal, (r, d) => r / d).ToArray();
         var direction = (double[])scaled.Clone();
         var energy = Dot(residual, scaled);
-        var goal = 1e-20 * Math.Max(energy, right.Zip(diagonal, (b, d) => b * b / d).Sum());
+        var goal = relativeEnergy * Math.Max(energy, right.Zip(diagonal, (b, d) => b * b / d).Sum());
         for (var iteration = 0; iteration < 20 * globals && energy > goal; iteration++)
         {
             times = Times(direction);
@@ -235,7 +236,7 @@ public sealed class CellSystem(int globals, int cells, CellRow[] rows)
         for (var probe = 0; probe < Probes; probe++)
         {
             var sign = Enumerable.Range(0, globals).Select(_ => random.NextDouble() < 0.5 ? -1.0 : 1.0).ToArray();
-            var solved = ConjugateGradients(sign, sign.Zip(diagonal, (s, d) => s / d).ToArray());
+            var solved = ConjugateGradients(sign, sign.Zip(diagonal, (s, d) => s / d).ToArray(), ProbeEnergy);
             for (var i = 0; i < globals; i++) variance[i] += (sign[i] * solved[i] - 1 / diagonal[i]) / Probes;
         }
         // The inverse's diagonal is never below the diagonal's inverse.

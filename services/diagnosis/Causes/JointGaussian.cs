@@ -38,7 +38,7 @@ public sealed class JointGaussian
     private readonly int[] _columns; // nonzero columns of one row
     private readonly (int[] Columns, double[] Values)[] _sparse;
     private double _slipScale = 1, _edgeScale = 1;
-    private readonly double[] _forward, _residual, _slip, _duty, _camber, _shared, _b, _mean, _variance;
+    private readonly double[] _forward, _residual, _slip, _duty, _crown, _camber, _shared, _b, _mean, _variance;
     private readonly int[][] _support; // states that reach a tyre at all
 
     public JointGaussian(VehicleModel model, IReadOnlyList<Observable> rows)
@@ -50,7 +50,7 @@ public sealed class JointGaussian
         (_residual, _b, _mean, _variance) = (new double[n], new double[p], new double[p], new double[p]);
         _columns = new int[p];
         _sparse = [.. Enumerable.Range(0, n).Select(_ => (Array.Empty<int>(), Array.Empty<double>()))];
-        (_slip, _duty, _camber, _shared) = (new double[tyres], new double[tyres], new double[tyres], new double[tyres]);
+        (_slip, _duty, _crown, _camber, _shared) = (new double[tyres], new double[tyres], new double[tyres], new double[tyres], new double[tyres]);
         _support = [.. Enumerable.Range(0, tyres).Select(i => Enumerable.Range(0, States)
             .Where(d => model.Slip[i, d] != 0 || model.Duty[i, d] != 0 || model.Camber[i, d] != 0).ToArray())];
     }
@@ -128,7 +128,8 @@ public sealed class JointGaussian
             (_slip[i], _duty[i], _camber[i], _shared[i]) = (0, 0, 0, 0);
             var axle = _model.Positions[i].Axle;
             var turn = _model.Positions[i].Side == Facts.Side.Right ? 1 : -1;
-            _duty[i] = _model.DutyMean * turn * (axle == 1 || _model.IsTrailer ? 1 : 0.7);
+            _crown[i] = _model.CrownSlip * turn;
+            _duty[i] = _crown[i] + _model.DutyMean * turn * (axle == 1 || _model.IsTrailer ? 1 : 0.7);
             foreach (var d in _support[i])
             {
                 if (state[d] == 0) continue;
@@ -163,19 +164,21 @@ public sealed class JointGaussian
     {
         var z = _slip[i];
         var shape = z + _duty[i]; // one-way turning shapes the tread but wears no faster than service
+        var held = z + _crown[i]; // slip adds to what holds the vehicle on the crown, on one side, and takes from it on the other
+        var normal = 1 + _crown[i] * _crown[i];
         double predicted, bySlip, byCamber = 0, byEdge = 0;
         switch (kind)
         {
             case ObservableKind.LogRate:
-                predicted = Math.Log(1 + z * z);
-                bySlip = 2 * z / (1 + z * z);
+                predicted = Math.Log((1 + held * held) / normal);
+                bySlip = 2 * held / (1 + held * held);
                 _a[Column(Shared.VehicleRate)] = Sensitivities.LogRateVehicle;
                 break;
             case ObservableKind.EdgeSlope:
                 var (edge, slope) = Observables.EdgeOfSlip(shape);
                 var camberEdge = Sensitivities.CamberEdgeShare * _camber[i];
-                byEdge = _edgeScale * edge;
-                (predicted, bySlip, byCamber) = (byEdge + camberEdge, _edgeScale * slope, Sensitivities.CamberEdgeShare);
+                byEdge = _edgeScale * edge / normal;
+                (predicted, bySlip, byCamber) = (byEdge + camberEdge, _edgeScale * slope / normal, Sensitivities.CamberEdgeShare);
                 _a[Column(Shared.CamberEdge)] = camberEdge * Sensitivities.CamberEdgeSpread;
                 _a[Column(_model.Positions[i].Axle == 1 ? Shared.RollFront : Shared.RollRear)] = _model.Class.RollShare;
                 break;

@@ -46,8 +46,12 @@ public static class Sensitivities
     /// <summary>Spread of the steering ratio: recorded, and taken from the class (from memory).</summary>
     public const double RatioSpreadKnown = 0.05, RatioSpreadClass = 0.15;
 
-    /// <summary>Part of a trailer's skew that its tyres slip, and of a thrust angle that rear tyres scrub, with the spread of both logarithms (from memory).</summary>
-    public const double TrailerSkewShare = 0.70, ThrustScrubShare = 0.10, ShareSpread = 0.45;
+    /// <summary>
+    /// Part of a trailer's skew that its tyres slip, and of a thrust angle that rear tyres scrub, with the spread of both
+    /// logarithms. Axles that all point the same way make the vehicle run crabwise until no side force is left, so little
+    /// of the angle is slip; what is left comes from turning (from memory).
+    /// </summary>
+    public const double TrailerSkewShare = 0.15, ThrustScrubShare = 0.10, ShareSpread = 0.45;
 
     /// <summary>SD of an angle in order, as share of its tolerance.</summary>
     public const double InOrderSd = 0.45;
@@ -58,8 +62,14 @@ public static class Sensitivities
     /// <summary>SD of the angle sensor's zero on a vehicle not worth naming for it, deg at the wheel (from memory).</summary>
     public const double SensorZeroSdDeg = 1.3;
 
+    /// <summary>
+    /// Slip with which every tyre holds the vehicle on the usual crown, deg: cross-slope 2 % of its load over C/Fz, that
+    /// is 6.1 deg per g on light tyres and 8.7 on heavy ones (Gillespie 1992 for the balance; 2 %: road design practice).
+    /// </summary>
+    public static double CrownSlipDeg(VehicleClass kind) => 0.02 * (kind is VehicleClass.Car or VehicleClass.Van ? 6.1 : 8.7);
+
     /// <summary>SD of one-way turning slip over RMS service slip: unknown, and per unit of (2·left share − 1) when the route tells it (from memory).</summary>
-    public const double DutySd = 0.12, DutyPerShare = 0.8;
+    public const double DutySd = 0.18, DutyPerShare = 0.8;
 
     /// <summary>Chance that one reading is wild: wrong wheel, wrong unit, wrong tyre (from memory, 1 to 3 %).</summary>
     public const double WildShare = 0.02;

@@ -5,7 +5,7 @@ namespace WearWatch.Diagnosis.Causes;
 
 /// <summary>What one story at one magnitude costs on the road.</summary>
 /// <param name="Probability">Posterior probability of this story at about this magnitude.</param>
-/// <param name="ExtraWear">Wear beyond normal as share of it (multiplier less 1), by position; median over the service slip.</param>
+/// <param name="ExtraWear">Wear beyond normal as share of it (multiplier less 1; negative where the fault relieves a wheel), by position; median over the service slip.</param>
 /// <param name="ExtraWearLogSd">Spread of the logarithm of every ExtraWear, common to all tyres.</param>
 /// <param name="DragN">Extra rolling drag, N.</param>
 public sealed record StoryEffect(double Probability, IReadOnlyDictionary<Position, double> ExtraWear, double ExtraWearLogSd, double DragN)
@@ -27,8 +27,10 @@ public sealed record StoryEffect(double Probability, IReadOnlyDictionary<Positio
             }
             drag += ToeDrag.TyreN(model.Class.TyreStiffnessNPerRad, slip * Sensitivities.ServiceSlipDeg);
             var z = slip * Math.Exp(logSlipScale.Mean);
-            var extra = z * z + CamberWearPerDeg * Math.Abs(camber);
-            if (extra > 0) wear[model.Positions[i]] = extra;
+            // Against normal wear, which has the slip on the crown inside; a wheel that the fault relieves wears less.
+            var crown = model.CrownSlip * (model.Positions[i].Side == Side.Right ? 1 : -1);
+            var extra = (z * z + 2 * z * crown) / (1 + crown * crown) + CamberWearPerDeg * Math.Abs(camber);
+            if (extra != 0) wear[model.Positions[i]] = extra;
         }
         return new StoryEffect(probability, wear, 2 * logSlipScale.Sd, drag);
     }

@@ -36,6 +36,7 @@ public sealed class VehicleModel
         (Slip, Duty, Camber) = (new double[tyres, states], new double[tyres, states], new double[tyres, states]);
         (ShareUncertain, Torque, WheelAngle) = (new bool[states], new double[states], new double[states]);
         for (var d = 0; d < states; d++) Map(d);
+        CrownSlip = (figures.Depot.TrafficSide == TrafficSide.Right ? 1 : -1) * Sensitivities.CrownSlipDeg(figures.Vehicle.Class) / Sensitivities.ServiceSlipDeg;
         DutyMean = figures.Route?.LeftTurnShare is { } share ? Sensitivities.DutyPerShare * (2 * Math.Clamp(share, 0, 1) - 1) : 0;
     }
 
@@ -60,6 +61,8 @@ public sealed class VehicleModel
     public double[] Torque { get; }
     /// <summary>Straight-ahead steering-wheel angle per unit of state, deg.</summary>
     public double[] WheelAngle { get; }
+    /// <summary>Slip that holds the vehicle on the usual crown, as of an axle pointing left, over RMS service slip. Normal wear has it inside.</summary>
+    public double CrownSlip { get; }
     /// <summary>One-way turning slip that the usual route implies, over RMS service slip.</summary>
     public double DutyMean { get; }
 

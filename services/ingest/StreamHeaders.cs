@@ -36,8 +36,6 @@ internal static class StreamHeaders
             if (!channels.TryAdd(channel.Channel, channel)) throw Wrong($"header.channels[{i}].channel", $"{channel.Channel} comes twice");
         }
         if (!channels.ContainsKey(Contracts.V1.Channel.Speed)) throw Wrong("header.channels", "speed is required");
-        if (channels.TryGetValue(Contracts.V1.Channel.DriverTorque, out var driver) && channels.TryGetValue(Contracts.V1.Channel.AssistTorque, out var assist) && driver.IsRaw != assist.IsRaw)
-            throw Wrong("header.channels", "driver and assist torque must both be in N·m or both raw");
         return new DeclaredStream(Row(header), channels);
     }
 

@@ -208,7 +208,7 @@ public sealed class TyreSet
         var known = what == "fitted" && _random.Chance(0.7);
         if (known)
             _rows.Add("tyres", $"ty-{tyre.Id}", tyre.Id, tyre.Pattern, _vehicle.Type.Axles[p.Axle].TyreSize, tyre.NewDepthMm, "mm");
-        double? distance = _vehicle.DistanceSource == "none" || _random.Chance(0.1) ? null : Math.Round(odometerKm);
+        double? distance = _vehicle.DistanceSource == "none" || _random.Chance(0.1) || odometerKm < 0 ? null : Math.Round(odometerKm);
         _rows.Add("fittings", $"f-{_vehicle.Id}-{++_event:D2}", _vehicle.Id, _scenario.Time(day), what, p.Name, from?.Name,
             known ? tyre.Id : null, what == "fitted" ? tyre.Pattern : null, what == "fitted" ? tyre.NewDepthMm : null, distance,
             seasonal ? true : null, seasonal ? true : null);

@@ -35,6 +35,7 @@ public static class Observables
     /// <summary>Normal wear of a tyre's place, mm per 1000 km: its own rate with its departure taken out, else the class's.</summary>
     public static double NormalRate(VehicleModel model, TyreFigures? tyre)
     {
+        if (tyre?.NormalRateMmPer1000Km is { } normal) return normal;
         if (tyre is { RateMmPer1000Km: { Value: > 0 } own, LogRateRatio: { } ratio }) return own.Value * Math.Exp(-ratio.Value);
         var axle = tyre?.Position.Axle ?? 2;
         return axle == 1 && !model.IsTrailer ? model.Class.FrontRate : model.Class.RearRate;
@@ -42,7 +43,7 @@ public static class Observables
 
     private static void AddTyre(List<Observable> rows, VehicleModel model, int index, TyreFigures tyre, double stale)
     {
-        if (!tyre.RateBorrowed && tyre.LogRateRatio is { } ratio)
+        if (tyre.LogRateRatio is { } ratio)
             rows.Add(Row(ObservableKind.LogRate, index, ratio, Math.Max(Sensitivities.LogRateRest, 0.3 * stale), 1.5));
         if (tyre.EdgeSlopeMmPer1000Km is { } slope)
             rows.Add(Row(ObservableKind.EdgeSlope, index, slope * (1 / NormalRate(model, tyre)), Math.Max(Sensitivities.EdgeRest, 0.4 * stale), 2));

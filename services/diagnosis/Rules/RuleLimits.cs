@@ -69,6 +69,7 @@ public static class RuleLimits
     /// <summary>Normal wear rate of a tyre's class and position, mm per 1000 km: the fleet's where known, else the class's.</summary>
     public static double NormalRate(VehicleClass vehicleClass, TyreFigures? tyre)
     {
+        if (tyre?.NormalRateMmPer1000Km is { } normal) return normal;
         var fleet = tyre is { RateMmPer1000Km: { } rate, LogRateRatio: { } ratio } ? rate.Value / Math.Exp(ratio.Value) : double.NaN;
         if (double.IsFinite(fleet) && fleet > 0) return fleet;
         return (vehicleClass switch

@@ -91,6 +91,8 @@ public static class SurveyExplanation
     private const double OtherVehiclePrior = 0.002;
     /// <summary>Share of tyres off for a reason of their own.</summary>
     private const double OddTyrePrior = 0.03;
+    /// <summary>Share of axles whose tyres were all changed since without a record: tyres are changed by the axle.</summary>
+    private const double AxleChangedPrior = 0.02;
     private const double OddMeanSd = 4, OddEdgeSd = 1.2, OddShoulderSd = 1.2;
 
     /// <summary>Weight from which an explanation is acted on.</summary>
@@ -156,6 +158,8 @@ public static class SurveyExplanation
         var sharedVariance = technicianSd * technicianSd * (1 + 1.0 / Math.Max(1, behind));
         var shared = Shared(residual, variance, sharedVariance);
         var log = count > 2 ? -0.5 * shared * shared / sharedVariance : 0;
+        Span<double> alone = stackalloc double[Position.MaxAxle + 1];
+        Span<double> together = stackalloc double[Position.MaxAxle + 1];
         for (var i = 0; i < count; i++)
         {
             var shape = written[i];
@@ -164,10 +168,13 @@ public static class SurveyExplanation
             var regular = LineBelief.LogDensity(residual[i] - shared, variance[i] + (count > 2 ? 0 : sharedVariance));
             Add(shape.EdgeMm, e.EdgeMm, OddEdgeSd, ref odd, ref regular);
             Add(shape.ShoulderMm, e.ShoulderMm, OddShoulderSd, ref odd, ref regular);
-            log += explanation.Kind == ExplanationKind.OtherVehicle ? odd : LogMix(regular, odd);
+            alone[shape.Position.Axle] += LogMix(OddTyrePrior, regular, odd);
+            together[shape.Position.Axle] += odd;
             var figures = 1 + (shape.EdgeMm is null ? 0 : 1) + (shape.ShoulderMm is null ? 0 : 1);
             log += figures * Math.Log(factor);
         }
+        for (var axle = 0; axle < alone.Length; axle++)
+            log += explanation.Kind == ExplanationKind.OtherVehicle ? together[axle] : LogMix(AxleChangedPrior, alone[axle], together[axle]);
         return log;
 
         void Add(Estimate? seen, Estimate e, double oddSd, ref double odd, ref double regular)
@@ -193,10 +200,10 @@ public static class SurveyExplanation
         return Math.Clamp(median * sharedVariance / (sharedVariance + 1.57 / precision), -bound, bound);
     }
 
-    private static double LogMix(double regular, double odd)
+    private static double LogMix(double oddShare, double regular, double odd)
     {
-        var a = Math.Log(1 - OddTyrePrior) + regular;
-        var b = Math.Log(OddTyrePrior) + odd;
+        var a = Math.Log(1 - oddShare) + regular;
+        var b = Math.Log(oddShare) + odd;
         var top = Math.Max(a, b);
         return top + Math.Log(Math.Exp(a - top) + Math.Exp(b - top));
     }

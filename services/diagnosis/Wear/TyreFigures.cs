@@ -4,7 +4,8 @@ using WearWatch.Diagnosis.Statistics;
 namespace WearWatch.Diagnosis.Wear;
 
 /// <summary>
-/// What the gauge alone says of the tyre now on one position. Whatever cannot be known is null, never zero.
+/// What the gauge alone says of one position: depth, rate and distance left of the tyre now on it, and how the place wears
+/// its tyres (rate ratio, edges, rubs), whichever tyre stood there. Whatever cannot be known is null, never zero.
 /// "Beyond normal" means beyond the fleet's mean for the same class, axle and kind of position.
 /// </summary>
 public sealed record TyreFigures
@@ -13,14 +14,16 @@ public sealed record TyreFigures
     public string? TyreId { get; init; }
     public string? Pattern { get; init; }
     public double? NewDepthMm { get; init; }
-    /// <summary>Surveys of this fitting that the figures rest on, oldest first.</summary>
+    /// <summary>Surveys that the figures rest on, oldest first: of this tyre and of those that stood here shortly before.</summary>
     public IReadOnlyList<string> SurveyIds { get; init; } = [];
 
     /// <summary>Mean loss of depth, mm per 1000 km.</summary>
     public Estimate? RateMmPer1000Km { get; init; }
     /// <summary>True where the rate is mostly the fleet's, for want of readings of its own.</summary>
     public bool RateBorrowed { get; init; }
-    /// <summary>ln(own rate ÷ fleet's rate for the same class, axle and position).</summary>
+    /// <summary>The fleet's rate for the same class, axle and kind of position, mm per 1000 km.</summary>
+    public double? NormalRateMmPer1000Km { get; init; }
+    /// <summary>ln(rate at this place ÷ fleet's normal rate), from this tyre and those that stood here shortly before.</summary>
     public Estimate? LogRateRatio { get; init; }
     /// <summary>Loss at the outboard shoulder less loss at the inboard shoulder beyond normal, mm per 1000 km; positive when the outboard shoulder wears faster.</summary>
     public Estimate? EdgeSlopeMmPer1000Km { get; init; }

@@ -16,6 +16,10 @@ internal sealed class TyreWear(VehicleTread vehicle, FleetWear fleet, DateOnly a
     /// <summary>Standard error of a pressure reading, share: gauge, and temperature beyond what 'warm' tells (from memory).</summary>
     private const double PressureSd = 0.025, WarmSd = 0.04;
 
+    /// <summary>How long a tyre taken off still tells of the place it stood on, days, and how much wider its errors count (from memory).</summary>
+    private const int EarlierDays = 150;
+    private const double EarlierErrorFactor = 1.5;
+
     public TyreFigures Figures(Fitting fitting)
     {
         var normal = fleet.For(vehicle.Vehicle, fitting.Position);
@@ -30,7 +34,8 @@ internal sealed class TyreWear(VehicleTread vehicle, FleetWear fleet, DateOnly a
             LimitMm = limit.LimitMm,
             LimitSource = limit.Source,
         };
-        if (fitting.Points.Count == 0) return figures;
+        var before = fitting.Points.Count == 0 ? EarlierHere(fitting) : [];
+        if (fitting.Points.Count == 0) return Evidence(figures with { RateMmPer1000Km = RatePosterior.Of(null, normal).Rate, RateBorrowed = true }, normal, null, null, null, before);
         var lines = FittingLines.Fit(fitting.LinePoints, fleet.Noise, s => biases[s], normal.RateMmPer1000Km);
         var own = lines.Rate(fleet.Noise);
         var (rate, logSd) = RatePosterior.Of(own, normal);
@@ -39,17 +44,69 @@ internal sealed class TyreWear(VehicleTread vehicle, FleetWear fleet, DateOnly a
         var shoulder = shaped.ShoulderRate(fleet.Noise);
         var alone = RatePosterior.Of(null, normal).LogSd;
         var last = fitting.Points[^1];
-        return Hand(Depth(figures, fitting, limit, normal, rate, edge, shoulder), fitting) with
+        var read = Hand(Depth(figures, fitting, limit, normal, rate, edge, shoulder), fitting) with
         {
-            SurveyIds = [.. fitting.Points.Select(p => history.Surveys[p.Survey].SurveyId)],
+            SurveyIds = Ids(fitting),
             RateMmPer1000Km = rate,
             RateBorrowed = own is null || logSd * logSd > 0.5 * alone * alone,
-            LogRateRatio = RatePosterior.LogRatio(own, normal),
-            EdgeSlopeMmPer1000Km = Beyond(edge, normal.EdgePerMm, rate),
-            ShoulderMmPer1000Km = Beyond(shoulder, normal.ShoulderPerMm, rate),
             RoundVariationMm = last.Shape?.RoundVariationMm,
             FeatherMm = fitting.Points.LastOrDefault(p => p.Shape?.FeatherMm is not null)?.Shape!.FeatherMm,
         };
+        return Evidence(read, normal, RatePosterior.LogRatio(own, normal), Beyond(edge, normal.EdgePerMm, rate), Beyond(shoulder, normal.ShoulderPerMm, rate), before);
+    }
+
+    /// <summary>
+    /// How the place wears its tyres, whichever tyre stood there: an axle out of alignment wore the one before as well. The
+    /// earlier tyres count with a wider error, for what has changed since.
+    /// </summary>
+    private TyreFigures Evidence(TyreFigures figures, NormalWear normal, Estimate? ratio, Estimate? edge, Estimate? shoulder, IReadOnlyList<Fitting> before)
+    {
+        var rubs = (Out: figures.RubsCatchingOutward, In: figures.RubsCatchingInward, Neither: figures.RubsCatchingNeither);
+        foreach (var f in before)
+        {
+            var lines = FittingLines.Fit(f.LinePoints, fleet.Noise, s => biases[s], normal.RateMmPer1000Km);
+            var own = lines.Rate(fleet.Noise);
+            var rate = RatePosterior.Of(own, normal).Rate;
+            ratio = Pooled(ratio, RatePosterior.LogRatio(own, normal));
+            edge = Pooled(edge, Beyond(lines.EdgeRate(fleet.Noise), normal.EdgePerMm, rate));
+            shoulder = Pooled(shoulder, Beyond(lines.ShoulderRate(fleet.Noise), normal.ShoulderPerMm, rate));
+            rubs.Out += Count(f, HandRub.CatchesOutward);
+            rubs.In += Count(f, HandRub.CatchesInward);
+            rubs.Neither += Count(f, HandRub.Neither);
+        }
+        return figures with
+        {
+            SurveyIds = [.. before.SelectMany(Ids), .. figures.SurveyIds],
+            NormalRateMmPer1000Km = normal.RateMmPer1000Km,
+            LogRateRatio = ratio,
+            EdgeSlopeMmPer1000Km = edge,
+            ShoulderMmPer1000Km = shoulder,
+            FeatherMm = figures.FeatherMm ?? before.SelectMany(f => f.Points).LastOrDefault(p => p.Shape?.FeatherMm is not null)?.Shape!.FeatherMm,
+            RubsCatchingOutward = rubs.Out,
+            RubsCatchingInward = rubs.In,
+            RubsCatchingNeither = rubs.Neither,
+        };
+    }
+
+    /// <summary>Tyres that stood on the same place before, as far as they were surveyed lately; oldest first.</summary>
+    private IReadOnlyList<Fitting> EarlierHere(Fitting fitting)
+    {
+        var since = new DateTimeOffset(asOf.AddDays(-EarlierDays).ToDateTime(TimeOnly.MinValue), TimeSpan.Zero);
+        return [.. history.Fittings.Where(f => f.Position == fitting.Position && !f.Current && f.Points.Count > 0 && history.Surveys[f.Points[^1].Survey].Survey.At >= since)
+            .OrderBy(f => f.Points[0].Km)];
+    }
+
+    private string[] Ids(Fitting fitting) => [.. fitting.Points.Select(p => history.Surveys[p.Survey].SurveyId)];
+
+    private static int Count(Fitting fitting, HandRub rub) => fitting.Points.Count(p => p.Readings?.HandRub == rub);
+
+    private static Estimate? Pooled(Estimate? now, Estimate? before)
+    {
+        if (before is not { } b) return now;
+        b = b with { StandardError = b.StandardError * EarlierErrorFactor };
+        if (now is not { } n) return b;
+        var (wn, wb) = (1 / Square(n.StandardError), 1 / Square(b.StandardError));
+        return new((wn * n.Value + wb * b.Value) / (wn + wb), 1 / Math.Sqrt(wn + wb));
     }
 
     /// <summary>

@@ -1,5 +1,6 @@
 using WearWatch.Diagnosis.Facts;
 using WearWatch.Diagnosis.Roads;
+using WearWatch.Diagnosis.Statistics;
 using WearWatch.Diagnosis.Steering;
 using WearWatch.Diagnosis.Unusual;
 using WearWatch.Diagnosis.Wear;
@@ -71,7 +72,18 @@ internal sealed class FleetFitting(FactReader facts, RunStore runs, TimeProvider
             if (byVehicle[now.VehicleId].Any(r => r.Start < since)) vehicles.Add(before);
         }
         var fit = RoadModel.Fit(runs, vehicles);
-        return fit with { Vehicles = [.. fit.Vehicles.Where(v => !v.VehicleId.EndsWith(AsItWas, StringComparison.Ordinal))] };
+        var was = fit.Vehicles.Where(v => v.VehicleId.EndsWith(AsItWas, StringComparison.Ordinal)).ToDictionary(v => v.VehicleId);
+        return fit with { Vehicles = [.. fit.Vehicles.Where(v => !was.ContainsKey(v.VehicleId)).Select(v => was.TryGetValue(v.VehicleId + AsItWas, out var before) ? Changed(v, before) : v)] };
+    }
+
+    private static SteeringFigures Changed(SteeringFigures now, SteeringFigures before)
+    {
+        static Estimate? Less(Estimate? a, Estimate? b) => a is { } x && b is { } y ? x - y : null;
+        return before.Runs < PresentRuns ? now : now with
+        {
+            SteeringPullChangeNm = Less(now.SteeringPullNm, before.SteeringPullNm),
+            OffCentreChangeDeg = Less(now.OffCentreDeg, before.OffCentreDeg),
+        };
     }
 
     private static DateTimeOffset PresentSince(VehicleFacts v, IEnumerable<StraightRun> runs, DateOnly day)

@@ -49,10 +49,24 @@ public static class CauseEstimate
 
     private static IReadOnlyList<Cause> Causes(Mixture mixture) =>
     [
-        .. Enumerable.Range(0, mixture.Angles.Count).Select(a => Named(mixture.Angles[a].Story, mixture.AngleShare(a), mixture.AngleCells(a)))
+        .. Enumerable.Range(0, mixture.Angles.Count)
+            .GroupBy(a => (mixture.Angles[a].Story.Quantity, mixture.Angles[a].Story.Axle, mixture.Angles[a].Story.Side))
+            .Select(ways => Named(mixture.Angles[ways.First()].Story, ways.Sum(mixture.AngleShare), Together(mixture, [.. ways])))
             .Concat(Enumerable.Range(0, mixture.Looks.Count).Select(l => Named(mixture.Looks[l].Story, mixture.LookShare(l), mixture.Looks[l].CellShares())))
             .OrderByDescending(c => c.Probability),
     ];
+
+    /// <summary>Shares of the magnitude's cells over all ways in which the same angle came about.</summary>
+    private static double[] Together(Mixture mixture, int[] ways)
+    {
+        var cells = new double[mixture.Angles[ways[0]].Story.Cells.Count];
+        foreach (var a in ways)
+        {
+            var (share, own) = (Math.Max(mixture.AngleShare(a), 1e-12), mixture.AngleCells(a));
+            for (var i = 0; i < cells.Length; i++) cells[i] += share * own[i];
+        }
+        return cells;
+    }
 
     private static Cause Named(Story story, double probability, double[] shares)
     {

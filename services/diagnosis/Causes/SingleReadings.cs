@@ -25,6 +25,12 @@ public sealed class SingleReadings
 
     private const double PressureSd = 0.04, RoundRest = 0.12, RoundUsual = 0.10, BrakeRestNm = 0.35, BrakeDragNm = 1.2;
 
+    /// <summary>Ordinary change of off-centre angle and of the column's torque over some months (from memory).</summary>
+    private const double AngleDriftDeg = 0.6, TorqueDriftNm = 0.15;
+
+    /// <summary>Share of faults that came about within the months that samples reach back, and of look-alikes that did (a sensor's zero after service, a tyre exchanged); from memory.</summary>
+    private const double CameLately = 0.5, MovedLately = 0.1;
+
     /// <summary>Most that all driver reports of one kind may weigh, as a factor.</summary>
     private const double ReportFactor = 2.0;
 
@@ -53,7 +59,7 @@ public sealed class SingleReadings
     /// <summary>Log likelihood of all of it, up to what every story shares.</summary>
     public double LogLikelihood(Story? story, double magnitude, StateSeen seen)
     {
-        var sum = Reports(story, seen) + Brake(story);
+        var sum = Reports(story, seen) + Brake(story) + Changes(story, magnitude);
         double straight = 0, swapped = 0;
         for (var i = 0; i < _tyres.Length; i++)
         {
@@ -107,6 +113,25 @@ public sealed class SingleReadings
         if (_model.Figures.Steering?.BrakePullNm is not { } pull || _model.IsTrailer) return 0;
         var share = Math.Max(0.3, _model.AssistShare);
         return Guarded(pull, 0, (story?.Quantity == Quantity.Drag ? BrakeDragNm : BrakeRestNm) * share, 4 * share);
+    }
+
+    /// <summary>What changed over the last weeks: a fault that came about since moves pull and off-centre angle by up to its whole effect.</summary>
+    private double Changes(Story? story, double magnitude)
+    {
+        if (_model.IsTrailer || _model.Figures.Steering is not { } steering) return 0;
+        var share = Math.Max(0.3, _model.AssistShare);
+        return Change(steering.OffCentreChangeDeg, _model.WheelAngle, AngleDriftDeg, 6) + Change(steering.SteeringPullChangeNm, _model.Torque, TorqueDriftNm * share, 2 * share);
+
+        double Change(Estimate? change, double[] map, double drift, double wild)
+        {
+            if (change is not { } seen) return 0;
+            var still = Guarded(seen, 0, drift, wild);
+            double whole = 0;
+            foreach (var (state, weight) in story?.Moves ?? []) whole += map[state] * weight * magnitude;
+            if (Math.Abs(whole) < drift) return still;
+            var late = story!.IsAngle ? CameLately : MovedLately;
+            return Math.Log(Math.Exp(still) * (1 - late) + late * Math.Exp(Guarded(seen, 0.6 * whole, drift + 0.35 * Math.Abs(whole), wild)));
+        }
     }
 
     private double Reports(Story? story, StateSeen seen)

@@ -48,17 +48,18 @@ public static class Stories
         var found = new List<Story>();
         for (var d = 0; d < model.Dimensions.Count; d++)
             if (model.Dimensions[d] is { Tolerance: { } tolerance } dimension)
-                found.Add(new Story
-                {
-                    Quantity = dimension.Quantity,
-                    Axle = dimension.Axle,
-                    Side = dimension.Side,
-                    Moves = [(d, 1)],
-                    Cells = AngleCells(tolerance, priors),
-                    Share = priors.AngleWeights.GetValueOrDefault(dimension.Quantity),
-                    Tolerance = tolerance,
-                    Target = dimension.Target,
-                });
+                foreach (var moves in Ways(model, d))
+                    found.Add(new Story
+                    {
+                        Quantity = dimension.Quantity,
+                        Axle = dimension.Axle,
+                        Side = dimension.Side,
+                        Moves = moves,
+                        Cells = AngleCells(tolerance, priors),
+                        Share = priors.AngleWeights.GetValueOrDefault(dimension.Quantity),
+                        Tolerance = tolerance,
+                        Target = dimension.Target,
+                    });
         var (left, right) = (model.IndexOf(Quantity.Camber, 1, Side.Left), model.IndexOf(Quantity.Camber, 1, Side.Right));
         if (Geometry.Tolerances.For(model.Figures.Vehicle, Quantity.CamberSplit, null, model.Figures.Tolerances, model.Figures.AsOf) is { } split && left >= 0)
             found.Add(new Story
@@ -74,10 +75,29 @@ public static class Stories
         return ShareOut(found, priors);
     }
 
+    /// <summary>
+    /// Ways in which an angle comes about. Total toe goes out at both wheels, or at one of them: a bent arm on the left, on
+    /// the right. One wheel toed in by m turns its axle by m/2, which moves the steering wheel (Gillespie 1992; ISO 8855 signs).
+    /// </summary>
+    private static IEnumerable<IReadOnlyList<(int State, double Weight)>> Ways(VehicleModel model, int d)
+    {
+        yield return [(d, 1)];
+        var dimension = model.Dimensions[d];
+        var (state, weight) = dimension.Quantity switch
+        {
+            Quantity.FrontTotalToe => (model.IndexOf(Quantity.SensorZeroOrFrontToeSplit), model.Ratio / 2),
+            Quantity.RearTotalToe when !model.IsTrailer && model.RearGroup is [var only] && only == dimension.Axle => (model.IndexOf(Quantity.Thrust), -0.5),
+            _ => (-1, 0),
+        };
+        if (state < 0) yield break;
+        yield return [(d, 1), (state, weight)];
+        yield return [(d, 1), (state, -weight)];
+    }
+
     /// <summary>A quantity's weight is spread over the places that have it; all together make the misaligned share.</summary>
     private static List<Story> ShareOut(List<Story> found, FaultPriors priors)
     {
-        var places = found.CountBy(s => s.Quantity).ToDictionary();
+        var places = found.CountBy(s => s.Quantity).ToDictionary(); // and over the ways in which it comes about
         var total = found.Select(s => s.Share / places[s.Quantity]).Sum();
         return total <= 0 ? [] : [.. found.Select(s => s with { Share = priors.MisalignedShare * s.Share / places[s.Quantity] / total })];
     }

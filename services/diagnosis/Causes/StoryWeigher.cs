@@ -76,7 +76,9 @@ public sealed class StoryWeigher
         foreach (var (state, weight) in story?.Moves ?? [])
         {
             _state[state] = magnitude * weight;
-            // A wheel that shares a split keeps part of its own latitude; a quantity told in full keeps none.
+            // A wheel that shares a split keeps part of its own latitude; a quantity told in full keeps none; a sensor's
+            // zero that a bent arm adds to keeps all of it.
+            if (story!.IsAngle && _model.Dimensions[state].Tolerance is null) continue;
             _priorSd[state] *= Math.Abs(weight) < 1 ? Math.Sqrt(0.5) : 0;
         }
         foreach (var (state, _) in beside?.Moves ?? []) _priorSd[state] = beside!.Spread;

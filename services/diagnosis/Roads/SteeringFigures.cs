@@ -10,6 +10,10 @@ public sealed record SteeringFigures
     public Estimate? SteeringPullNm { get; init; }
     /// <summary>Steering-wheel angle when travelling straight on a flat road, deg, + left.</summary>
     public Estimate? OffCentreDeg { get; init; }
+    /// <summary>Steering pull now less what it was before the last weeks, N·m; a sensor's zero does not move, a bent arm does.</summary>
+    public Estimate? SteeringPullChangeNm { get; init; }
+    /// <summary>Off-centre angle now less what it was before the last weeks, deg.</summary>
+    public Estimate? OffCentreChangeDeg { get; init; }
     /// <summary>Extra steering pull while braking over coasting, N·m.</summary>
     public Estimate? BrakePullNm { get; init; }
     /// <summary>Extra steering pull under drive over coasting, N·m.</summary>

@@ -128,7 +128,8 @@ public sealed class CauseEstimateTests(ITestOutputHelper output)
     [Fact]
     public void Tandem_axles_worn_opposite_ways_name_tandem_skew()
     {
-        var verdict = CauseCases.Trailer(2).WithTyres(p => CauseCases.Tyre(p, Turn(p) * (p.Axle == 1 ? 0.08 : -0.08), 0.3)).Judge();
+        // The axle that points uphill adds to the slip that holds the trailer on the crown, the other one takes from it.
+        var verdict = CauseCases.Trailer(2).WithTyres(p => CauseCases.Tyre(p, Turn(p) * (p.Axle == 1 ? 0.05 : -0.05), p.Axle == 1 ? 0.5 : -0.35)).Judge();
         output.WriteLine($"{verdict.MisalignedProbability:0.000} {Words(verdict)}");
         Assert.Equal(Quantity.TandemSkew, verdict.First().Quantity);
         Assert.Equal(1, verdict.First().Axle);

@@ -4,6 +4,7 @@ using WearWatch.Diagnosis.Facts;
 using WearWatch.Diagnosis.Geometry;
 using WearWatch.Diagnosis.Rules;
 using WearWatch.Diagnosis.Statistics;
+using WearWatch.Diagnosis.Wear;
 
 namespace WearWatch.Diagnosis.Tests.Causes;
 
@@ -45,28 +46,32 @@ internal sealed class OwnDraws(int seed)
         var (rollFront, rollRear) = (model.Class.RollShare * N(), model.Class.RollShare * N());
         var figures = blank;
         if (depths)
-            figures = figures.WithTyres(p =>
+            figures = figures with { Tyres = [.. figures.Vehicle.Positions().Select(Tyre)] };
+        TyreFigures Tyre(Position p)
+        {
+            var i = model.Positions.ToList().IndexOf(p);
+            double slip = 0, duty = 0, camber = 0;
+            for (var d = 0; d < state.Length; d++)
             {
-                var i = model.Positions.ToList().IndexOf(p);
-                double slip = 0, duty = 0, camber = 0;
-                for (var d = 0; d < state.Length; d++)
-                {
-                    slip += model.Slip[i, d] * state[d] * (model.ShareUncertain[d] ? share : 1);
-                    duty += model.Duty[i, d] * state[d];
-                    camber += model.Camber[i, d] * state[d];
-                }
-                slip *= slipScale;
-                var ratio = Math.Log(WearMultiplier.Of(slip, 1)) + vehicleRate + Sensitivities.LogRateRest * N() + 0.1 * N();
-                var shape = Sensitivities.EdgeShare * edge * WearMultiplier.Signed(slip + duty) + Sensitivities.CamberEdgeShare * camberEdge * camber
-                    + (p.Axle == 1 ? rollFront : rollRear) + Sensitivities.EdgeRest * N() + 0.1 * N();
-                var wild = _random.NextDouble() < Sensitivities.WildShare;
-                return CauseCases.Tyre(p, wild ? 0.2 * N() : 0.10 * shape, ratio) with
-                {
-                    PressureShare = Soft(look, p) ? new Estimate(lookMagnitude + 0.04 * N(), 0.02) : new Estimate(0.04 * N(), 0.02),
-                    RubsCatchingOutward = Felt(slip + duty, 1),
-                    RubsCatchingInward = Felt(slip + duty, -1),
-                };
-            });
+                slip += model.Slip[i, d] * state[d] * (model.ShareUncertain[d] ? share : 1);
+                duty += model.Duty[i, d] * state[d];
+                camber += model.Camber[i, d] * state[d];
+            }
+            slip *= slipScale;
+            var crown = model.CrownSlip * (p.Side == Side.Right ? 1 : -1);
+            duty += crown;
+            var normal = 1 + crown * crown;
+            var ratio = Math.Log(WearMultiplier.Of(slip + crown, 1) / normal) + vehicleRate + Sensitivities.LogRateRest * N() + 0.1 * N();
+            var shape = Sensitivities.EdgeShare * edge * WearMultiplier.Signed(slip + duty) / normal + Sensitivities.CamberEdgeShare * camberEdge * camber
+                + (p.Axle == 1 ? rollFront : rollRear) + Sensitivities.EdgeRest * N() + 0.1 * N();
+            var wild = _random.NextDouble() < Sensitivities.WildShare;
+            return CauseCases.Tyre(p, wild ? 0.2 * N() : 0.10 * shape, ratio) with
+            {
+                PressureShare = Soft(look, p) ? new Estimate(lookMagnitude + 0.04 * N(), 0.02) : new Estimate(0.04 * N(), 0.02),
+                RubsCatchingOutward = Felt(slip + duty, 1),
+                RubsCatchingInward = Felt(slip + duty, -1),
+            };
+        }
         if (model.IsTrailer) return figures;
         double pull = 0, wheel = 0, zero = 0;
         for (var d = 0; d < state.Length; d++)

@@ -177,14 +177,15 @@ public sealed class JointGaussian
             case ObservableKind.EdgeSlope:
                 var (edge, slope) = Observables.EdgeOfSlip(shape);
                 var camberEdge = Sensitivities.CamberEdgeShare * _camber[i];
-                byEdge = _edgeScale * edge / normal;
+                // The figure is beyond normal, and normal is what the crown makes of a sound tyre.
+                byEdge = _edgeScale * (edge - Observables.EdgeOfSlip(_crown[i]).Value) / normal;
                 (predicted, bySlip, byCamber) = (byEdge + camberEdge, _edgeScale * slope / normal, Sensitivities.CamberEdgeShare);
                 _a[Column(Shared.CamberEdge)] = camberEdge * Sensitivities.CamberEdgeSpread;
                 _a[Column(_model.Positions[i].Axle == 1 ? Shared.RollFront : Shared.RollRear)] = _model.Class.RollShare;
                 break;
             default:
                 var tanh = Math.Tanh(shape);
-                (predicted, bySlip) = (Sensitivities.FeatherMm * tanh, Sensitivities.FeatherMm * (1 - tanh * tanh));
+                (predicted, bySlip) = (Sensitivities.FeatherMm * (tanh - Math.Tanh(_crown[i])), Sensitivities.FeatherMm * (1 - tanh * tanh));
                 _a[Column(Shared.Feather)] = predicted * Sensitivities.FeatherSpread;
                 break;
         }

@@ -112,13 +112,18 @@ internal sealed class FleetWearFit
         // A spread among few is hardly known: it counts with the vehicles behind it against ten of the prior's.
         var between = Math.Sqrt((10 * table.LogRateBetweenSd * table.LogRateBetweenSd + vehicles * log.BetweenSd * log.BetweenSd) / (10 + vehicles));
         var rate = Math.Exp(logRate.Value);
-        var edge = PerMm(members, m => m.Lines.EdgeRate(_fleet.Noise), rate, table.EdgePerMm, table.EdgeBetweenSd);
+        var lean = PerMm(members, m => m.Lines.EdgeRate(_fleet.Noise) * Fall(m), rate, table.LeanPerMm, table.EdgeBetweenSd).PerMm;
+        var edge = PerMm(members, m => m.Lines.EdgeRate(_fleet.Noise) - new Estimate(lean.Value * rate * Fall(m), 0), rate, table.EdgePerMm, table.EdgeBetweenSd);
+        var feathers = members.Select(m => (m.Vehicle, Feather: m.Fitting.Points.LastOrDefault(p => p.Shape?.FeatherMm is not null)?.Shape!.FeatherMm * Fall(m)))
+            .Where(m => m.Feather is not null).Select(m => (m.Vehicle, m.Feather!.Value)).ToList();
         var shoulder = PerMm(members, m => m.Lines.ShoulderRate(_fleet.Noise), rate, table.ShoulderPerMm, table.ShoulderBetweenSd);
         var ownShare = 1 - Math.Pow(logRate.StandardError / prior.StandardError, 2);
         return table with
         {
             LogRate = logRate,
             LogRateBetweenSd = between,
+            LeanPerMm = lean,
+            LeanFeatherMm = feathers.Count == 0 ? table.LeanFeatherMm : Pool(table.LeanFeatherMm, Clustered(feathers, 0.05).Centre),
             EdgePerMm = edge.PerMm,
             EdgeBetweenSd = edge.Between,
             ShoulderPerMm = shoulder.PerMm,
@@ -127,6 +132,8 @@ internal sealed class FleetWearFit
             RestsOn = ownShare > 0.7 ? $"{vehicles} vehicles of this fleet" : ownShare > 0.3 ? $"{vehicles} vehicles of this fleet, their class and the built-in table" : "its class in this fleet and the built-in table",
         };
     }
+
+    private int Fall((Fitting Fitting, int Vehicle, FittingLines Lines) m) => NormalWear.FallSign(m.Fitting.Position, _histories[m.Vehicle].Tread.Depot.TrafficSide);
 
     private (Estimate PerMm, double Between) PerMm(List<(Fitting Fitting, int Vehicle, FittingLines Lines)> members, Func<(Fitting, int, FittingLines Lines), Estimate?> slope, double normalRate, Estimate prior, double priorBetween)
     {

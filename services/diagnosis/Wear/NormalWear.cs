@@ -17,6 +17,10 @@ public sealed record NormalWear
     /// <summary>Edge slope (outboard less inboard loss) per mm of mean wear.</summary>
     public required Estimate EdgePerMm { get; init; }
     public required double EdgeBetweenSd { get; init; }
+    /// <summary>Edge slope per mm of mean wear that the crowned road gives: added on the side to which the road falls, taken off on the other.</summary>
+    public required Estimate LeanPerMm { get; init; }
+    /// <summary>Step of the rib edges that the crowned road gives, mm, signed in the same way.</summary>
+    public required Estimate LeanFeatherMm { get; init; }
     /// <summary>Shoulder part (shoulders less centre) per mm of mean wear.</summary>
     public required Estimate ShoulderPerMm { get; init; }
     public required double ShoulderBetweenSd { get; init; }
@@ -24,6 +28,12 @@ public sealed record NormalWear
     public required int Vehicles { get; init; }
     /// <summary>In words: this fleet, its nearest kin, or the built-in table.</summary>
     public required string RestsOn { get; init; }
+
+    /// <summary>+1 on the side to which the road usually falls (traffic's own side), −1 on the other.</summary>
+    public static int FallSign(Position position, TrafficSide traffic) => (position.Side == Side.Right) == (traffic == TrafficSide.Right) ? 1 : -1;
+
+    /// <summary>Edge slope per mm of mean wear at a position, the crown's part included.</summary>
+    public Estimate EdgePerMmAt(Position position, TrafficSide traffic) => EdgePerMm + LeanPerMm * FallSign(position, traffic);
 
     /// <summary>mm per 1000 km.</summary>
     public double RateMmPer1000Km => Math.Exp(LogRate.Value);
@@ -41,6 +51,8 @@ public sealed record NormalWear
             LogRateBetweenSd = WearPrior.BetweenLogSd,
             EdgePerMm = WearPrior.EdgePerMm,
             EdgeBetweenSd = 0.1,
+            LeanPerMm = new(0.25, 0.15),
+            LeanFeatherMm = new(0.1, 0.1),
             ShoulderPerMm = WearPrior.ShoulderPerMm,
             ShoulderBetweenSd = 0.1,
             Vehicles = 0,

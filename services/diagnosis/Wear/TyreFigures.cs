@@ -6,7 +6,7 @@ namespace WearWatch.Diagnosis.Wear;
 /// <summary>
 /// What the gauge alone says of one position: depth, rate and distance left of the tyre now on it, and how the place wears
 /// its tyres (rate ratio, edges, rubs), whichever tyre stood there. Whatever cannot be known is null, never zero.
-/// "Beyond normal" means beyond the fleet's mean for the same class, axle and kind of position.
+/// "Beyond normal" means beyond the fleet's mean for the same class, axle, kind of position and side of the crowned road.
 /// </summary>
 public sealed record TyreFigures
 {
@@ -31,7 +31,7 @@ public sealed record TyreFigures
     public Estimate? ShoulderMmPer1000Km { get; init; }
     /// <summary>Spread of depth round the circumference at the last survey, standard deviation in mm beyond gauge noise.</summary>
     public Estimate? RoundVariationMm { get; init; }
-    /// <summary>Step of the rib edges, mm; positive when the sharp edge stands inboard (that wheel ran toe-in).</summary>
+    /// <summary>Step of the rib edges beyond normal, mm; positive when the sharp edge stands inboard (that wheel ran toe-in).</summary>
     public Estimate? FeatherMm { get; init; }
     /// <summary>Hand rubs on this fitting that caught moving outward (sharp edge inboard, toe-in).</summary>
     public int RubsCatchingOutward { get; init; }

@@ -52,7 +52,7 @@ internal sealed class TyreWear(VehicleTread vehicle, FleetWear fleet, DateOnly a
             RoundVariationMm = last.Shape?.RoundVariationMm,
             FeatherMm = fitting.Points.LastOrDefault(p => p.Shape?.FeatherMm is not null)?.Shape!.FeatherMm,
         };
-        return Evidence(read, normal, RatePosterior.LogRatio(own, normal), Beyond(edge, normal.EdgePerMm, rate), Beyond(shoulder, normal.ShoulderPerMm, rate), before);
+        return Evidence(read, normal, RatePosterior.LogRatio(own, normal), Beyond(edge, EdgePerMm(normal, fitting.Position), rate), Beyond(shoulder, normal.ShoulderPerMm, rate), before);
     }
 
     /// <summary>
@@ -68,7 +68,7 @@ internal sealed class TyreWear(VehicleTread vehicle, FleetWear fleet, DateOnly a
             var own = lines.Rate(fleet.Noise);
             var rate = RatePosterior.Of(own, normal).Rate;
             ratio = Pooled(ratio, RatePosterior.LogRatio(own, normal));
-            edge = Pooled(edge, Beyond(lines.EdgeRate(fleet.Noise), normal.EdgePerMm, rate));
+            edge = Pooled(edge, Beyond(lines.EdgeRate(fleet.Noise), EdgePerMm(normal, f.Position), rate));
             shoulder = Pooled(shoulder, Beyond(lines.ShoulderRate(fleet.Noise), normal.ShoulderPerMm, rate));
             rubs.Out += Count(f, HandRub.CatchesOutward);
             rubs.In += Count(f, HandRub.CatchesInward);
@@ -81,7 +81,8 @@ internal sealed class TyreWear(VehicleTread vehicle, FleetWear fleet, DateOnly a
             LogRateRatio = ratio,
             EdgeSlopeMmPer1000Km = edge,
             ShoulderMmPer1000Km = shoulder,
-            FeatherMm = figures.FeatherMm ?? before.SelectMany(f => f.Points).LastOrDefault(p => p.Shape?.FeatherMm is not null)?.Shape!.FeatherMm,
+            FeatherMm = (figures.FeatherMm ?? before.SelectMany(f => f.Points).LastOrDefault(p => p.Shape?.FeatherMm is not null)?.Shape!.FeatherMm)
+                - normal.LeanFeatherMm * NormalWear.FallSign(figures.Position, vehicle.Depot.TrafficSide),
             RubsCatchingOutward = rubs.Out,
             RubsCatchingInward = rubs.In,
             RubsCatchingNeither = rubs.Neither,
@@ -130,6 +131,8 @@ internal sealed class TyreWear(VehicleTread vehicle, FleetWear fleet, DateOnly a
         };
     }
 
+    private Estimate EdgePerMm(NormalWear normal, Position position) => normal.EdgePerMmAt(position, vehicle.Depot.TrafficSide);
+
     private static Estimate? Beyond(Estimate? slope, Estimate normalPerMm, Estimate rate) =>
         slope is { } s ? s - new Estimate(normalPerMm.Value * rate.Value, Math.Abs(normalPerMm.StandardError * rate.Value)) : null;
 
@@ -140,7 +143,7 @@ internal sealed class TyreWear(VehicleTread vehicle, FleetWear fleet, DateOnly a
         var readingSd = Math.Sqrt(GaugeNoise.ReadingVariance(GaugeNoise.RepeatSdMm, resolution));
         if (last.Readings is null || DepthLimits.Judge(limit, last.Readings.Depths) is not { } judged) return figures;
         var bias = fleet.BiasOf(history.Surveys[last.Survey].Survey).Sd;
-        var edgeTotal = Shrunk(edge, normal.EdgePerMm, normal.EdgeBetweenSd, rate.Value);
+        var edgeTotal = Shrunk(edge, EdgePerMm(normal, fitting.Position), normal.EdgeBetweenSd, rate.Value);
         var shoulderTotal = Shrunk(shoulder, normal.ShoulderPerMm, normal.ShoulderBetweenSd, rate.Value);
         var until = Grooves(fitting, limit).Select(g => ToLimit(fitting, g, rate, edgeTotal, shoulderTotal, limit.LimitMm)).OfType<Interval>().OrderBy(i => i.Value).ToList();
         return figures with

@@ -21,8 +21,8 @@ internal sealed class DemoCommand : AsyncCommand<DemoCommand.Settings>
         public bool Once { get; init; }
 
         [CommandOption("--seed <N>")]
-        [Description("Which invented fleet (default 1).")]
-        [DefaultValue(1)]
+        [Description("Which invented fleet (default 3).")]
+        [DefaultValue(3)]
         public int Seed { get; init; }
 
         [CommandOption("--folder <FOLDER>", IsHidden = true)]

@@ -1,6 +1,5 @@
 using WearWatch.Diagnosis.Causes;
 using WearWatch.Diagnosis.Facts;
-using WearWatch.Diagnosis.Geometry;
 using WearWatch.Diagnosis.Roads;
 using WearWatch.Diagnosis.Rules;
 using WearWatch.Diagnosis.Statistics;
@@ -43,16 +42,8 @@ internal static class CauseCases
         ShoulderMmPer1000Km = new Estimate(0, 0.01),
     };
 
-    /// <summary>Tyres given as they differ from a sound vehicle's, which the usual crown already shapes.</summary>
-    public static VehicleFigures WithTyres(this VehicleFigures figures, Func<Position, TyreFigures> tyre)
-    {
-        var crown = new VehicleModel(figures).CrownSlip;
-        var usual = 0.10 * Sensitivities.EdgeShare * WearMultiplier.Signed(crown) / (1 + crown * crown);
-        return figures with
-        {
-            Tyres = [.. figures.Vehicle.Positions().Select(tyre).Select(t => t with { EdgeSlopeMmPer1000Km = t.EdgeSlopeMmPer1000Km + new Estimate(t.Position.Side == Side.Right ? usual : -usual, 0) })],
-        };
-    }
+    public static VehicleFigures WithTyres(this VehicleFigures figures, Func<Position, TyreFigures> tyre) =>
+        figures with { Tyres = [.. figures.Vehicle.Positions().Select(tyre)] };
 
     public static VehicleFigures WithTyre(this VehicleFigures figures, string position, Func<TyreFigures, TyreFigures> change) =>
         figures with { Tyres = [.. figures.Tyres.Select(t => t.Position == Position.Parse(position) ? change(t) : t)] };

@@ -62,7 +62,7 @@ internal sealed class OwnDraws(int seed)
             duty += crown;
             var normal = 1 + crown * crown;
             var ratio = Math.Log(WearMultiplier.Of(slip + crown, 1) / normal) + vehicleRate + Sensitivities.LogRateRest * N() + 0.1 * N();
-            var shape = Sensitivities.EdgeShare * edge * WearMultiplier.Signed(slip + duty) / normal + Sensitivities.CamberEdgeShare * camberEdge * camber
+            var shape = Sensitivities.EdgeShare * edge * (WearMultiplier.Signed(slip + duty) - WearMultiplier.Signed(crown)) / normal + Sensitivities.CamberEdgeShare * camberEdge * camber
                 + (p.Axle == 1 ? rollFront : rollRear) + Sensitivities.EdgeRest * N() + 0.1 * N();
             var wild = _random.NextDouble() < Sensitivities.WildShare;
             return CauseCases.Tyre(p, wild ? 0.2 * N() : 0.10 * shape, ratio) with

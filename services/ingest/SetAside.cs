@@ -27,8 +27,14 @@ internal sealed class SetAside(SetAsideReader reader)
         var counts = await reader.Count(cancel);
         return new GetIngestStatusResponse
         {
-            Vehicles = counts.Vehicles, Surveys = counts.Surveys, Readings = counts.Readings, SteeringChunks = counts.Chunks,
-            SteeringSamples = counts.Samples, Held = counts.Held, Refused = counts.Refused, Due = counts.Due,
+            Vehicles = counts.Vehicles,
+            Surveys = counts.Surveys,
+            Readings = counts.Readings,
+            SteeringChunks = counts.Chunks,
+            SteeringSamples = counts.Samples,
+            Held = counts.Held,
+            Refused = counts.Refused,
+            Due = counts.Due,
         };
     }
 

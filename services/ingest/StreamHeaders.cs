@@ -55,8 +55,12 @@ internal static class StreamHeaders
         var bytes = header.ToByteArray();
         return new StreamRow
         {
-            Depot = header.DepotId, StreamId = header.StreamId, VehicleId = header.VehicleId, RateHz = header.RateHz,
-            Header = bytes, HeaderHash = SHA256.HashData(bytes),
+            Depot = header.DepotId,
+            StreamId = header.StreamId,
+            VehicleId = header.VehicleId,
+            RateHz = header.RateHz,
+            Header = bytes,
+            HeaderHash = SHA256.HashData(bytes),
         };
     }
 

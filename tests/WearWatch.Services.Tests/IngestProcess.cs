@@ -8,7 +8,7 @@ using Client = WearWatch.Contracts.V1.IngestService.IngestServiceClient;
 
 namespace WearWatch.Services.Tests;
 
-/// <summary>The ingest service in a process of its own, which a test may kill.</summary>
+/// <summary>The ingest service as the command runs it, in a process of its own, which a test may kill.</summary>
 internal sealed class IngestProcess : IAsyncDisposable
 {
     private readonly Process _process;
@@ -27,8 +27,7 @@ internal sealed class IngestProcess : IAsyncDisposable
     {
         var port = FreePort();
         var start = new ProcessStartInfo("dotnet") { UseShellExecute = false, RedirectStandardOutput = true, RedirectStandardError = true };
-        foreach (var argument in (string[])["exec", typeof(Program).Assembly.Location, "serve-ingest", $"{port}"]) start.ArgumentList.Add(argument);
-        start.Environment["WEARWATCH_DATABASE"] = database;
+        foreach (var argument in (string[])["exec", Path.Combine(AppContext.BaseDirectory, "wearwatch.dll"), "serve", "--only", "ingest", "--port", $"{port}", "--database", database]) start.ArgumentList.Add(argument);
         var process = Process.Start(start)!;
         process.OutputDataReceived += (_, _) => { };
         process.ErrorDataReceived += (_, _) => { };

@@ -14,7 +14,10 @@ internal static class Streams
 
     public static StreamHeader Header(string depot, string vehicle, string id) => new()
     {
-        StreamId = id, DepotId = depot, VehicleId = vehicle, RateHz = RateHz,
+        StreamId = id,
+        DepotId = depot,
+        VehicleId = vehicle,
+        RateHz = RateHz,
         Channels =
         {
             new ChannelInfo { Channel = Channel.Speed, Unit = ChannelUnit.KmPerHour, Resolution = 0.01 },
@@ -30,11 +33,13 @@ internal static class Streams
         var random = new Random((int)sequence);
         Column Column(Channel channel, double mean, double spread, double step) => new()
         {
-            Channel = channel, Values = { Enumerable.Range(0, Samples).Select(_ => (float)(Math.Round((mean + spread * random.NextDouble()) / step) * step)) },
+            Channel = channel,
+            Values = { Enumerable.Range(0, Samples).Select(_ => (float)(Math.Round((mean + spread * random.NextDouble()) / step) * step)) },
         };
         return new SteeringChunk
         {
-            Sequence = sequence, Start = Start(sequence).ToTimestamp(),
+            Sequence = sequence,
+            Start = Start(sequence).ToTimestamp(),
             Columns = { Column(Channel.Speed, 80, 5, 0.01), Column(Channel.SteeringWheelAngle, -2, 4, 0.1), Column(Channel.DriverTorque, 0.2, 0.5, 0.01) },
         };
     }

@@ -47,7 +47,9 @@ public sealed record CostOfWaiting(Interval PerWeek, double TyresPerWeek, double
         }
         points.Add((0, Math.Max(0, 1 - points.Sum(p => p.Weight))));
         points.Sort();
-        return new CostOfWaiting(new Interval(tyres + drag, Quantile(points, 0.05), Quantile(points, 0.95)), tyres, drag, inputs.Currency, inputs.Assumed);
+        // A rare dear fault draws the mean beyond the quantiles; the interval reaches at least to the mean.
+        var mean = tyres + drag;
+        return new CostOfWaiting(new Interval(mean, Math.Min(mean, Quantile(points, 0.05)), Math.Max(mean, Quantile(points, 0.95))), tyres, drag, inputs.Currency, inputs.Assumed);
     }
 
     /// <summary>Money per week for each unit of extra wear: km per week · w0/(new depth − change-at depth) · price.</summary>

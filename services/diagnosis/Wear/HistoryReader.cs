@@ -305,7 +305,8 @@ internal sealed class HistoryReader
                 {
                     _cuts.Add(_positions[p], new FittingCuts.Cut(at, null, null));
                     _inferredCuts.Add((_positions[p], at, probability));
-                });
+                }
+                );
             }
             if (points.Count < 3) continue;
             for (var k = start is null ? 0 : 1; k < points.Count; k++)

@@ -80,7 +80,12 @@ public sealed class LocalCluster : IAsyncDisposable
 
     private static string Connection(int port, string password, string database) => new NpgsqlConnectionStringBuilder
     {
-        Host = "127.0.0.1", Port = port, Username = "wearwatch", Password = password, Database = database, Timeout = 10,
+        Host = "127.0.0.1",
+        Port = port,
+        Username = "wearwatch",
+        Password = password,
+        Database = database,
+        Timeout = 10,
     }.ConnectionString;
 
     private static async Task Create(ServerBinaries binaries, string home, bool durable, Action<string>? progress, CancellationToken cancel)

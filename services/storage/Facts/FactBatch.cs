@@ -30,8 +30,14 @@ public sealed class FactBatch : IAsyncDisposable
         Touch(row);
         Context.Remember(new KnownFact
         {
-            Depot = row.Depot, Id = row.Id, Kind = row.Kind, VehicleId = row.VehicleId, TractorId = row.TractorId,
-            ContentHash = row.ContentHash, Held = held, Remarks = remarks,
+            Depot = row.Depot,
+            Id = row.Id,
+            Kind = row.Kind,
+            VehicleId = row.VehicleId,
+            TractorId = row.TractorId,
+            ContentHash = row.ContentHash,
+            Held = held,
+            Remarks = remarks,
         });
         if (row.Replaces is { } replaced && !held) Context.Drop(row.Key(replaced));
         if (row.Retracts is { } retracted) Context.Drop(row.Key(retracted));

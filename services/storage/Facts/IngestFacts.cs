@@ -104,8 +104,14 @@ public sealed class IngestFacts(NpgsqlDataSource source)
         {
             context.Remember(new KnownFact
             {
-                Depot = row.Depot, Id = row.Id, Kind = row.Kind, VehicleId = row.VehicleId, TractorId = row.TractorId,
-                ContentHash = row.ContentHash, Held = row.Held, Remarks = FactJson.Read<List<Remark>>(row.Remarks),
+                Depot = row.Depot,
+                Id = row.Id,
+                Kind = row.Kind,
+                VehicleId = row.VehicleId,
+                TractorId = row.TractorId,
+                ContentHash = row.ContentHash,
+                Held = row.Held,
+                Remarks = FactJson.Read<List<Remark>>(row.Remarks),
             });
         }
     }

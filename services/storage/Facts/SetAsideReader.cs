@@ -98,8 +98,14 @@ public sealed class SetAsideReader(NpgsqlDataSource source)
         var due = await connection.QuerySingleAsync<long>(Command(analysed ? DueSql : AllDueSql, new { }, cancel));
         return new IngestCounts
         {
-            Vehicles = counts.Vehicles, Surveys = counts.Surveys, Readings = counts.Readings, Chunks = counts.Chunks,
-            Samples = counts.Samples, Held = counts.Held, Refused = counts.Refused, Due = due,
+            Vehicles = counts.Vehicles,
+            Surveys = counts.Surveys,
+            Readings = counts.Readings,
+            Chunks = counts.Chunks,
+            Samples = counts.Samples,
+            Held = counts.Held,
+            Refused = counts.Refused,
+            Due = due,
         };
     }
 

@@ -213,7 +213,8 @@ public sealed class CauseEstimateTests(ITestOutputHelper output)
     private static DateTimeOffset At(int daysBefore) => new(CauseCases.Day.AddDays(-daysBefore), TimeOnly.MinValue, TimeSpan.Zero);
 
     private static VehicleFigures ToeIn(double edge) => CauseCases.Van()
-        .WithTyres(p => CauseCases.Tyre(p, p.Axle == 1 ? edge : 0, p.Axle == 1 ? 4 * edge : 0)).WithSteering();
+        // On a road that falls right, toe-in adds to the right wheel's slip and takes from the left one's.
+        .WithTyres(p => CauseCases.Tyre(p, p.Axle == 1 ? edge : 0, p.Axle == 1 ? (p.Side == Side.Right ? 9 : 0.5) * edge : 0)).WithSteering();
 
     internal static VehicleFigures Named(string kind) => kind switch { "bus" => CauseCases.Bus(), "truck" => CauseCases.Truck(), "trailer" => CauseCases.Trailer(), _ => CauseCases.Van() };
 

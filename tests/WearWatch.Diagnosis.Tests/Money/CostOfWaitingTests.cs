@@ -100,7 +100,7 @@ public sealed class CostOfWaitingTests
     [Fact]
     public void A_judged_vehicle_with_worn_edges_costs_more_than_a_sound_one()
     {
-        CostOfWaiting Cost(double edge) => Of(CauseCases.Van().WithTyres(p => CauseCases.Tyre(p, p.Axle == 1 ? edge : 0, p.Axle == 1 ? 4 * edge : 0)).WithSteering());
+        CostOfWaiting Cost(double edge) => Of(CauseCases.Van().WithTyres(p => CauseCases.Tyre(p, p.Axle == 1 ? edge : 0, p.Axle == 1 ? (p.Side == Side.Right ? 9 : 0.5) * edge : 0)).WithSteering());
         static CostOfWaiting Of(VehicleFigures f) => CostOfWaiting.Of(f, f.Judge(), MoneyInputs.For(f.Vehicle, f.Depot, [], [], f.AsOf));
         var (sound, worn) = (Cost(0), Cost(0.1));
         Assert.True(worn.PerWeek.Value > 5 * sound.PerWeek.Value);

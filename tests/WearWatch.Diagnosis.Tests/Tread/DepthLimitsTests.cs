@@ -9,7 +9,10 @@ public class DepthLimitsTests
 
     private static Vehicle Vehicle(VehicleClass vehicleClass, double? grossMassKg) => new()
     {
-        VehicleId = "v", Depot = "d", Class = vehicleClass, GrossMassKg = grossMassKg,
+        VehicleId = "v",
+        Depot = "d",
+        Class = vehicleClass,
+        GrossMassKg = grossMassKg,
         Axles = [new() { Number = 1, Steered = true }, new() { Number = 2, Driven = true, Duals = vehicleClass == VehicleClass.Truck }],
     };
 

@@ -9,7 +9,11 @@ public class SurveyCheckTests
 
     private static readonly Vehicle s_truck = new()
     {
-        VehicleId = "T1", Depot = "d", Class = VehicleClass.Truck, GrossMassKg = 18000, KmPerWeek = 2000,
+        VehicleId = "T1",
+        Depot = "d",
+        Class = VehicleClass.Truck,
+        GrossMassKg = 18000,
+        KmPerWeek = 2000,
         Axles = [new() { Number = 1, Steered = true }, new() { Number = 2, Driven = true, Duals = true }],
     };
 
@@ -23,7 +27,10 @@ public class SurveyCheckTests
 
     private static TreadSurvey Survey(DateTimeOffset at, Func<string, string>? where = null, double loss = 0, double km = 100_000, double factor = 1) => new()
     {
-        VehicleId = "T1", At = at, DistanceKm = km, DistanceSource = DistanceSource.Odometer,
+        VehicleId = "T1",
+        At = at,
+        DistanceKm = km,
+        DistanceSource = DistanceSource.Odometer,
         Tyres = [.. s_depths.Select(d => Tyre(d.Key, (s_depths[where?.Invoke(d.Key) ?? d.Key] - loss) * factor, d.Key[1] == 'L' ? 0.6 : 0))],
     };
 

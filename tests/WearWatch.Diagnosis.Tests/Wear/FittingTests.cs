@@ -12,13 +12,21 @@ public class FittingTests
 
     private static readonly Vehicle s_van = new()
     {
-        VehicleId = "V", Depot = "north", Class = VehicleClass.Van, KmPerWeek = 1000, GrossMassKg = 3500,
+        VehicleId = "V",
+        Depot = "north",
+        Class = VehicleClass.Van,
+        KmPerWeek = 1000,
+        GrossMassKg = 3500,
         Axles = [new() { Number = 1, Steered = true, PressureKpa = 400 }, new() { Number = 2, Driven = true }],
     };
 
     private static StoredSurvey Survey(int week, double? km, Func<Position, int, double> depth, bool replaced = false) => new($"S{week:00}", new TreadSurvey
     {
-        VehicleId = "V", At = s_first.AddDays(7 * week), Technician = "a", DistanceKm = km, CounterReplaced = replaced,
+        VehicleId = "V",
+        At = s_first.AddDays(7 * week),
+        Technician = "a",
+        DistanceKm = km,
+        CounterReplaced = replaced,
         DistanceSource = km is null ? DistanceSource.None : DistanceSource.Odometer,
         Tyres = [.. s_van.Positions().Select(p => new TyreReadings { Position = p, Depths = [.. Enumerable.Range(1, 4).Select(g => new GrooveDepth(g, Math.Round(depth(p, g), 2)))] })],
     });
@@ -127,7 +135,7 @@ public class FittingTests
         var turned = new FittingRecord { VehicleId = "V", At = s_first.AddDays(7 * 16 + 1), Event = FittingEvent.TurnedOnRim, Position = s_left };
         var result = Estimate([.. new[] { 0, 8, 16, 24, 32, 40 }.Select(w => Survey(w, 50_000 + 1000 * w, (p, g) => Depth(p, g, w)))], turned);
         var edge = At(result, s_left).EdgeSlopeMmPer1000Km!.Value;
-        var normal = WearPrior.EdgePerMm.Value * 0.15;
+        var normal = NormalWear.BuiltIn(VehicleClass.Van, AxleRole.Steer, Dual.Single).EdgePerMmAt(s_left, TrafficSide.Right).Value * 0.15;
         Assert.Equal(0.08 - normal, edge.Value, 0.015);
         Assert.Empty(result.Inferred);
     }

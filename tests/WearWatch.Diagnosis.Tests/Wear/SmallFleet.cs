@@ -65,8 +65,13 @@ internal sealed class SmallFleet(int seed)
         var surveys = Enumerable.Range(0, Surveys).Select(s => Survey(id, tyres, start, weekly, s)).ToList();
         var fittings = tyres.Select(t => new FittingRecord
         {
-            VehicleId = id, At = First.AddDays((t.Value.StartKm - start) / weekly * 7), Event = FittingEvent.Fitted, Position = t.Key,
-            NewDepthMm = t.Value.NewMm, TyreId = $"{id}-{t.Key}", DistanceKm = t.Value.StartKm,
+            VehicleId = id,
+            At = First.AddDays((t.Value.StartKm - start) / weekly * 7),
+            Event = FittingEvent.Fitted,
+            Position = t.Key,
+            NewDepthMm = t.Value.NewMm,
+            TyreId = $"{id}-{t.Key}",
+            DistanceKm = t.Value.StartKm,
         });
         return new TrueVehicle(new VehicleTread { Vehicle = vehicle, Depot = Yard, Surveys = surveys, Fittings = StartsRecorded ? [.. fittings] : [] }, tyres, faulty);
     }
@@ -75,7 +80,8 @@ internal sealed class SmallFleet(int seed)
     {
         var (rate, depth) = (kind, p.Axle) switch { (VehicleClass.Van, 1) => (0.16, 9.0), (VehicleClass.Van, _) => (0.12, 9.0), (VehicleClass.Truck, 1) => (0.06, 15.0), (VehicleClass.Truck, _) => (0.07, 20.0), _ => (0.055, 13.0) };
         rate *= Math.Exp(BetweenSd * Normal());
-        var edge = 0.12 + 0.05 * Normal();
+        // The road falls to the right: the right tyres wear outboard for it, the left ones inboard.
+        var edge = NormalEdgePerMm(p) + 0.05 * Normal();
         if (faulty && p.Axle == 1) (rate, edge) = (rate * (1.4 + 1.2 * _random.NextDouble()), edge + 0.5);
         var before = _random.NextDouble() * 0.25 * depth / rate * 1000;
         // Nobody runs a tyre to the canvas: a fast one starts deeper here.
@@ -90,7 +96,11 @@ internal sealed class SmallFleet(int seed)
         var km = start + weeks * weekly;
         return new StoredSurvey($"{id}-S{s}", new TreadSurvey
         {
-            VehicleId = id, At = First.AddDays(7 * weeks), Technician = $"tech{technician}", DistanceKm = km, DistanceSource = DistanceSource.Odometer,
+            VehicleId = id,
+            At = First.AddDays(7 * weeks),
+            Technician = $"tech{technician}",
+            DistanceKm = km,
+            DistanceSource = DistanceSource.Odometer,
             Tyres = [.. tyres.Select(t => new TyreReadings
             {
                 Position = t.Key,
@@ -106,9 +116,13 @@ internal sealed class SmallFleet(int seed)
         Surveys = [.. tread.Surveys.Select((s, i) => i == survey ? s with { Survey = s.Survey with { Tyres = [.. s.Survey.Tyres.Select(change)] } } : s)],
     };
 
-    /// <summary>The same vehicle in a mirror.</summary>
+    /// <summary>What a sound tyre's edges show per mm of wear.</summary>
+    public static double NormalEdgePerMm(Position p) => 0.12 + 0.25 * NormalWear.FallSign(p, Yard.TrafficSide);
+
+    /// <summary>The same vehicle in a mirror, in a mirrored country.</summary>
     public static VehicleTread Mirror(VehicleTread tread) => tread with
     {
+        Depot = tread.Depot with { TrafficSide = tread.Depot.TrafficSide == TrafficSide.Right ? TrafficSide.Left : TrafficSide.Right },
         Surveys = [.. tread.Surveys.Select(s => s with { Survey = s.Survey with { Tyres = [.. s.Survey.Tyres.Select(t => t with { Position = t.Position.Mirrored })] } })],
         Fittings = [.. tread.Fittings.Select(f => f with { Position = f.Position.Mirrored, FromPosition = f.FromPosition?.Mirrored })],
     };

@@ -70,7 +70,10 @@ public sealed class BadFactsTests(PostgresFixture postgres) : IngestTest(postgre
         await Store(trailer);
         await Refused(Sample.Fact(Depot, "c1", f => f.Coupling = new Coupling
         {
-            TrailerId = $"{Depot}-T1", TractorId = Van, From = Sample.Monday.ToTimestamp(), To = Sample.Monday.AddHours(-1).ToTimestamp(),
+            TrailerId = $"{Depot}-T1",
+            TractorId = Van,
+            From = Sample.Monday.ToTimestamp(),
+            To = Sample.Monday.AddHours(-1).ToTimestamp(),
         }), "time_back", "coupling.to");
     }
 
@@ -108,13 +111,17 @@ public sealed class BadFactsTests(PostgresFixture postgres) : IngestTest(postgre
     [Fact]
     public Task An_angle_without_a_unit_is_refused() => Refused(Sample.Fact(Depot, "w1", f => f.WorkshopRecord = new WorkshopRecord
     {
-        VehicleId = Van, At = Sample.Monday.ToTimestamp(), Angles = { new MeasuredAngle { Quantity = Quantity.FrontTotalToe, Before = 0.3 } },
+        VehicleId = Van,
+        At = Sample.Monday.ToTimestamp(),
+        Angles = { new MeasuredAngle { Quantity = Quantity.FrontTotalToe, Before = 0.3 } },
     }), "unit_unknown", "workshop_record.angles[0].angle_unit");
 
     [Fact]
     public Task A_look_alike_is_no_angle_of_a_workshop_record() => Refused(Sample.Fact(Depot, "w1", f => f.WorkshopRecord = new WorkshopRecord
     {
-        VehicleId = Van, At = Sample.Monday.ToTimestamp(), Angles = { new MeasuredAngle { Quantity = Quantity.Conicity, AngleUnit = AngleUnit.Degrees, Before = 1 } },
+        VehicleId = Van,
+        At = Sample.Monday.ToTimestamp(),
+        Angles = { new MeasuredAngle { Quantity = Quantity.Conicity, AngleUnit = AngleUnit.Degrees, Before = 1 } },
     }), "not_an_angle", "workshop_record.angles[0].quantity");
 
     [Fact]

@@ -75,7 +75,8 @@ public sealed class FactsTests(PostgresFixture postgres) : IngestTest(postgres)
     {
         await Store(Sample.Fact(Depot, "w1", f => f.WorkshopRecord = new WorkshopRecord
         {
-            VehicleId = Van, At = Sample.Monday.ToTimestamp(),
+            VehicleId = Van,
+            At = Sample.Monday.ToTimestamp(),
             Angles = { new MeasuredAngle { Quantity = Quantity.FrontTotalToe, AngleUnit = AngleUnit.Minutes, Before = 15, After = -6 } },
         }));
         var angle = Assert.Single(Assert.Single((await Load()).WorkshopRecords).Body.Angles);

@@ -63,7 +63,10 @@ public sealed class SteeringStreamTests(PostgresFixture postgres) : IngestTest(p
     {
         var header = new StreamHeader
         {
-            StreamId = "st1", DepotId = Depot, VehicleId = Van, RateHz = 10,
+            StreamId = "st1",
+            DepotId = Depot,
+            VehicleId = Van,
+            RateHz = 10,
             Channels =
             {
                 new ChannelInfo { Channel = Channel.Speed, Unit = ChannelUnit.MilesPerHour, Resolution = 0.1 },
@@ -72,7 +75,8 @@ public sealed class SteeringStreamTests(PostgresFixture postgres) : IngestTest(p
         };
         await Streams.Send(Client, header, new SteeringChunk
         {
-            Sequence = 1, Start = Streams.Start(1).ToTimestamp(),
+            Sequence = 1,
+            Start = Streams.Start(1).ToTimestamp(),
             Columns = { new Column { Channel = Channel.Speed, Values = { 50.0f, 50.1f } }, new Column { Channel = Channel.Distance, PreciseValues = { 123_456.789, 123_456.790 } } },
         });
         var columns = ChunkCodec.Decode(Assert.Single(await Stored()).Columns);

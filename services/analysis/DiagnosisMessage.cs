@@ -4,6 +4,7 @@ using WearWatch.Contracts.V1;
 using WearWatch.Diagnosis.Facts;
 using WearWatch.Diagnosis.Rules;
 using WearWatch.Diagnosis.Statistics;
+using WearWatch.Diagnosis.Tread;
 using WearWatch.Diagnosis.Wear;
 using Quantity = WearWatch.Contracts.V1.Quantity;
 using Range = WearWatch.Contracts.V1.Range;
@@ -124,7 +125,7 @@ internal static class DiagnosisMessage
     {
         SurveyId = s.SurveyId,
         Note = s.Corrected
-            ? string.Create(CultureInfo.InvariantCulture, $"{s.Used.Sentence} (probability {s.Weight:0.00}); read that way, the record itself is unchanged")
+            ? string.Create(CultureInfo.InvariantCulture, $"{s.Used.Sentence} (probability {s.Explanations.FirstOrDefault(e => e.Explanation == s.Used)?.Weight ?? s.Weight:0.00}); {(s.Used.Kind == ExplanationKind.OtherVehicle ? "left out" : "read that way")}, the record itself is unchanged")
             : string.Create(CultureInfo.InvariantCulture, $"may not be as written (probability {s.Weight:0.00} that it is); counted less"),
     };
 

@@ -67,7 +67,7 @@ internal static class WorklistRanking
             NetBenefit = d.NetBenefit,
             ListedBecause = because,
             Why = WorklistReason.Why(d, because),
-            FirstCheck = WorklistReason.LeadingFinding(d)?.FirstCheck ?? "",
+            FirstCheck = WorklistReason.FirstCheck(d),
         };
         row.Causes.Add(d.Causes);
         return row;

@@ -1,30 +1,40 @@
+using System.Globalization;
 using WearWatch.Contracts.V1;
 
 namespace WearWatch.Report;
 
-/// <summary>The one plain sentence that says why a vehicle stands where it does.</summary>
+/// <summary>The one plain sentence that says why a vehicle stands where it does, and what to check first.</summary>
 internal static class WorklistReason
 {
-    /// <summary>The strongest finding that an alignment mends.</summary>
-    public static Finding? LeadingFinding(Contracts.V1.Diagnosis d) => d.Findings.Where(f => f.AlignmentMends).MaxBy(f => f.Strength);
+    /// <summary>Below this probability no angle is named in the list.</summary>
+    private const double NamedFrom = 0.2;
 
     public static string Why(Contracts.V1.Diagnosis d, ListedBecause because)
     {
-        var cause = d.Causes.FirstOrDefault(c => c.OutsideTolerance && c.Quantity is > Quantity.Unspecified and < Quantity.Conicity);
-        var start = because == ListedBecause.Pull && d.SteeringPull is { } pull
-            ? FormattableString.Invariant($"The driver has to hold {Math.Abs(pull.Value):0.0} N·m against a pull to the {(pull.Value > 0 ? "right" : "left")} ({Math.Abs(pull.Low):0.0} to {Math.Abs(pull.High):0.0}); ")
+        var pull = because == ListedBecause.Pull && d.SteeringPull is { } p
+            ? string.Create(CultureInfo.InvariantCulture, $"the driver holds {Math.Abs(p.Value):0.0} N·m against a pull to the {(p.Value > 0 ? "right" : "left")} (90 % {Math.Min(Math.Abs(p.Low), Math.Abs(p.High)):0.0} to {Math.Max(Math.Abs(p.Low), Math.Abs(p.High)):0.0}); ")
             : "";
-        if (cause is not null && d.MisalignedProbability >= 0.2)
-        {
-            var share = cause.Probability >= 0.5 * d.MisalignedProbability ? "most likely" : "among several causes";
-            return FormattableString.Invariant($"{start}{share} {Name(cause)} {cause.Value:0.00} {cause.Unit} ({cause.Low:0.00} to {cause.High:0.00}), probability {cause.Probability:0.00}.") is var text
-                ? char.ToUpperInvariant(text[0]) + text[1..] + Sentence(d)
-                : "";
-        }
-        return FormattableString.Invariant($"Both witnesses agree with a vehicle in order: probability of misalignment {d.MisalignedProbability:0.00}; expected cost of waiting {d.CostOfWaitingPerWeek?.Low ?? 0:0} to {d.CostOfWaitingPerWeek?.High ?? 0:0} {d.CostOfWaitingPerWeek?.Unit} a week.");
+        if (Leading(d) is not { } cause)
+            return string.Create(CultureInfo.InvariantCulture, $"Nothing stands out beyond {d.MisalignedProbability:0.00} probability of misalignment; waiting costs {Rounded(d.CostOfWaitingPerWeek?.Low)} to {Rounded(d.CostOfWaitingPerWeek?.High)} {d.CostOfWaitingPerWeek?.Unit} a week.");
+        var share = cause.Probability >= 0.5 * d.MisalignedProbability ? "most likely" : "among several causes";
+        var text = string.Create(CultureInfo.InvariantCulture, $"{pull}{share} {Name(cause)} {cause.Value:0.00} {cause.Unit} (90 % {cause.Low:0.00} to {cause.High:0.00}), probability {cause.Probability:0.00}.");
+        return char.ToUpperInvariant(text[0]) + text[1..] + (Supporting(d, cause) is { } finding ? $" {finding.Sentence}" : "");
     }
 
-    private static string Sentence(Contracts.V1.Diagnosis d) => LeadingFinding(d) is { } finding ? " " + finding.Sentence : "";
+    public static string FirstCheck(Contracts.V1.Diagnosis d) => Leading(d) is not { } cause ? ""
+        : Supporting(d, cause)?.FirstCheck is { Length: > 0 } check ? check
+        : $"Cold pressures and matching tyres first; then bearings, joints and bushes of {(cause.HasAxle ? $"axle {cause.Axle}" : "the axle")}; then {Name(cause).TrimEnd(',')}.";
+
+    /// <summary>The most probable angle, where it is probable enough to be named.</summary>
+    private static Cause? Leading(Contracts.V1.Diagnosis d) =>
+        d.MisalignedProbability >= NamedFrom ? d.Causes.FirstOrDefault(c => c.OutsideTolerance && c.Quantity is > Quantity.Unspecified and < Quantity.Conicity) : null;
+
+    /// <summary>The strongest finding that speaks for this very cause.</summary>
+    private static Finding? Supporting(Contracts.V1.Diagnosis d, Cause cause) => d.Findings
+        .Where(f => f.AlignmentMends && f.Causes.Take(2).Contains(cause.Quantity) && (!f.HasAxle || !cause.HasAxle || f.Axle == cause.Axle || cause.Quantity == Quantity.TandemSkew) && (f.Side == Side.Unspecified || cause.Side == Side.Unspecified || f.Side == cause.Side))
+        .MaxBy(f => f.Strength);
+
+    private static string Rounded(double? money) => ((money is > -0.5 and < 0 ? 0 : money) ?? 0).ToString("0", CultureInfo.InvariantCulture);
 
     private static string Name(Cause cause) => cause.Quantity switch
     {
@@ -33,8 +43,8 @@ internal static class WorklistReason
         Quantity.Camber => $"camber of {cause.Axle}{(cause.Side == Side.Left ? 'L' : 'R')}",
         Quantity.CamberSplit => "front camber, left less right,",
         Quantity.CasterSplit => "front caster, left less right,",
-        Quantity.Thrust => cause.HasAxle ? $"direction of axle {cause.Axle}" : "direction of the rear axle",
-        Quantity.TandemSkew => "angle between the tandem's axles",
-        _ => "direction of the trailer's axles",
+        Quantity.Thrust => "direction of the rear axle (+ left)",
+        Quantity.TandemSkew => $"angle between axles {cause.Axle} and {cause.Axle + 1}",
+        _ => "direction of the trailer's axles (+ left)",
     };
 }

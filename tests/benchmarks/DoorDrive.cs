@@ -1,4 +1,3 @@
-using Google.Protobuf.WellKnownTypes;
 using WearWatch.Contracts.V1;
 
 namespace WearWatch.Benchmarks;

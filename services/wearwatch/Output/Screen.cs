@@ -50,7 +50,7 @@ internal static class Screen
         if (list.OtherMatters.Count > 0)
         {
             console.WriteLine();
-            console.Write(new Rule("Other matters: an alignment does not mend these").LeftJustified());
+            console.Write(new Rule("Other matters: an alignment alone does not mend these").LeftJustified());
             foreach (var matter in list.OtherMatters.Take(rows)) console.MarkupLineInterpolated($"  [bold]{matter.VehicleId}[/]  {matter.Sentence} First: {matter.FirstCheck}");
             if (list.OtherMatters.Count > rows) console.MarkupLineInterpolated($"  ... and {list.OtherMatters.Count - rows} more: [italic]wearwatch worklist --all[/]");
         }
@@ -125,5 +125,5 @@ internal static class Screen
 
     private static string Figure(Contracts.V1.Range? r) => r is null ? "cannot tell" : string.Create(CultureInfo.InvariantCulture, $"{r.Value:0.00} {r.Unit} ({r.Low:0.00} to {r.High:0.00})");
 
-    private static string Money(Contracts.V1.Range? r) => r is null ? "not known" : string.Create(CultureInfo.InvariantCulture, $"{r.Value:0.##} {r.Unit} ({r.Low:0} to {r.High:0})");
+    private static string Money(Contracts.V1.Range? r) => r is null ? "not known" : string.Create(CultureInfo.InvariantCulture, $"{r.Value:0.##;-0.##;0} {r.Unit} ({r.Low:0;-0;0} to {r.High:0;-0;0})");
 }

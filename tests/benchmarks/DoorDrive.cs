@@ -1,3 +1,4 @@
+using Google.Protobuf.WellKnownTypes;
 using WearWatch.Contracts.V1;
 
 namespace WearWatch.Benchmarks;

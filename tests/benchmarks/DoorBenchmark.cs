@@ -29,7 +29,14 @@ internal static class DoorBenchmark
         }
         using var interrupted = PosixSignalRegistration.Create(PosixSignal.SIGINT, Stop);
         using var terminated = PosixSignalRegistration.Create(PosixSignal.SIGTERM, Stop);
-        return Run(stop.Token).GetAwaiter().GetResult();
+        try
+        {
+            return Run(stop.Token).GetAwaiter().GetResult();
+        }
+        catch (Exception error) when (stop.IsCancellationRequested)
+        {
+            throw new OperationCanceledException($"stopped before its end, or not done within {Longest.TotalMinutes} minutes", error);
+        }
     }
 
     private static async Task<IReadOnlyDictionary<string, object>> Run(CancellationToken cancel)

@@ -25,5 +25,5 @@ catch (OperationCanceledException stopped)
     return 1;
 }
 if (json) Console.WriteLine(JsonSerializer.Serialize(figures, new JsonSerializerOptions { WriteIndented = true }));
-else foreach (var (what, value) in figures) Console.WriteLine($"{what,-44} {value}");
+else foreach (var (what, value) in figures) Console.WriteLine($"{what,-44} {(value is IEnumerable<double> several ? string.Join(", ", several) : value)}");
 return 0;

@@ -14,7 +14,16 @@ if (args.FirstOrDefault(a => !a.StartsWith('-')) is not { } name || unknown is n
     Console.Error.WriteLine($"usage: benchmarks NAME [--json]; NAME is one of {string.Join(", ", names.Keys)}");
     return 2;
 }
-var figures = run();
+IReadOnlyDictionary<string, object> figures;
+try
+{
+    figures = run();
+}
+catch (OperationCanceledException stopped)
+{
+    Console.Error.WriteLine($"{name}: {stopped.Message}");
+    return 1;
+}
 if (json) Console.WriteLine(JsonSerializer.Serialize(figures, new JsonSerializerOptions { WriteIndented = true }));
-else foreach (var (what, value) in figures) Console.WriteLine($"{what,-44} {value}");
+else foreach (var (what, value) in figures) Console.WriteLine($"{what,-44} {(value is IEnumerable<double> several ? string.Join(", ", several) : value)}");
 return 0;

@@ -12,13 +12,13 @@ internal static class RowTable
           lateral_acceleration_m_per_s2 real, longitudinal_acceleration_m_per_s2 real, latitude_deg double precision, longitude_deg double precision)
         """;
 
-    /// <summary>Runs until the rows are committed; the calls do not wait one by one, which would cost more than the rows.</summary>
-    public static void Copy(string connectionString, int stream, DoorDrive drive)
+    /// <summary>Runs until the rows are committed; the values are written without awaiting each, which would cost more than the rows.</summary>
+    public static void Copy(string connectionString, int stream, DoorDrive drive, int samples)
     {
         using var connection = new NpgsqlConnection(connectionString);
         connection.Open();
         using var copy = connection.BeginBinaryImport("COPY public.row_sample FROM STDIN (FORMAT binary)");
-        for (var i = 0; i < DoorDrive.Samples; i++)
+        for (var i = 0; i < samples; i++)
         {
             copy.StartRow();
             copy.Write(stream, NpgsqlDbType.Integer);
@@ -27,6 +27,6 @@ internal static class RowTable
             foreach (var column in drive.Position) copy.Write(column[i], NpgsqlDbType.Double);
         }
         var rows = copy.Complete();
-        if (rows != DoorDrive.Samples) throw new InvalidOperationException($"{rows} of {DoorDrive.Samples} rows were copied");
+        if (rows != (ulong)samples) throw new InvalidOperationException($"{rows} of {samples} rows were copied");
     }
 }

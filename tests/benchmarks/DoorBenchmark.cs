@@ -67,9 +67,14 @@ internal static class DoorBenchmark
         await Do(admin, RowTable.Create, cancel);
         var figures = new Dictionary<string, object>
         {
-            ["channels"] = DoorDrive.Channels.Length, ["streams_at_once"] = Streams, ["samples_a_round"] = SamplesARound, ["rounds"] = Rounds,
-            ["processors"] = Environment.ProcessorCount, ["load_average_1_min_before"] = double.Parse(File.ReadAllText("/proc/loadavg").Split(' ')[0]),
-            ["fsync"] = await Ask<string>(admin, "SHOW fsync", cancel), ["synchronous_commit"] = await Ask<string>(admin, "SHOW synchronous_commit", cancel),
+            ["channels"] = DoorDrive.Channels.Length,
+            ["streams_at_once"] = Streams,
+            ["samples_a_round"] = SamplesARound,
+            ["rounds"] = Rounds,
+            ["processors"] = Environment.ProcessorCount,
+            ["load_average_1_min_before"] = double.Parse(File.ReadAllText("/proc/loadavg").Split(' ')[0]),
+            ["fsync"] = await Ask<string>(admin, "SHOW fsync", cancel),
+            ["synchronous_commit"] = await Ask<string>(admin, "SHOW synchronous_commit", cancel),
             ["commit_of_one_row_ms"] = await CommitMs(admin, cancel),
         };
         var seconds = new Dictionary<string, List<double>>();
@@ -133,7 +138,11 @@ internal static class DoorBenchmark
             DepotId = DoorDrive.Depot,
             Vehicle = new Vehicle
             {
-                VehicleId = drive.VehicleId, VehicleClass = VehicleClass.Van, KmPerWeek = 600, GrossMassKg = 3200, WheelbaseM = 3.6,
+                VehicleId = drive.VehicleId,
+                VehicleClass = VehicleClass.Van,
+                KmPerWeek = 600,
+                GrossMassKg = 3200,
+                WheelbaseM = 3.6,
                 Axles = { new Axle { Number = 1, Steered = true, Suspension = Suspension.Strut }, new Axle { Number = 2, Driven = true, Suspension = Suspension.BeamLeaf } },
             },
         }));

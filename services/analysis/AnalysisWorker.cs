@@ -43,6 +43,12 @@ internal sealed partial class AnalysisWorker(StreamReducing reducing, FleetFitti
                 DatabaseAway(log, away);
                 await Task.Delay(TimeSpan.FromSeconds(2), stoppingToken);
             }
+            catch (Exception unexpected)
+            {
+                // The other services of this process go on serving; what could not be analysed stays due.
+                RoundFailed(log, unexpected);
+                await Task.Delay(TimeSpan.FromSeconds(10), stoppingToken);
+            }
         }
     }
 
@@ -60,6 +66,9 @@ internal sealed partial class AnalysisWorker(StreamReducing reducing, FleetFitti
             return (snapshot.AsOf.ToString("yyyy-MM-dd", System.Globalization.CultureInfo.InvariantCulture), mark, vehicles, runs, FactJson.Write(snapshot));
         }, cancel);
     }
+
+    [LoggerMessage(Level = LogLevel.Error, Message = "A round of the analysis failed; what is due stays due")]
+    private static partial void RoundFailed(ILogger log, Exception unexpected);
 
     [LoggerMessage(Level = LogLevel.Warning, Message = "The database does not answer; trying again")]
     private static partial void DatabaseAway(ILogger log, Exception away);

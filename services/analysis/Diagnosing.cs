@@ -87,7 +87,8 @@ internal sealed partial class Diagnosing(FactReader facts, FleetFitStore fits, D
 
     private async Task<(long Id, FleetSnapshot Snapshot)?> Latest(CancellationToken cancel)
     {
-        if (await fits.Latest(cancel) is not { } latest) return null;
+        // A snapshot of an older method is not read; the worker makes a new one.
+        if (await fits.Latest(cancel) is not { } latest || latest.Method != Method) return null;
         if (_latest?.Id != latest.FleetFit) _latest = (latest.FleetFit, FactJson.Read<FleetSnapshot>(await fits.Body(latest.FleetFit, cancel)));
         return _latest;
     }

@@ -53,7 +53,7 @@ internal sealed class Analysis(DiagnosisStore store, FleetFitStore fits, Diagnos
         var latest = await fits.Latest(context.CancellationToken);
         // A snapshot that no longer matches the facts makes every vehicle due; so does having none.
         var mark = await fits.FactsMark(context.CancellationToken);
-        var stale = latest is null ? !mark.StartsWith("0/", StringComparison.Ordinal) : latest.FactsMark != mark;
+        var stale = latest is null ? !mark.StartsWith("0/", StringComparison.Ordinal) : latest.FactsMark != mark || latest.Method != Diagnosing.Method;
         var counts = await store.Counts(stale ? long.MaxValue : latest?.FleetFit ?? 0, Diagnosing.Method, context.CancellationToken);
         return new GetAnalysisStatusResponse
         {

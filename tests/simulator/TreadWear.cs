@@ -18,7 +18,7 @@ public sealed record Duty
 /// <summary>
 /// Wear of one tyre, strip by strip, from the energy of sliding: the pressure of the strip times a power of the
 /// slip angle, averaged over service slip (normal, zero mean unless the duty is one-sided) about the steady slip of
-/// straight running. With power 2 the mean is the handbook form 1 + (α/σ)². Shoulder shares reach 2:1 at large
+/// straight running. With power 2 the mean is the usual form 1 + (α/σ)². Shoulder shares reach 2:1 at large
 /// slip (from memory).
 /// </summary>
 public static class TreadWear

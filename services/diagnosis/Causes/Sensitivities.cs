@@ -14,12 +14,12 @@ namespace WearWatch.Diagnosis.Causes;
 /// <param name="PressureNmPerShare">Torque per unit of relative pressure difference across the front axle; from memory.</param>
 /// <param name="DragLeverM">Scrub radius/ratio, m: torque per newton of one-sided drag; from memory.</param>
 /// <param name="ConicitySdN">Ordinary residual side force of the front tyres, N; reject bands near 100 N per car tyre, from memory.</param>
-/// <param name="SteeringRatio">Used when the vehicle's own is not recorded; handbook ranges.</param>
-/// <param name="TyreStiffnessNPerRad">Cornering stiffness of one tyre; middle of the handbook's ranges.</param>
-/// <param name="FrontRate">Normal wear, front axle, mm per 1000 km; middle of the handbook's ranges.</param>
+/// <param name="SteeringRatio">Used when the vehicle's own is not recorded; ranges of the trade, from memory.</param>
+/// <param name="TyreStiffnessNPerRad">Cornering stiffness of one tyre; middle of the trade's usual ranges, from memory.</param>
+/// <param name="FrontRate">Normal wear, front axle, mm per 1000 km; middle of the trade's usual ranges, from memory.</param>
 /// <param name="RearRate">The same for other axles.</param>
 /// <param name="RollShare">SD of outboard-shoulder wear common to both wheels of an axle from cornering and roll, share of the rate; from memory.</param>
-/// <param name="NewDepthMm">New tread depth where the tyre's own is unknown; middle of the handbook's ranges.</param>
+/// <param name="NewDepthMm">New tread depth where the tyre's own is unknown; middle of the trade's usual ranges, from memory.</param>
 public sealed record ClassSensitivities(
     double CasterNmPerDeg, double CamberNmPerDeg, double SideForceLeverM, double BankNmPerDeg, double BankWheelDegPerDeg,
     double PressureNmPerShare, double DragLeverM, double ConicitySdN, double SteeringRatio, double TyreStiffnessNPerRad,

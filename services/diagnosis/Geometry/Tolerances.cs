@@ -51,7 +51,7 @@ public static class Tolerances
     /// <param name="asOf">Day of judgement.</param>
     public static Tolerance? For(Vehicle vehicle, Quantity quantity, int? axle, IReadOnlyList<ToleranceFact> operatorFacts, DateOnly asOf)
     {
-        // Buses carry truck axles and keep truck tolerances (handbook of the trade: one row for truck and bus).
+        // Buses carry truck axles and keep truck tolerances (common practice, no source).
         var row = vehicle.Class == VehicleClass.Bus ? VehicleClass.Truck : vehicle.Class;
         var front = vehicle.Class != VehicleClass.Trailer && axle is null or 1;
         var found = Table.FirstOrDefault(r => r.Class == row && r.Quantity == quantity && (r.Front is null || r.Front == front));

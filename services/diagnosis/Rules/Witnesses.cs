@@ -42,7 +42,7 @@ internal static class Witnesses
     public static Evidence OffCentre(VehicleFigures figures, Estimate angle) =>
         new($"Steering wheel {TradeWords.Full(angle * SignOf(angle.Value), 1, "deg")} to the {TradeWords.Direction(angle.Value)} when travelling straight", figures.Steering!.EvidenceRuns);
 
-    /// <summary>Side the vehicle pulls to; the holding torque has the opposite sign (handbook of signs: pulls right, positive torque).</summary>
+    /// <summary>Side the vehicle pulls to; the holding torque has the opposite sign (pulls right: positive torque).</summary>
     public static Side PullSide(double holdingTorqueNm) => holdingTorqueNm > 0 ? Side.Right : Side.Left;
 
     /// <summary>Drivers' reports of a symptom that are still fresh, as one statement.</summary>

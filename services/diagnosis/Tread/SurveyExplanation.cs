@@ -83,7 +83,7 @@ public readonly record struct TyreExpectation(Estimate MeanMm, Estimate EdgeMm, 
 /// </summary>
 public static class SurveyExplanation
 {
-    // Prior shares of surveys, inside the 1-3 % of blunders the handbook expects; from memory.
+    // Prior shares of surveys, inside the 1-3 % of blunders usual in depots; from memory.
     private const double SidesSwappedPrior = 0.01;
     private const double AxleSidesSwappedPrior = 0.005;
     private const double AxlesSwappedPrior = 0.004;

@@ -7,7 +7,7 @@ namespace WearWatch.Diagnosis.Wear;
 /// <summary>Finds single grooves typed wrong: the tyre's profile changes at one groove in one survey and nowhere else.</summary>
 internal static class GrooveOutliers
 {
-    /// <summary>Share of grooves typed wrong or read on a wear bar, inside the 1-3 % of blunders the handbook expects.</summary>
+    /// <summary>Share of grooves typed wrong or read on a wear bar, inside the 1-3 % of blunders usual in depots (from memory).</summary>
     private const double Prior = 0.005;
 
     /// <summary>A mistyped depth can be anything within this width, mm.</summary>

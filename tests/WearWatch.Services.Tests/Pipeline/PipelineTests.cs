@@ -140,6 +140,48 @@ public sealed class PipelineTests(SmallFleet fleet) : IClassFixture<SmallFleet>
     }
 
     [Fact]
+    public async Task Two_workers_from_scratch_find_the_same_from_the_same_facts()
+    {
+        var before = await Diagnoses();
+        await using (var other = await Installation.Start(fleet.Folder, new HostOptions { Database = fleet.Database, Only = ["analysis"] }, CancellationToken.None))
+        {
+            await using var connection = new NpgsqlConnection(fleet.Database);
+            await connection.ExecuteAsync("DELETE FROM analysis.diagnosis; DELETE FROM analysis.finding; DELETE FROM analysis.straight_run; DELETE FROM analysis.reduction; DELETE FROM analysis.progress; DELETE FROM analysis.fleet_fit");
+            await Services.Analysed((_, _) => { }, CancellationToken.None);
+        }
+        Assert.Equal(before, await Diagnoses());
+    }
+
+    /// <summary>Every diagnosis without what tells when and on which snapshot it was made.</summary>
+    private async Task<SortedDictionary<string, string>> Diagnoses()
+    {
+        var found = new SortedDictionary<string, string>(StringComparer.Ordinal);
+        foreach (var row in (await WorklistPages.Read(Services.Report, "", WorklistSort.Vehicle, CancellationToken.None)).Vehicles)
+        {
+            var diagnosis = (await Services.Report.GetVehicleReportAsync(new() { VehicleId = row.VehicleId })).Diagnosis;
+            diagnosis.FleetFit = 0;
+            foreach (var finding in diagnosis.Findings) (finding.OpenedAt, finding.OpenedBecause, finding.Id) = (null, "", "");
+            found[row.VehicleId] = diagnosis.ToString();
+        }
+        return found;
+    }
+
+    [Fact]
+    public async Task A_list_of_one_depot_holds_its_vehicles_only()
+    {
+        var all = await WorklistPages.Read(Services.Report, "", WorklistSort.Vehicle, CancellationToken.None);
+        var depots = all.Vehicles.CountBy(v => v.Depot).ToDictionary();
+        Assert.True(depots.Count > 1);
+        foreach (var (depot, count) in depots)
+        {
+            var own = await WorklistPages.Read(Services.Report, depot, WorklistSort.Probability, CancellationToken.None);
+            Assert.Equal(count, own.Total);
+            Assert.All(own.Vehicles, v => Assert.Equal(depot, v.Depot));
+            Assert.Equal(own.Vehicles.Select(v => v.MisalignedProbability).OrderDescending(), own.Vehicles.Select(v => v.MisalignedProbability));
+        }
+    }
+
+    [Fact]
     public async Task The_services_say_that_they_are_well()
     {
         var health = await new Health.HealthClient(Services.Channel).CheckAsync(new HealthCheckRequest());

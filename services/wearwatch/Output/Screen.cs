@@ -67,7 +67,7 @@ internal static class Screen
         Causes(console, d);
         Tyres(console, d);
         foreach (var finding in d.Findings) Finding(console, finding);
-        foreach (var note in d.SurveyNotes) console.MarkupLineInterpolated($"Survey {note.SurveyId}: {note.Note}");
+        foreach (var note in d.SurveyNotes) console.MarkupLineInterpolated($"{(note.SurveyId.Length > 0 ? $"Survey {note.SurveyId}: " : "")}{note.Note}");
         foreach (var gap in d.CannotTell) console.MarkupLineInterpolated($"Cannot tell {gap.What}: {gap.Because}. Would help: {gap.WouldHelp}.");
         console.WriteLine();
         console.MarkupLineInterpolated($"[italic]{report.Notice}[/]");

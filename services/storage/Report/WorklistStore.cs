@@ -56,9 +56,10 @@ public sealed record OpenFinding
 /// <summary>Queries of the report service: it reads what analysis published and keeps the worklists it showed.</summary>
 public sealed class WorklistStore(NpgsqlDataSource report)
 {
-    // A short text that changes whenever a diagnosis or a decision does.
+    // A short text that changes whenever a diagnosis does (a decision makes its vehicles due, so it does too). The sum of
+    // the times and not the newest: of two workers the one that began earlier may commit later.
     private const string MarkSql = """
-        SELECT coalesce(max(made_at)::text, '') || ' ' || count(*) FROM analysis.diagnosis
+        SELECT coalesce(sum(extract(epoch FROM made_at)), 0)::text || ' ' || count(*) FROM analysis.diagnosis
         WHERE @depot = '' OR depot = @depot
         """;
 

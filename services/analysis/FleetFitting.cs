@@ -15,8 +15,8 @@ internal sealed class FleetFitting(FactReader facts, RunStore runs, TimeProvider
     /// <summary>Workshop records older than this, in days before the as-of date, no longer anchor the steering's zero.</summary>
     private const int InOrderDays = 180;
 
-    /// <summary>Days before the as-of date that tell how a vehicle steers now, and the straight runs that suffice.</summary>
-    private const int PresentDays = 42, PresentRuns = 20;
+    /// <summary>Straight runs that suffice to tell how a vehicle steers now.</summary>
+    private const int PresentRuns = 20;
 
     /// <summary>Marks the vehicle as it was before; no id may hold a blank.</summary>
     private const string AsItWas = " before";
@@ -73,23 +73,26 @@ internal sealed class FleetFitting(FactReader facts, RunStore runs, TimeProvider
         }
         var fit = RoadModel.Fit(runs, vehicles);
         var was = fit.Vehicles.Where(v => v.VehicleId.EndsWith(AsItWas, StringComparison.Ordinal)).ToDictionary(v => v.VehicleId);
-        return fit with { Vehicles = [.. fit.Vehicles.Where(v => !was.ContainsKey(v.VehicleId)).Select(v => was.TryGetValue(v.VehicleId + AsItWas, out var before) ? Changed(v, before) : v)] };
+        return fit with { Vehicles = [.. fit.Vehicles.Where(v => !was.ContainsKey(v.VehicleId)).Select(v => was.TryGetValue(v.VehicleId + AsItWas, out var before) ? Changed(v, before, DaysAgo(byVehicle[v.VehicleId].Min(r => r.Start), day)) : v)] };
     }
 
-    private static SteeringFigures Changed(SteeringFigures now, SteeringFigures before)
+    private static double DaysAgo(DateTimeOffset time, DateOnly day) => (new DateTimeOffset(day, TimeOnly.MinValue, TimeSpan.Zero) - time).TotalDays;
+
+    private static SteeringFigures Changed(SteeringFigures now, SteeringFigures before, double earliest)
     {
         static Estimate? Less(Estimate? a, Estimate? b) => a is { } x && b is { } y ? x - y : null;
         return before.Runs < PresentRuns ? now : now with
         {
             SteeringPullChangeNm = Less(now.SteeringPullNm, before.SteeringPullNm),
             OffCentreChangeDeg = Less(now.OffCentreDeg, before.OffCentreDeg),
+            EarliestDaysAgo = earliest,
         };
     }
 
     private static DateTimeOffset PresentSince(VehicleFacts v, IEnumerable<StraightRun> runs, DateOnly day)
     {
         var alignment = v.WorkshopRecords.LastOrDefault(w => w.Body.Result == WorkshopResult.Adjusted)?.At ?? DateTimeOffset.MinValue;
-        var window = new DateTimeOffset(day.AddDays(-PresentDays), TimeOnly.MinValue, TimeSpan.Zero);
+        var window = new DateTimeOffset(day.AddDays(-SteeringFigures.PresentDays), TimeOnly.MinValue, TimeSpan.Zero);
         // A vehicle that hardly drove of late is judged on what there is since its alignment.
         var since = runs.Count(r => r.Start >= window) >= PresentRuns ? window : DateTimeOffset.MinValue;
         return since > alignment ? since : alignment;

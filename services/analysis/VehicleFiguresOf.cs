@@ -17,6 +17,7 @@ internal static class VehicleFiguresOf
         Surveys = [.. v.Surveys.Concat(v.HeldSurveys).Select(s => new StoredSurvey(s.FactId, s.Body))],
         Fittings = [.. v.Fittings.Select(f => f.Body)],
         Tyres = [.. v.Tyres.Select(t => t.Body)],
+        AdjustedAt = v.WorkshopRecords.LastOrDefault(w => w.Body.Result == WorkshopResult.Adjusted || w.Body.Angles.Any(a => a.AfterDeg is not null))?.At,
         Limits = Limits(settings),
     };
 
@@ -28,6 +29,7 @@ internal static class VehicleFiguresOf
         Depot = v.Depot,
         AsOf = asOf,
         Tyres = wear.Tyres,
+        Wear = wear.History,
         Steering = steering,
         Route = v.Route,
         DriverReports = [.. v.DriverReports.Select(r => r.Body)],

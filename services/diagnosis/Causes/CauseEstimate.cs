@@ -22,11 +22,11 @@ public static class CauseEstimate
         var weigher = new StoryWeigher(model);
         var stories = Stories.Of(model, priors);
         var inOrder = weigher.InOrder();
-        var alone = weigher.Weigh([.. stories.Select(s => (s, (Story?)null))], inOrder);
+        StoryFit[] alone = [.. stories.Select(s => weigher.Weigh(s))];
         var angles = alone.Where(f => f.Story.IsAngle).ToArray();
         var looks = alone.Where(f => !f.Story.IsAngle).ToArray();
         var mixture = new Mixture(angles, looks, inOrder, priors.MisalignedShare);
-        WeighPairs(weigher, mixture, Math.Max(inOrder, alone.Max(f => f.Evidence)));
+        WeighPairs(weigher, mixture);
         return new Verdict
         {
             MisalignedProbability = mixture.Misaligned,
@@ -36,15 +36,13 @@ public static class CauseEstimate
         };
     }
 
-    private static void WeighPairs(StoryWeigher weigher, Mixture mixture, double best)
+    private static void WeighPairs(StoryWeigher weigher, Mixture mixture)
     {
         var likely = Enumerable.Range(0, mixture.Angles.Count).Where(a => mixture.AngleShare(a) >= WorthWeighing)
             .OrderByDescending(mixture.AngleShare).Take(WeighedJointly).ToArray();
         var moving = Enumerable.Range(0, mixture.Looks.Count).Where(l => mixture.Looks[l].Story.Moves.Count > 0).ToArray();
         (int Angle, int Look)[] pairs = [.. likely.SelectMany(a => moving.Where(l => mixture.PairShare(a, l) >= PairWorthWeighing).Select(l => (a, l)))];
-        if (pairs.Length == 0) return;
-        var fits = weigher.Weigh([.. pairs.Select(p => (mixture.Angles[p.Angle].Story, (Story?)mixture.Looks[p.Look].Story))], best);
-        for (var i = 0; i < pairs.Length; i++) mixture.Refine(pairs[i].Angle, pairs[i].Look, fits[i]);
+        foreach (var (angle, look) in pairs) mixture.Refine(angle, look, weigher.Weigh(mixture.Angles[angle].Story, mixture.Looks[look].Story));
     }
 
     private static IReadOnlyList<Cause> Causes(Mixture mixture) =>

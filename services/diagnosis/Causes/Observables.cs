@@ -5,15 +5,25 @@ using WearWatch.Diagnosis.Wear;
 
 namespace WearWatch.Diagnosis.Causes;
 
-public enum ObservableKind { SteeringPull, WheelAngle, LogRate, EdgeSlope, Feather }
+public enum ObservableKind { SteeringPull, WheelAngle, Rate, EdgeSlope, Feather }
 
 /// <summary>One figure that both hangs on the state and on shared unknowns.</summary>
-/// <param name="Kind">What.</param>
+/// <param name="Kind">Steering pull (N·m), wheel angle (deg) or feather (mm).</param>
 /// <param name="Tyre">Index into the model's positions; −1 for steering.</param>
-/// <param name="Value">N·m, deg, logarithm, share of the normal rate, or mm.</param>
+/// <param name="Value">In the kind's unit.</param>
 /// <param name="Variance">Of the reading and of what stays unexplained, squared unit.</param>
 /// <param name="WildSd">SD of a wild reading about zero, in the unit.</param>
 public readonly record struct Observable(ObservableKind Kind, int Tyre, double Value, double Variance, double WildSd);
+
+/// <summary>Wear of one place before and after an onset, as share of its normal rate.</summary>
+/// <param name="Kind">Rate, or edge slope.</param>
+/// <param name="Tyre">Index into the model's positions.</param>
+/// <param name="Evidence">What was read of both slopes.</param>
+/// <param name="RestSd">What stays unexplained and a place keeps, share of its wear.</param>
+/// <param name="AxleSd">The same that both sides of an axle share.</param>
+/// <param name="VehicleSd">The same that the whole vehicle shares: its driver, its goods, and what is not known of normal wear.</param>
+/// <param name="NormalEdge">Edge slope per unit of wear that is normal for the place and still in the figures.</param>
+public readonly record struct WearObservable(ObservableKind Kind, int Tyre, SlopeEvidence Evidence, double RestSd, double AxleSd, double VehicleSd, double NormalEdge);
 
 /// <summary>Turns a vehicle's figures into observables; what is null is left out.</summary>
 public static class Observables
@@ -26,9 +36,42 @@ public static class Observables
             rows.Add(Row(ObservableKind.SteeringPull, -1, pull, Sensitivities.TorqueRest * Math.Max(0.3, model.AssistShare), 3 * Math.Max(0.3, model.AssistShare)));
         if (!model.IsTrailer && steering?.OffCentreDeg is { } angle)
             rows.Add(Row(ObservableKind.WheelAngle, -1, angle, Sensitivities.WheelAngleRest, 15));
+        for (var i = 0; i < model.Positions.Count; i++)
+            if (model.Figures.At(model.Positions[i])?.FeatherMm is { } feather)
+                rows.Add(Row(ObservableKind.Feather, i, feather, Sensitivities.FeatherRest + 0.2 * StaleWear(model), 0.8));
+        return rows;
+    }
+
+    /// <summary>Wear around one onset; figures without a history hold for the time since.</summary>
+    public static IReadOnlyList<WearObservable> Wear(VehicleModel model, int onset) =>
+        model.Figures.Wear is { } history ? [.. Dated(model, history, onset).Where(w => w.Evidence.Tells)] : Undated(model);
+
+    private static IEnumerable<WearObservable> Dated(VehicleModel model, VehicleWearHistory history, int onset)
+    {
+        for (var i = 0; i < model.Positions.Count; i++)
+        {
+            if (!history.Places.TryGetValue(model.Positions[i], out var place)) continue;
+            var (normal, wear) = (place.NormalRateMmPer1000Km, place.ByOnset[onset]);
+            var vehicle = Math.Sqrt(Math.Pow(Math.Max(Sensitivities.LogRateVehicle, place.BetweenLogSd), 2) + Math.Pow(place.NormalLogRateSd, 2));
+            var axle = model.Figures.Vehicle.AxleAt(model.Positions[i].Axle) is { Lifting: true } ? Sensitivities.LogRateLifting : Sensitivities.LogRateAxle;
+            yield return new(ObservableKind.Rate, i, wear.Rate.InUnitsOf(normal), Sensitivities.LogRatePlace, axle, vehicle, 0);
+            yield return new(ObservableKind.EdgeSlope, i, wear.Edge.InUnitsOf(normal), Sensitivities.EdgePlace, axle, vehicle, place.NormalEdgePerMm);
+        }
+    }
+
+    private static List<WearObservable> Undated(VehicleModel model)
+    {
+        var rows = new List<WearObservable>();
         var stale = StaleWear(model);
         for (var i = 0; i < model.Positions.Count; i++)
-            if (model.Figures.At(model.Positions[i]) is { } tyre) AddTyre(rows, model, i, tyre, stale);
+        {
+            if (model.Figures.At(model.Positions[i]) is not { } tyre) continue;
+            var normal = NormalRate(model, tyre);
+            if (tyre.LogRateRatio is { } log && Math.Exp(log.Value) is var ratio)
+                rows.Add(new(ObservableKind.Rate, i, SlopeEvidence.AfterOnly(ratio, ratio * log.StandardError), Math.Max(Sensitivities.LogRateRest, 0.3 * stale), 0, Sensitivities.LogRateVehicle, 0));
+            if (tyre.EdgeSlopeMmPer1000Km is { } slope)
+                rows.Add(new(ObservableKind.EdgeSlope, i, SlopeEvidence.AfterOnly(slope.Value / normal, slope.StandardError / normal), Math.Max(Sensitivities.EdgeRest, 0.4 * stale), 0, 0, 0));
+        }
         return rows;
     }
 
@@ -39,16 +82,6 @@ public static class Observables
         if (tyre is { RateMmPer1000Km: { Value: > 0 } own, LogRateRatio: { } ratio }) return own.Value * Math.Exp(-ratio.Value);
         var axle = tyre?.Position.Axle ?? 2;
         return axle == 1 && !model.IsTrailer ? model.Class.FrontRate : model.Class.RearRate;
-    }
-
-    private static void AddTyre(List<Observable> rows, VehicleModel model, int index, TyreFigures tyre, double stale)
-    {
-        if (tyre.LogRateRatio is { } ratio)
-            rows.Add(Row(ObservableKind.LogRate, index, ratio, Math.Max(Sensitivities.LogRateRest, 0.3 * stale), 1.5));
-        if (tyre.EdgeSlopeMmPer1000Km is { } slope)
-            rows.Add(Row(ObservableKind.EdgeSlope, index, slope * (1 / NormalRate(model, tyre)), Math.Max(Sensitivities.EdgeRest, 0.4 * stale), 2));
-        if (tyre.FeatherMm is { } feather)
-            rows.Add(Row(ObservableKind.Feather, index, feather, Sensitivities.FeatherRest + 0.2 * stale, 0.8));
     }
 
     private static Observable Row(ObservableKind kind, int tyre, Estimate estimate, double rest, double wildSd) =>

@@ -59,6 +59,12 @@ public static class Sensitivities
     /// <summary>What is left unexplained: torque N·m (times assist share), wheel angle deg, log rate per tyre and per vehicle, edge share, feather mm (from memory).</summary>
     public const double TorqueRest = 0.12, WheelAngleRest = 0.5, LogRateRest = 0.15, LogRateVehicle = 0.20, EdgeRest = 0.08, FeatherRest = 0.10;
 
+    /// <summary>
+    /// The same where a place's whole history is read and what surveys share is taken apart: log rate of a place, of both sides
+    /// of an axle, of an axle that is lifted for a part of the distance; edge share of a place (from memory).
+    /// </summary>
+    public const double LogRatePlace = 0.08, LogRateAxle = 0.12, LogRateLifting = 0.30, EdgePlace = 0.05;
+
     /// <summary>SD of the angle sensor's zero on a vehicle not worth naming for it, deg at the wheel (from memory).</summary>
     public const double SensorZeroSdDeg = 1.3;
 

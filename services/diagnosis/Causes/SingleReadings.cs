@@ -1,12 +1,13 @@
 using MathNet.Numerics.Distributions;
 using WearWatch.Diagnosis.Facts;
+using WearWatch.Diagnosis.Roads;
 using WearWatch.Diagnosis.Statistics;
 using WearWatch.Diagnosis.Wear;
 
 namespace WearWatch.Diagnosis.Causes;
 
-/// <summary>What single readings are compared with at one state: slip that shapes each tyre, torque (N·m) and wheel angle (deg), each with mean and SD.</summary>
-public sealed record StateSeen((double Mean, double Sd)[] Slip, (double Mean, double Sd) Torque, (double Mean, double Sd) WheelAngle);
+/// <summary>What single readings are compared with at one state: slip that shapes each tyre since the onset and before it, torque (N·m) and wheel angle (deg), each with mean and SD.</summary>
+public sealed record StateSeen((double Mean, double Sd)[] Slip, (double Mean, double Sd)[] SlipBefore, (double Mean, double Sd) Torque, (double Mean, double Sd) WheelAngle);
 
 /// <summary>
 /// Evidence that needs no joint law: hand rubs, pressures, shoulder wear, unevenness round the tyre, pull under
@@ -28,8 +29,8 @@ public sealed class SingleReadings
     /// <summary>Ordinary change of off-centre angle and of the column's torque over some months (from memory).</summary>
     private const double AngleDriftDeg = 0.6, TorqueDriftNm = 0.15;
 
-    /// <summary>Share of faults that came about within the months that samples reach back, and of look-alikes that did (a sensor's zero after service, a tyre exchanged); from memory.</summary>
-    private const double CameLately = 0.5, MovedLately = 0.1;
+    /// <summary>Share of look-alikes that came about within the months that samples reach back (a sensor's zero after service, a tyre exchanged); from memory.</summary>
+    private const double MovedLately = 0.1;
 
     /// <summary>Most that all driver reports of one kind may weigh, as a factor.</summary>
     private const double ReportFactor = 2.0;
@@ -57,9 +58,13 @@ public sealed class SingleReadings
     }
 
     /// <summary>Log likelihood of all of it, up to what every story shares.</summary>
-    public double LogLikelihood(Story? story, double magnitude, StateSeen seen)
+    /// <param name="story">What is wrong, or null.</param>
+    /// <param name="magnitude">How far, in the quantity's unit.</param>
+    /// <param name="onset">Index into <see cref="Onsets.DaysAgo"/>: since when.</param>
+    /// <param name="seen">What the joint law makes of it.</param>
+    public double LogLikelihood(Story? story, double magnitude, int onset, StateSeen seen)
     {
-        var sum = Reports(story, seen) + Brake(story) + Changes(story, magnitude);
+        var sum = Reports(story, seen) + Brake(story) + Changes(story, magnitude, Onsets.DaysAgo[onset]);
         double straight = 0, swapped = 0;
         for (var i = 0; i < _tyres.Length; i++)
         {
@@ -69,9 +74,10 @@ public sealed class SingleReadings
             var damper = at && story!.Quantity == Quantity.Damper;
             sum += at && story!.Quantity == Quantity.Pressure ? Pressure(tyre, magnitude) : _pressureInOrder[i];
             sum += (damper ? Round(tyre, magnitude) : _roundInOrder[i]) + Cupped(tyre, damper, slip);
-            if (tyre.RubsCatchingOutward + tyre.RubsCatchingInward + tyre.RubsCatchingNeither == 0) continue;
-            straight += Rubs(tyre.RubsCatchingOutward, tyre.RubsCatchingInward, tyre.RubsCatchingNeither, slip, sd);
-            swapped += Rubs(tyre.RubsCatchingInward, tyre.RubsCatchingOutward, tyre.RubsCatchingNeither, slip, sd);
+            var (before, after) = _model.Figures.Wear?.Places.GetValueOrDefault(tyre.Position)?.ByOnset[onset] is { } dated ? (dated.Before, dated.After)
+                : (new Rubs(), new(tyre.RubsCatchingOutward, tyre.RubsCatchingInward, tyre.RubsCatchingNeither));
+            straight += Felt(after, slip, sd) + Felt(before, seen.SlipBefore[i].Mean, seen.SlipBefore[i].Sd);
+            swapped += Felt(after.Exchanged, slip, sd) + Felt(before.Exchanged, seen.SlipBefore[i].Mean, seen.SlipBefore[i].Sd);
         }
         return sum + straight + Math.Log(1 - RubSwapped + RubSwapped * Math.Exp(swapped - straight));
     }
@@ -96,16 +102,16 @@ public sealed class SingleReadings
         return Math.Log(tyre.Seen.Contains(Seen.Cupped) ? chance : 1 - chance);
     }
 
-    private static double Rubs(int outward, int inward, int neither, double slip, double sd)
+    private static double Felt(Rubs rubs, double slip, double sd)
     {
-        var count = outward + inward + neither;
+        if (rubs.Count == 0) return 0;
         var spread = Math.Sqrt(RubSpread * RubSpread + sd * sd);
         var feltOutward = Normal.CDF(0, 1, (slip - RubThreshold) / spread);
         var feltInward = Normal.CDF(0, 1, (-slip - RubThreshold) / spread);
         double Noted(double felt) => Math.Log((1 - RubError) * Math.Max(0, felt) + RubError / 3);
-        var sum = outward * Noted(feltOutward) + inward * Noted(feltInward) + neither * Noted(1 - feltOutward - feltInward);
+        var sum = rubs.Outward * Noted(feltOutward) + rubs.Inward * Noted(feltInward) + rubs.Neither * Noted(1 - feltOutward - feltInward);
         // The same edge felt again is not new evidence in full.
-        return sum / count * (1 + 0.4 * (count - 1));
+        return sum / rubs.Count * (1 + 0.4 * (rubs.Count - 1));
     }
 
     private double Brake(Story? story)
@@ -115,22 +121,24 @@ public sealed class SingleReadings
         return Guarded(pull, 0, (story?.Quantity == Quantity.Drag ? BrakeDragNm : BrakeRestNm) * share, 4 * share);
     }
 
-    /// <summary>What changed over the last weeks: a fault that came about since moves pull and off-centre angle by up to its whole effect.</summary>
-    private double Changes(Story? story, double magnitude)
+    /// <summary>What changed between the weeks before and the present ones: what began since shows with the share of either that it was there.</summary>
+    private double Changes(Story? story, double magnitude, double daysAgo)
     {
         if (_model.IsTrailer || _model.Figures.Steering is not { } steering) return 0;
         var share = Math.Max(0.3, _model.AssistShare);
+        var earliest = Math.Max(steering.EarliestDaysAgo ?? 180, SteeringFigures.PresentDays + 1);
+        var grown = Math.Min(1, daysAgo / SteeringFigures.PresentDays) - Math.Clamp((daysAgo - SteeringFigures.PresentDays) / (earliest - SteeringFigures.PresentDays), 0, 1);
         return Change(steering.OffCentreChangeDeg, _model.WheelAngle, AngleDriftDeg, 6) + Change(steering.SteeringPullChangeNm, _model.Torque, TorqueDriftNm * share, 2 * share);
 
         double Change(Estimate? change, double[] map, double drift, double wild)
         {
             if (change is not { } seen) return 0;
-            var still = Guarded(seen, 0, drift, wild);
             double whole = 0;
             foreach (var (state, weight) in story?.Moves ?? []) whole += map[state] * weight * magnitude;
-            if (Math.Abs(whole) < drift) return still;
-            var late = story!.IsAngle ? CameLately : MovedLately;
-            return Math.Log(Math.Exp(still) * (1 - late) + late * Math.Exp(Guarded(seen, 0.6 * whole, drift + 0.35 * Math.Abs(whole), wild)));
+            if (story is { IsAngle: true }) return Guarded(seen, grown * whole, drift + 0.35 * grown * Math.Abs(whole), wild);
+            var still = Guarded(seen, 0, drift, wild);
+            return Math.Abs(whole) < drift ? still
+                : Math.Log(Math.Exp(still) * (1 - MovedLately) + MovedLately * Math.Exp(Guarded(seen, 0.6 * whole, drift + 0.35 * Math.Abs(whole), wild)));
         }
     }
 

@@ -4,7 +4,8 @@ namespace WearWatch.Diagnosis.Causes;
 /// <param name="Story">What.</param>
 /// <param name="LogLikelihood">Per cell.</param>
 /// <param name="LogSlipScale">Posterior mean and SD of the slip scale's logarithm, per cell.</param>
-public sealed record StoryFit(Story Story, double[] LogLikelihood, (double Mean, double Sd)[] LogSlipScale)
+/// <param name="ByOnset">Log likelihood of each onset with its prior share, the magnitude integrated out; in the order of <see cref="Wear.Onsets.DaysAgo"/>.</param>
+public sealed record StoryFit(Story Story, double[] LogLikelihood, (double Mean, double Sd)[] LogSlipScale, double[] ByOnset)
 {
     /// <summary>Log likelihood of the story with its magnitude integrated out.</summary>
     public double Evidence => LogSum(Story.Cells.Select((c, i) => Math.Log(c.Share) + LogLikelihood[i]));

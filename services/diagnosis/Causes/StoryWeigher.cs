@@ -1,4 +1,5 @@
 using MathNet.Numerics.Distributions;
+using WearWatch.Diagnosis.Wear;
 
 namespace WearWatch.Diagnosis.Causes;
 
@@ -9,8 +10,12 @@ public sealed class StoryWeigher
     private const int MostWild = 3;
     private const double WorthTrying = -1.5;
 
-    /// <summary>Log likelihood below the best at which a magnitude no longer matters.</summary>
-    private const double FarBelow = 8;
+    /// <summary>Log likelihood below the story's best at which an onset and a magnitude no longer matter, and how many are weighed in full.</summary>
+    private const double FarBelow = 10;
+    private const int MostRefined = 60;
+
+    /// <summary>SD of a tyre's slip over RMS service slip that a scan takes for it.</summary>
+    private const double ScannedSlipSd = 0.3;
 
     /// <summary>Three-point Gauss–Hermite rule for the gain common to all edges, in prior SDs (Abramowitz &amp; Stegun 25.10, rescaled).</summary>
     private static readonly (double Node, double LogWeight)[] Gains =
@@ -19,7 +24,7 @@ public sealed class StoryWeigher
     private static readonly double LogPriorInside = Math.Log(1 - 2 * Normal.CDF(0, 1, -1 / Sensitivities.InOrderSd));
 
     private readonly VehicleModel _model;
-    private readonly JointGaussian _joint;
+    private readonly JointGaussian[] _joint; // by onset
     private readonly SingleReadings _single;
     private readonly BenchEvidence _bench;
     private readonly double[] _state, _priorSd, _ordinarySd;
@@ -28,45 +33,75 @@ public sealed class StoryWeigher
     /// <summary>One choice of which readings are wild: log likelihood of the joint law, and the state as single readings see it.</summary>
     private sealed record Branch(double Log, StateSeen Seen, (double Mean, double Sd) LogSlipScale);
 
+    /// <summary>One onset and magnitude of a story, with the logarithm of its prior share and of its likelihood.</summary>
+    private sealed record Point(int Onset, int Cell, double Prior)
+    {
+        public double Log { get; set; }
+        public bool InFull { get; set; }
+        public (double Mean, double Sd) LogSlipScale { get; set; }
+    }
+
     public StoryWeigher(VehicleModel model)
     {
         _model = model;
-        _joint = new JointGaussian(model, Observables.Of(model));
+        // Where nothing is dated a fault has always been there.
+        var dated = model.Figures.Wear is not null || model.Figures.Steering?.EarliestDaysAgo is not null;
+        _joint = [.. Enumerable.Range(0, dated ? Onsets.DaysAgo.Count : 1).Select(o => new JointGaussian(model, o))];
         _single = new SingleReadings(model);
         _bench = new BenchEvidence(model);
         _ordinarySd = [.. model.Dimensions.Select(d => d.PriorSd)];
         (_state, _priorSd) = (new double[_ordinarySd.Length], [.. _ordinarySd]);
-        _inOrder = [.. Gains.Select(g => Branches(g.Node))];
+        _inOrder = [.. Gains.Select(g => Branches(0, g.Node))];
     }
 
     /// <summary>Log likelihood of a vehicle with every angle in order and no look-alike worth naming.</summary>
     public double InOrder()
     {
         Place(null, 0, null);
-        return At(null, 0, everyGain: true).LogLikelihood;
+        return At(null, 0, 0).LogLikelihood;
     }
 
-    /// <summary>Stories over all their magnitudes.</summary>
-    /// <param name="stories">What, each with the look-alike there at the same time (or null), whose magnitude is integrated as Gaussian.</param>
-    /// <param name="best">Log likelihood known to be reached; what stays far below is weighed at the middle gain only.</param>
-    public IReadOnlyList<StoryFit> Weigh(IReadOnlyList<(Story Story, Story? Beside)> stories, double best)
+    /// <summary>A story over all its magnitudes, and an angle over all its onsets (a look-alike has always been there).</summary>
+    /// <param name="story">What.</param>
+    /// <param name="beside">The look-alike there at the same time, or null; its magnitude is integrated as Gaussian.</param>
+    /// <remarks>Everything is scanned with no reading taken as wild; what comes near the story's best is weighed in full, and moves the rest along.</remarks>
+    public StoryFit Weigh(Story story, Story? beside = null)
     {
-        var fits = stories.Select(s => new StoryFit(s.Story, new double[s.Story.Cells.Count], new (double, double)[s.Story.Cells.Count])).ToArray();
-        for (var k = 0; k < fits.Length; k++)
-            for (var i = 0; i < fits[k].LogLikelihood.Length; i++)
-                best = Math.Max(best, Fill(fits[k], i, stories[k].Beside, everyGain: false));
-        for (var k = 0; k < fits.Length; k++)
-            for (var i = 0; i < fits[k].LogLikelihood.Length; i++)
-                if (fits[k].LogLikelihood[i] > best - FarBelow) Fill(fits[k], i, stories[k].Beside, everyGain: true);
-        return fits;
+        var onsets = story.IsAngle ? _joint.Length : 1;
+        var points = new List<Point>(onsets * story.Cells.Count);
+        for (var o = 0; o < onsets; o++)
+            for (var i = 0; i < story.Cells.Count; i++)
+            {
+                Place(story, story.Cells[i].Middle, beside);
+                points.Add(new Point(o, i, Math.Log(story.Cells[i].Share) + (onsets > 1 ? Math.Log(Onsets.Shares[o]) : 0)) { Log = Scan(story, story.Cells[i].Middle, o) });
+            }
+        points.Sort((x, y) => (y.Log + y.Prior).CompareTo(x.Log + x.Prior));
+        var least = points[0].Log + points[0].Prior - FarBelow;
+        double moved = 0;
+        var full = points.TakeWhile((p, i) => i < MostRefined && p.Log + p.Prior >= least).ToArray();
+        foreach (var point in full)
+        {
+            var scanned = point.Log;
+            Place(story, story.Cells[point.Cell].Middle, beside);
+            (point.Log, point.LogSlipScale) = At(story, story.Cells[point.Cell].Middle, point.Onset);
+            point.InFull = true;
+            moved += (point.Log - scanned) / full.Length;
+        }
+        foreach (var point in points.Where(p => !p.InFull)) (point.Log, point.LogSlipScale) = (point.Log + moved, full[0].LogSlipScale);
+        return Gather(story, points, onsets);
     }
 
-    private double Fill(StoryFit fit, int cell, Story? beside, bool everyGain)
+    private static StoryFit Gather(Story story, List<Point> points, int onsets)
     {
-        var magnitude = fit.Story.Cells[cell].Middle;
-        Place(fit.Story, magnitude, beside);
-        (fit.LogLikelihood[cell], fit.LogSlipScale[cell]) = At(fit.Story, magnitude, everyGain);
-        return fit.LogLikelihood[cell];
+        var (log, scale, byOnset) = (new double[story.Cells.Count], new (double, double)[story.Cells.Count], new double[onsets]);
+        for (var i = 0; i < log.Length; i++)
+        {
+            var here = points.Where(p => p.Cell == i).ToArray();
+            log[i] = StoryFit.LogSum(here.Select(p => p.Log + p.Prior)) - Math.Log(story.Cells[i].Share);
+            scale[i] = here.MaxBy(p => p.Log + p.Prior)!.LogSlipScale;
+        }
+        for (var o = 0; o < onsets; o++) byOnset[o] = StoryFit.LogSum(points.Where(p => p.Onset == o).Select(p => p.Log + p.Prior));
+        return new StoryFit(story, log, scale, byOnset);
     }
 
     private void Place(Story? story, double magnitude, Story? beside)
@@ -84,15 +119,28 @@ public sealed class StoryWeigher
         foreach (var (state, _) in beside?.Moves ?? []) _priorSd[state] = beside!.Spread;
     }
 
+    private double Scan(Story story, double magnitude, int onset)
+    {
+        var joint = _joint[onset];
+        joint.HoldGain(0);
+        var log = joint.Scan(_state, _priorSd);
+        var slip = new (double, double)[_model.Positions.Count];
+        for (var i = 0; i < slip.Length; i++) slip[i] = (joint.ShapeSlip(i), ScannedSlipSd);
+        double pull = 0, angle = 0;
+        for (var d = 0; d < _state.Length; d++) (pull, angle) = (pull + _model.Torque[d] * _state[d], angle + _model.WheelAngle[d] * _state[d]);
+        var seen = new StateSeen(slip, _inOrder[1][0].Seen.Slip, (pull, 0.2), (angle, 1));
+        return log + _single.LogLikelihood(story, magnitude, onset, seen) + _bench.LogLikelihood(story, _state);
+    }
+
     /// <summary>Sums over the gain and over which readings are wild.</summary>
-    private (double LogLikelihood, (double Mean, double Sd) LogSlipScale) At(Story? story, double magnitude, bool everyGain)
+    private (double LogLikelihood, (double Mean, double Sd) LogSlipScale) At(Story? story, double magnitude, int onset)
     {
         var ordinary = story is null || story.Moves.Count == 0;
         var (logs, scales) = (new List<double>(), new List<(double Mean, double Sd)>());
-        for (var g = everyGain ? 0 : 1; g < (everyGain ? Gains.Length : 2); g++)
-            foreach (var branch in ordinary ? _inOrder[g] : Branches(Gains[g].Node))
+        for (var g = 0; g < Gains.Length; g++)
+            foreach (var branch in ordinary ? _inOrder[g] : Branches(onset, Gains[g].Node))
             {
-                logs.Add((everyGain ? Gains[g].LogWeight : 0) + branch.Log + _single.LogLikelihood(story, magnitude, branch.Seen));
+                logs.Add(Gains[g].LogWeight + branch.Log + _single.LogLikelihood(story, magnitude, onset, branch.Seen));
                 scales.Add(branch.LogSlipScale);
             }
         var total = StoryFit.LogSum(logs);
@@ -110,26 +158,27 @@ public sealed class StoryWeigher
     /// Choices of wild readings along the worst ones: taking a reading as wild costs its small prior share, so that no
     /// single figure decides, and takes back what it had made of all other unknowns.
     /// </summary>
-    private List<Branch> Branches(double gain)
+    private List<Branch> Branches(int onset, double gain)
     {
         var branches = new List<Branch>(1);
-        _joint.HoldGain(gain);
-        var fit = _joint.At(_state, _priorSd);
+        var joint = _joint[onset];
+        joint.HoldGain(gain);
+        var fit = joint.At(_state, _priorSd);
         double before = 0;
         for (var wild = 0; ; wild++)
         {
-            branches.Add(new Branch(before + fit.LogLikelihood + Inside(fit), See(), _joint.LogSlipScale()));
+            branches.Add(new Branch(before + fit.LogLikelihood + Inside(fit), See(joint), joint.LogSlipScale()));
             if (wild == MostWild || fit.WorstLogOdds < WorthTrying) return branches;
-            before += _joint.LogWild(fit.Worst);
-            fit = _joint.Without(fit.Worst);
+            before += joint.LogWild(fit.Worst);
+            fit = joint.Without(fit.Worst);
         }
     }
 
-    private StateSeen See()
+    private StateSeen See(JointGaussian joint)
     {
-        var slip = new (double, double)[_model.Positions.Count];
-        for (var i = 0; i < slip.Length; i++) slip[i] = _joint.ShapeSlip(i, _priorSd);
-        return new StateSeen(slip, _joint.Steering(_model.Torque, _state, _priorSd), _joint.Steering(_model.WheelAngle, _state, _priorSd));
+        var (slip, before) = (new (double, double)[_model.Positions.Count], new (double, double)[_model.Positions.Count]);
+        for (var i = 0; i < slip.Length; i++) (slip[i], before[i]) = (joint.ShapeSlip(i, _priorSd), joint.ShapeSlipBefore(i, _priorSd));
+        return new StateSeen(slip, before, joint.Steering(_model.Torque, _state, _priorSd), joint.Steering(_model.WheelAngle, _state, _priorSd));
     }
 
     /// <summary>

@@ -5,6 +5,9 @@ namespace WearWatch.Diagnosis.Roads;
 /// <summary>What the steering signals alone say of one vehicle, the road's share removed. Null where not possible.</summary>
 public sealed record SteeringFigures
 {
+    /// <summary>Days before the as-of date that tell how a vehicle steers now.</summary>
+    public const int PresentDays = 42;
+
     public required string VehicleId { get; init; }
     /// <summary>Torque that keeps the vehicle straight on a flat road, N·m at the wheel; positive: the vehicle pulls right.</summary>
     public Estimate? SteeringPullNm { get; init; }
@@ -14,6 +17,8 @@ public sealed record SteeringFigures
     public Estimate? SteeringPullChangeNm { get; init; }
     /// <summary>Off-centre angle now less what it was before the last weeks, deg.</summary>
     public Estimate? OffCentreChangeDeg { get; init; }
+    /// <summary>Age of the oldest straight run that the changes are counted from, days.</summary>
+    public double? EarliestDaysAgo { get; init; }
     /// <summary>Extra steering pull while braking over coasting, N·m.</summary>
     public Estimate? BrakePullNm { get; init; }
     /// <summary>Extra steering pull under drive over coasting, N·m.</summary>

@@ -11,6 +11,8 @@ public sealed record VehicleFigures
     public required Depot Depot { get; init; }
     public required DateOnly AsOf { get; init; }
     public IReadOnlyList<TyreFigures> Tyres { get; init; } = [];
+    /// <summary>Wear of the places around every possible onset; null where only the figures of the present tyres are known.</summary>
+    public VehicleWearHistory? Wear { get; init; }
     public SteeringFigures? Steering { get; init; }
     public UsualRoute? Route { get; init; }
     public IReadOnlyList<DriverReport> DriverReports { get; init; } = [];

@@ -4,7 +4,7 @@ using WearWatch.Diagnosis.Statistics;
 namespace WearWatch.Diagnosis.Tread;
 
 /// <summary>What an axle does; decides how its tyres wear when sound.</summary>
-public enum AxleRole { Steer, SteerDriven, Drive, Free }
+public enum AxleRole { Steer, SteerDriven, Drive, Free, Lifting }
 
 /// <summary>Wear of sound tyres before the fleet has shown its own.</summary>
 /// <param name="RateMmPer1000Km">Median rate, mm per 1000 km.</param>
@@ -26,6 +26,7 @@ public sealed record WearPrior(double RateMmPer1000Km, double LogSd, double NewD
     public static AxleRole RoleOf(Vehicle vehicle, int axle)
     {
         var a = vehicle.AxleAt(axle);
+        if (a is { Lifting: true }) return AxleRole.Lifting;
         if (vehicle.Class == VehicleClass.Trailer || a is null) return AxleRole.Free;
         var steered = a.Steered || axle == 1;
         return (steered, a.Driven) switch { (true, true) => AxleRole.SteerDriven, (true, false) => AxleRole.Steer, (false, true) => AxleRole.Drive, _ => AxleRole.Free };

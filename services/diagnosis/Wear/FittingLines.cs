@@ -45,6 +45,13 @@ internal sealed record FittingLines(CorrelatedLine? Mean, CorrelatedLine? Edge, 
     /// <param name="rateMmPer1000Km">About the rate, to turn an error of distance into one of depth.</param>
     public static FittingLines Fit(IReadOnlyList<FittingPoint> points, NoiseFigures noise, Func<int, (Estimate Bias, int Reader)> bias, double rateMmPer1000Km)
     {
+        var (mean, edge, shoulder) = Readings(points, noise, bias, rateMmPer1000Km);
+        return new(CorrelatedLine.Fit(mean), CorrelatedLine.Fit(edge), CorrelatedLine.Fit(shoulder));
+    }
+
+    /// <summary>The points with their whole errors: of the reading, of the wandering line, of the distance, of the reader.</summary>
+    public static (List<LineReading> Mean, List<LineReading> Edge, List<LineReading> Shoulder) Readings(IReadOnlyList<FittingPoint> points, NoiseFigures noise, Func<int, (Estimate Bias, int Reader)> bias, double rateMmPer1000Km)
+    {
         var mean = new List<LineReading>(points.Count);
         var edge = new List<LineReading>(points.Count);
         var shoulder = new List<LineReading>(points.Count);
@@ -58,7 +65,7 @@ internal sealed record FittingLines(CorrelatedLine? Mean, CorrelatedLine? Edge, 
             if (p.Edge is { } e) edge.Add(new(x, e.Value, (Square(noise.EdgeScale) * (Square(e.StandardError) + wander) + 0.04 * distance) / p.Weight));
             if (p.Shoulder is { } s) shoulder.Add(new(x, s.Value, (Square(noise.ShoulderScale) * (Square(s.StandardError) + wander) + 0.04 * distance) / p.Weight));
         }
-        return new(CorrelatedLine.Fit(mean), CorrelatedLine.Fit(edge), CorrelatedLine.Fit(shoulder));
+        return (mean, edge, shoulder);
     }
 
     private static double Square(double x) => x * x;

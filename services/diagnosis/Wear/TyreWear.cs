@@ -114,7 +114,7 @@ internal sealed class TyreWear(VehicleTread vehicle, FleetWear fleet, DateOnly a
     /// Where the start was not recorded but the new depth is known, the tyre lay flat when new: its shape now has grown
     /// over the loss so far, at places and under conditions unknown, which the error allows for.
     /// </summary>
-    private static FittingPoint? WithUnknownStart(Fitting fitting, Estimate rate)
+    internal static FittingPoint? WithUnknownStart(Fitting fitting, Estimate rate)
     {
         if (fitting.Start is not null || fitting.NewDepthMm is not { } n) return null;
         var first = fitting.Points[0];

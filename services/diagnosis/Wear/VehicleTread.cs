@@ -14,6 +14,8 @@ public sealed record VehicleTread
     public IReadOnlyList<FittingRecord> Fittings { get; init; } = [];
     /// <summary>Tyres known by their number.</summary>
     public IReadOnlyList<Tyre> Tyres { get; init; } = [];
+    /// <summary>When the vehicle was last aligned: wear from before that tells of angles that are no more.</summary>
+    public DateTimeOffset? AdjustedAt { get; init; }
     /// <summary>Operator's limits over the built-in ones.</summary>
     public IReadOnlyList<DepthLimitFact> Limits { get; init; } = [];
 }

@@ -10,6 +10,8 @@ public sealed record VehicleWearResult
     public required IReadOnlyList<TyreFigures> Tyres { get; init; }
     /// <summary>One per survey, oldest first.</summary>
     public required IReadOnlyList<SurveyJudgement> Surveys { get; init; }
+    /// <summary>How the places wore whatever tyres stood there, around every possible onset of a fault; null without readings.</summary>
+    public VehicleWearHistory? History { get; init; }
     public required IReadOnlyList<InferredFitting> Inferred { get; init; }
     /// <summary>Use, km per week, from the counter where it was read, to turn distances into dates.</summary>
     public required double KmPerWeek { get; init; }
@@ -34,6 +36,7 @@ public static class VehicleWear
         {
             Tyres = [.. history.Fittings.Where(f => f.Current).OrderBy(f => f.Position).Select(tyres.Figures)],
             Surveys = history.Judgements,
+            History = new WearAround(history, fleet, biases, asOf).Read(),
             Inferred = history.Inferred,
             KmPerWeek = history.Axis.KmPerWeek,
             KmSinceLastSurvey = history.Surveys.Count == 0 ? null : history.Axis.At(end > history.Surveys[^1].Survey.At ? end : history.Surveys[^1].Survey.At) is var now

@@ -1,3 +1,5 @@
+using System.Runtime.CompilerServices;
+
 namespace WearWatch.Diagnosis.Statistics;
 
 /// <summary>A solved line without its residuals.</summary>
@@ -43,6 +45,7 @@ internal static class LineSolver
     }
 
     /// <summary>Numbers the groups 0, 1, … in order of appearance; a reading of no group, or whose group has no error, gets −1.</summary>
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private static int Groups(ReadOnlySpan<LineReading> readings, Span<int> group)
     {
         var groups = 0;
@@ -57,6 +60,7 @@ internal static class LineSolver
         return groups;
     }
 
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private static (double Slope, double AtLast) MedianLine(ReadOnlySpan<LineReading> readings, double x0)
     {
         var n = readings.Length;
@@ -72,6 +76,7 @@ internal static class LineSolver
         return (slope, Selection.Median(rest));
     }
 
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private static bool Reweigh(ReadOnlySpan<double> standardised, Span<double> weights)
     {
         var change = 0.0;
@@ -85,6 +90,7 @@ internal static class LineSolver
         return change > 1e-4;
     }
 
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private static LineFit Solve(ReadOnlySpan<LineReading> readings, ReadOnlySpan<double> weights, ReadOnlySpan<int> group, int groups, double x0, ReadOnlySpan<double> sd, Span<double> standardised)
     {
         var n = readings.Length;

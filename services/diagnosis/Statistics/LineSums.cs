@@ -8,6 +8,8 @@ namespace WearWatch.Diagnosis.Statistics;
 public struct LineSums
 {
     private double _s, _sx, _sxx, _sy, _sxy, _syy, _logVariance;
+    // Product of the variances so far: one logarithm for many readings.
+    private double _variance;
 
     public int Count { get; private set; }
 
@@ -20,8 +22,11 @@ public struct LineSums
         _sy += w * y;
         _sxy += w * x * y;
         _syy += w * y * y;
-        _logVariance += Math.Log(variance);
+        _variance = Count == 0 ? variance : _variance * variance;
         Count++;
+        if (_variance is > 1e-100 and < 1e100) return;
+        _logVariance += Math.Log(_variance);
+        _variance = 1;
     }
 
     public static LineSums operator -(in LineSums a, in LineSums b) => new()
@@ -33,6 +38,7 @@ public struct LineSums
         _sxy = a._sxy - b._sxy,
         _syy = a._syy - b._syy,
         _logVariance = a._logVariance - b._logVariance,
+        _variance = b.Count == 0 ? a._variance : a._variance / b._variance,
         Count = a.Count - b.Count,
     };
 
@@ -56,7 +62,7 @@ public struct LineSums
         var determinant = aa * bb - ab * ab;
         var gained = (bb * ra * ra - 2 * ab * ra * rb + aa * rb * rb) / determinant;
         var prior = intercept.StandardError * slope.StandardError;
-        return -0.5 * (Count * s_logTwoPi + _logVariance + Math.Log(determinant * prior * prior) + rr - gained);
+        return -0.5 * (Count * s_logTwoPi + _logVariance + Math.Log(determinant * prior * prior * _variance) + rr - gained);
     }
 
     private static readonly double s_logTwoPi = Math.Log(2 * Math.PI);

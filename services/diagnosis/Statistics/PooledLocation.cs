@@ -1,3 +1,5 @@
+using System.Runtime.CompilerServices;
+
 namespace WearWatch.Diagnosis.Statistics;
 
 /// <summary>Centre of estimates of unequal error that also differ among themselves, some of them grossly.</summary>
@@ -13,6 +15,7 @@ public sealed record PooledLocation(Estimate Centre, double BetweenSd, int Count
     /// <param name="members">At least one; the order does not matter beyond rounding.</param>
     /// <param name="leastBetweenSd">Floor of the spread, in the unit of the members; above zero.</param>
     /// <remarks>Bisquare: Beaton and Tukey 1974; spread by moments as in DerSimonian and Laird, Control. Clin. Trials 7 (1986) 177, made robust.</remarks>
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     public static PooledLocation Fit(IReadOnlyList<Estimate> members, double leastBetweenSd)
     {
         var n = members.Count;

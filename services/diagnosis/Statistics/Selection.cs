@@ -1,3 +1,5 @@
+using System.Runtime.CompilerServices;
+
 namespace WearWatch.Diagnosis.Statistics;
 
 /// <summary>Order statistics in linear time, without sorting.</summary>
@@ -5,6 +7,7 @@ namespace WearWatch.Diagnosis.Statistics;
 internal static class Selection
 {
     /// <summary>The k-th smallest, from 0; the span is reordered so that nothing before it is greater and nothing after it smaller.</summary>
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     public static double Nth(Span<double> values, int k)
     {
         int low = 0, high = values.Length - 1;

@@ -1,3 +1,4 @@
+using System.Runtime.CompilerServices;
 using WearWatch.Diagnosis.Facts;
 using WearWatch.Diagnosis.Statistics;
 
@@ -117,10 +118,11 @@ public static class SurveyExplanation
     {
         var candidates = set.Candidates;
         Span<double> weights = stackalloc double[candidates.Length];
-        var top = double.NegativeInfinity;
+        var (pairs, top) = (set.Pairs, double.NegativeInfinity);
+        Array.Clear(pairs);
         for (var i = 0; i < weights.Length; i++)
         {
-            weights[i] = candidates[i].LogPrior + LogLikelihood(candidates[i], set, written, expected, technicianSdMm);
+            weights[i] = candidates[i].LogPrior + LogLikelihood(candidates[i], set, written, expected, pairs, technicianSdMm);
             top = Math.Max(top, weights[i]);
         }
         double total = 0;
@@ -181,40 +183,68 @@ public static class SurveyExplanation
         return list;
     }
 
-    private static double LogLikelihood(ExplanationSet.Candidate candidate, ExplanationSet set, ReadOnlySpan<TreadShape?> written, ReadOnlySpan<TyreExpectation> expected, double technicianSd)
+    /// <summary>How the readings of one position fit the expectation of one position; the same whichever explanation joins the two.</summary>
+    /// <param name="Known">False until it has been worked out.</param>
+    /// <param name="Residual">Mean depth less expected, mm.</param>
+    /// <param name="Variance">Its variance, what all tyres share left aside.</param>
+    /// <param name="Regular">Log density of all figures but for the exponent of the mean.</param>
+    /// <param name="Odd">Log density of a tyre off for a reason of its own.</param>
+    internal readonly record struct PairFit(bool Known, double Residual, double Variance, double Regular, double Odd);
+
+    private static PairFit Pair(TreadShape shape, in TyreExpectation e, double factor, double sharedVariance)
     {
-        var factor = candidate.Factor;
-        var n = written.Length;
-        Span<double> residual = n <= 64 ? stackalloc double[n] : new double[n];
-        Span<double> variance = n <= 64 ? stackalloc double[n] : new double[n];
+        var mean = shape.MeanDepthMm * factor;
+        var residual = mean.Value - e.MeanMm.Value;
+        var variance = mean.StandardError * mean.StandardError + e.MeanMm.StandardError * e.MeanMm.StandardError;
+        var odd = LineBelief.LogDensity(residual, OddMeanSd * OddMeanSd + variance);
+        var regular = LineBelief.LogDensity(0, variance + sharedVariance);
+        Add(factor, shape.EdgeMm, e.EdgeMm, OddEdgeSd, ref odd, ref regular);
+        Add(factor, shape.ShoulderMm, e.ShoulderMm, OddShoulderSd, ref odd, ref regular);
+        return new(true, residual, variance, regular, odd);
+    }
+
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
+    private static double LogLikelihood(
+        ExplanationSet.Candidate candidate, ExplanationSet set, ReadOnlySpan<TreadShape?> written, ReadOnlySpan<TyreExpectation> expected, PairFit[] pairs, double technicianSd)
+    {
+        var (n, factor) = (written.Length, candidate.Factor);
         int behind = 0, count = 0, figures = 0;
         for (var p = 0; p < n; p++)
         {
             if (written[p] is not { } shape) continue;
-            var e = expected[candidate.Belongs[p]].MeanMm;
-            var y = shape.MeanDepthMm * factor;
-            residual[count] = y.Value - e.Value;
-            variance[count++] = y.StandardError * y.StandardError + e.StandardError * e.StandardError;
             behind = Math.Max(behind, expected[p].Surveys);
             figures += 1 + (shape.EdgeMm is null ? 0 : 1) + (shape.ShoulderMm is null ? 0 : 1);
+            count++;
         }
         // The others' technicians err too, so the shared part of a comparison is wider than one technician's.
         var sharedVariance = technicianSd * technicianSd * (1 + 1.0 / Math.Max(1, behind));
-        var shared = Shared(residual[..count], variance[..count], sharedVariance);
+        // Of one tyre or two what they share cannot be told from their own.
+        var own = count > 2 ? 0 : sharedVariance;
+        Span<PairFit> fits = n <= 64 ? stackalloc PairFit[n] : new PairFit[n];
+        Span<double> residual = n <= 64 ? stackalloc double[n] : new double[n];
+        double precision = 0;
+        count = 0;
+        for (var p = 0; p < n; p++)
+        {
+            if (written[p] is not { } shape) continue;
+            var q = candidate.Belongs[p];
+            ref var kept = ref pairs[p * n + q];
+            if (!kept.Known || factor != 1) fits[p] = Pair(shape, expected[q], factor, own);
+            else fits[p] = kept;
+            if (factor == 1) kept = fits[p];
+            residual[count++] = fits[p].Residual;
+            precision += 1 / fits[p].Variance;
+        }
+        var shared = Shared(residual[..count], precision, sharedVariance);
         var log = (count > 2 ? -0.5 * shared * shared / sharedVariance : 0) + figures * candidate.LogFactor;
         Span<double> alone = stackalloc double[Position.MaxAxle + 1];
         Span<double> together = stackalloc double[Position.MaxAxle + 1];
-        for (int p = 0, i = 0; p < n; p++)
+        for (var p = 0; p < n; p++)
         {
-            if (written[p] is not { } shape) continue;
-            ref readonly var e = ref expected[candidate.Belongs[p]];
-            var odd = LineBelief.LogDensity(residual[i], OddMeanSd * OddMeanSd + variance[i]);
-            var regular = LineBelief.LogDensity(residual[i] - shared, variance[i] + (count > 2 ? 0 : sharedVariance));
-            Add(factor, shape.EdgeMm, e.EdgeMm, OddEdgeSd, ref odd, ref regular);
-            Add(factor, shape.ShoulderMm, e.ShoulderMm, OddShoulderSd, ref odd, ref regular);
-            alone[set.Axle[p]] += LogMix(s_oddTyre, regular, odd);
-            together[set.Axle[p]] += odd;
-            i++;
+            if (written[p] is null) continue;
+            var off = fits[p].Residual - shared;
+            alone[set.Axle[p]] += LogMix(s_oddTyre, fits[p].Regular - 0.5 * off * off / (fits[p].Variance + own), fits[p].Odd);
+            together[set.Axle[p]] += fits[p].Odd;
         }
         foreach (var axle in set.Axles)
             log += candidate.Explanation.Kind == ExplanationKind.OtherVehicle ? together[axle] : LogMix(s_axleChanged, alone[axle], together[axle]);
@@ -230,16 +260,11 @@ public static class SurveyExplanation
     }
 
     /// <summary>What all tyres share: their median residual, shrunk to zero and held within three of its standard deviations.</summary>
-    private static double Shared(ReadOnlySpan<double> residual, ReadOnlySpan<double> variance, double sharedVariance)
+    private static double Shared(Span<double> residual, double precision, double sharedVariance)
     {
         if (residual.Length <= 2) return 0;
-        Span<double> sorted = stackalloc double[Math.Min(residual.Length, 64)];
-        residual[..sorted.Length].CopyTo(sorted);
-        var median = Selection.Median(sorted);
-        double precision = 0;
-        foreach (var v in variance) precision += 1 / v;
         var bound = 3 * Math.Sqrt(sharedVariance);
-        return Math.Clamp(median * sharedVariance / (sharedVariance + 1.57 / precision), -bound, bound);
+        return Math.Clamp(Selection.Median(residual) * sharedVariance / (sharedVariance + 1.57 / precision), -bound, bound);
     }
 
     private static readonly (double Regular, double Odd) s_oddTyre = (Math.Log(1 - OddTyrePrior), Math.Log(OddTyrePrior));
@@ -249,12 +274,14 @@ public static class SurveyExplanation
     {
         var (a, b) = (logShares.Regular + regular, logShares.Odd + odd);
         var (top, gap) = a > b ? (a, b - a) : (b, a - b);
-        // Below e^-40 the lesser part is beyond the last digit.
-        return gap < -40 ? top : top + Math.Log(1 + Math.Exp(gap));
+        // Below e^-40 the lesser part is beyond the last digit; below 1/500 four terms of the series of ln(1 + x) give twelve of them.
+        if (gap < -40) return top;
+        var x = Math.Exp(gap);
+        return top + (x < 0.002 ? x * (1 - x * (0.5 - x * (1.0 / 3 - x / 4))) : Math.Log(1 + x));
     }
 }
 
-/// <summary>The explanations that a survey of certain axles can have, made once and used for every such survey of a vehicle.</summary>
+/// <summary>The explanations that a survey of certain axles can have, made once and used for every such survey of a vehicle, by one thread.</summary>
 internal sealed class ExplanationSet
 {
     /// <param name="Explanation">Which.</param>
@@ -270,6 +297,9 @@ internal sealed class ExplanationSet
     /// <summary>Axles read, ascending.</summary>
     public required int[] Axles { get; init; }
 
+    /// <summary>Room for the fits of each position's readings to each position's expectation; one survey at a time.</summary>
+    public required SurveyExplanation.PairFit[] Pairs { get; init; }
+
     /// <param name="vehicle">The vehicle.</param>
     /// <param name="positions">Its positions in order.</param>
     /// <param name="axles">Axles read, in any order.</param>
@@ -280,6 +310,7 @@ internal sealed class ExplanationSet
         {
             Axle = [.. positions.Select(p => p.Axle)],
             Axles = read,
+            Pairs = new SurveyExplanation.PairFit[positions.Length * positions.Length],
             Candidates = [.. SurveyExplanation.Candidates(vehicle, read).Select(c => new Candidate(c.Explanation, Math.Log(c.Prior), c.Explanation.Factor, Math.Log(c.Explanation.Factor),
                 [.. positions.Select(p => Array.IndexOf(positions, c.Explanation.Belongs(p)))]))],
         };

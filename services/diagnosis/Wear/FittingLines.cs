@@ -31,6 +31,9 @@ internal enum TreadFigure { Mean, Edge, Shoulder }
 /// <param name="Measured">False for the start of the fitting, which is recorded and not measured.</param>
 internal readonly record struct LinePoint(double X, double KmSd, double Weight, Estimate Mean, Estimate Edge, Estimate Shoulder, int Technician, int Gauge, bool Measured)
 {
+    /// <summary>Precision of the mean depth with the tyre's wandering, before the fleet's own scale, mm⁻².</summary>
+    public double MeanPrecision { get; } = Weight / (Mean.StandardError * Mean.StandardError + FittingLines.WanderSdMm * FittingLines.WanderSdMm);
+
     private static readonly Estimate s_absent = new(double.NaN, double.NaN);
 
     public static LinePoint Of(FittingPoint p, int technician, int gauge) =>

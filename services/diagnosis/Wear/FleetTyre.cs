@@ -1,3 +1,4 @@
+using System.Runtime.CompilerServices;
 using WearWatch.Diagnosis.Facts;
 using WearWatch.Diagnosis.Statistics;
 using WearWatch.Diagnosis.Tread;
@@ -21,6 +22,7 @@ internal record struct NeighbourSums(double Products, double Squares, double Pai
     /// Takes in the residuals of one line, corrected for what fitting a line alone does to them: near −2/n for white noise at
     /// even spacing.
     /// </summary>
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     public void Add(ReadOnlySpan<double> standardised)
     {
         var n = standardised.Length;
@@ -69,6 +71,7 @@ internal sealed class FleetTyre
         Shoulder = Line(TreadFigure.Shoulder, Shoulder.Fit, noise, readers, rateMmPer1000Km, ref neighbours);
     }
 
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private KeptLine Line(TreadFigure figure, LineFit? before, NoiseFigures noise, ReaderTable readers, double rate, ref NeighbourSums neighbours)
     {
         var room = Points.Length <= 64;

@@ -1,3 +1,4 @@
+using System.Runtime.CompilerServices;
 using MathNet.Numerics.LinearAlgebra;
 using WearWatch.Diagnosis.Statistics;
 using WearWatch.Diagnosis.Tread;
@@ -25,6 +26,9 @@ internal sealed class ReaderBiases
     private const double FreeVariance = 1e4;
 
     private const int Passes = 3;
+
+    /// <summary>Standard deviations beyond which a reading is pulled in; wide, so that readers' biases themselves are not.</summary>
+    private const double HoldSds = 2.5;
 
     private readonly FleetTyre[][] _blocks;
     private readonly Func<FleetTyre, Estimate> _rateMmPer1000Km;
@@ -107,7 +111,7 @@ internal sealed class ReaderBiases
         return right;
     }
 
-    private double Variance(in LinePoint p) => _scale * (p.Mean.StandardError * p.Mean.StandardError + FittingLines.WanderSdMm * FittingLines.WanderSdMm) / p.Weight;
+    private double Precision(in LinePoint p) => p.MeanPrecision / _scale;
 
     private static double Centre(FleetTyre tyre)
     {
@@ -116,13 +120,14 @@ internal sealed class ReaderBiases
         return sum / tyre.Points.Length;
     }
 
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private void AddInformation(FleetTyre tyre, Columns columns, double[] information, int[] counts)
     {
         if (tyre.Points.Length < 2) return;
         var (x0, rate) = (Centre(tyre), _rateMmPer1000Km(tyre));
         foreach (ref readonly var p in tyre.Points.AsSpan())
         {
-            var w = 1 / Variance(p);
+            var w = Precision(p);
             var (t, g) = columns.Add(p, w, w * (p.X - x0));
             if (t >= 0) counts[t]++;
             if (g >= 0) counts[g]++;
@@ -143,6 +148,7 @@ internal sealed class ReaderBiases
         columns.Clear();
     }
 
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private void AddRight(FleetTyre tyre, Columns columns, double[] beta, bool robust, double[] right)
     {
         var points = tyre.Points;
@@ -156,7 +162,7 @@ internal sealed class ReaderBiases
         foreach (var v in y) level += v / n;
         for (var i = 0; i < n; i++)
         {
-            var w = 1 / Variance(points[i]);
+            var w = Precision(points[i]);
             var rest = y[i] - level;
             var (t, g) = columns.Add(points[i], w, w * (points[i].X - x0));
             if (t >= 0) right[t] += w * rest;
@@ -169,7 +175,8 @@ internal sealed class ReaderBiases
         columns.Clear();
     }
 
-    /// <summary>Huber's pseudo-values: residuals from the fitting's median beyond 2.5 standard deviations are pulled in.</summary>
+    /// <summary>Huber's pseudo-values: residuals from the fitting's median beyond <see cref="HoldSds"/> are pulled in.</summary>
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private void HoldIn(LinePoint[] points, double[] beta, Span<double> y)
     {
         var n = y.Length;
@@ -181,8 +188,9 @@ internal sealed class ReaderBiases
         var middle = Selection.Median(sorted);
         for (var i = 0; i < n; i++)
         {
-            var bound = 2.5 * Math.Sqrt(Variance(points[i]));
-            y[i] += Math.Clamp(rest[i] - middle, -bound, bound) - (rest[i] - middle);
+            var off = rest[i] - middle;
+            var bound = HoldSds * HoldSds / Precision(points[i]);
+            if (off * off > bound) y[i] += Math.Sign(off) * Math.Sqrt(bound) - off;
         }
     }
 

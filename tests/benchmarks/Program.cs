@@ -6,6 +6,7 @@ var names = new Dictionary<string, Func<IReadOnlyDictionary<string, object>>>(St
     ["door"] = DoorBenchmark.Run,
     ["reduction"] = ReductionBenchmark.Run,
     ["roads"] = RoadsBenchmark.Run,
+    ["wear"] = WearBenchmark.Run,
 };
 var json = args.Contains("--json");
 var unknown = args.FirstOrDefault(a => a.StartsWith('-') && a != "--json");

@@ -1,3 +1,5 @@
+using WearWatch.Diagnosis.Wear;
+
 namespace WearWatch.Diagnosis.Causes;
 
 /// <summary>What the joint law of observables says at one state.</summary>
@@ -22,6 +24,7 @@ public sealed class JointGaussian
     private readonly VehicleModel _model;
     private readonly IReadOnlyList<Observable> _single;
     private readonly WearObservable[] _wear;
+    private readonly IReadOnlyList<WearObservable>[] _anyOnset;
     private readonly double[] _sharedPrecision; // of the surveys' shared errors
     private readonly int _surveys, _firstAxle, _firstSurvey;
     private readonly TyreResponse _now, _sound;
@@ -47,11 +50,12 @@ public sealed class JointGaussian
     }
 
     /// <param name="model">The vehicle.</param>
-    /// <param name="onset">Index into <see cref="Wear.Onsets.DaysAgo"/>: since when the state holds.</param>
-    public JointGaussian(VehicleModel model, int onset)
+    /// <param name="wear">Its wear around every onset.</param>
+    /// <param name="onset">Index into <see cref="Onsets.DaysAgo"/>: since when the state holds.</param>
+    public JointGaussian(VehicleModel model, IReadOnlyList<WearObservable>[] wear, int onset)
     {
-        (_model, _single) = (model, Observables.Of(model));
-        _wear = [.. Observables.Wear(model, onset)];
+        (_model, _single, _anyOnset) = (model, Observables.Of(model), wear);
+        _wear = [.. wear[onset]];
         (_surveys, _sharedPrecision) = model.Figures.Wear is { } history ? (history.Surveys, history.SharedPrecision) : (0, []);
         (_now, _sound) = (new(model), new(model));
         _priorSd = [.. model.Dimensions.Select(d => d.PriorSd)];
@@ -63,7 +67,7 @@ public sealed class JointGaussian
         _place = [.. _wear.Select(w => new Place(w.Evidence.Size, _firstSurvey))];
         _columns = new int[p];
         _sparse = [.. Enumerable.Range(0, n).Select(_ => (Array.Empty<int>(), Array.Empty<double>()))];
-        _shareOfPresent = Math.Min(1, Wear.Onsets.DaysAgo[onset] / Roads.SteeringFigures.PresentDays);
+        _shareOfPresent = Math.Min(1, Onsets.DaysAgo[onset] / Roads.SteeringFigures.PresentDays);
         HoldGain(0);
     }
 
@@ -194,13 +198,24 @@ public sealed class JointGaussian
     }
 
     /// <summary>
-    /// A place that tells of something else (another wheel's readings, a cupped tread): each of its slopes lies anywhere about a
-    /// sound one's, the surveys' shared errors are as the rest of the vehicle has them.
+    /// A place that tells of something else (another wheel's readings, a cupped tread): its slopes lie anywhere about a sound
+    /// one's and may have changed at any onset, the surveys' shared errors are as the rest of the vehicle has them.
     /// </summary>
     private double LogWildPlace(int w)
     {
-        var (k, h, size) = (_wear[w].Evidence.K, _wear[w].Evidence.H, _wear[w].Evidence.Size);
         var usual = _wear[w].Kind == ObservableKind.Rate ? 1 : _wear[w].NormalEdge;
+        Span<double> logs = stackalloc double[_anyOnset.Length];
+        for (var o = 0; o < logs.Length; o++) logs[o] = Math.Log(logs.Length > 1 ? Onsets.Shares[o] : 1) + LogWildSlopes(_anyOnset[o][w].Evidence, usual);
+        var top = double.NegativeInfinity;
+        foreach (var log in logs) top = Math.Max(top, log);
+        double sum = 0;
+        foreach (var log in logs) sum += Math.Exp(log - top);
+        return top + Math.Log(sum);
+    }
+
+    private double LogWildSlopes(SlopeEvidence evidence, double usual)
+    {
+        var (k, h, size) = (evidence.K, evidence.H, evidence.Size);
         var (hb, ha, log) = (h[0] - usual * (k[0] + k[1]), h[1] - usual * (k[1] + k[size + 1]), usual * (h[0] + h[1] - 0.5 * usual * (k[0] + 2 * k[1] + k[size + 1])));
         for (var s = 2; s < size; s++)
         {

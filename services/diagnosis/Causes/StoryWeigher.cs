@@ -11,8 +11,8 @@ public sealed class StoryWeigher
     private const double WorthTrying = -1.5;
 
     /// <summary>Log likelihood below the story's best at which an onset and a magnitude no longer matter, and how many are weighed in full.</summary>
-    private const double FarBelow = 10;
-    private const int MostRefined = 60;
+    private const double FarBelow = 6;
+    private const int MostRefined = 16;
 
     /// <summary>SD of a tyre's slip over RMS service slip that a scan takes for it.</summary>
     private const double ScannedSlipSd = 0.3;
@@ -46,7 +46,8 @@ public sealed class StoryWeigher
         _model = model;
         // Where nothing is dated a fault has always been there.
         var dated = model.Figures.Wear is not null || model.Figures.Steering?.EarliestDaysAgo is not null;
-        _joint = [.. Enumerable.Range(0, dated ? Onsets.DaysAgo.Count : 1).Select(o => new JointGaussian(model, o))];
+        IReadOnlyList<WearObservable>[] wear = [.. Enumerable.Range(0, dated ? Onsets.DaysAgo.Count : 1).Select(o => Observables.Wear(model, o))];
+        _joint = [.. wear.Select((_, o) => new JointGaussian(model, wear, o))];
         _single = new SingleReadings(model);
         _bench = new BenchEvidence(model);
         _ordinarySd = [.. model.Dimensions.Select(d => d.PriorSd)];

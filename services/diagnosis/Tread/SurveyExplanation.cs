@@ -1,3 +1,4 @@
+using System.Runtime.CompilerServices;
 using WearWatch.Diagnosis.Facts;
 using WearWatch.Diagnosis.Statistics;
 
@@ -105,29 +106,72 @@ public static class SurveyExplanation
     /// <param name="technicianSdMm">Standard deviation of what all tyres of a survey share, mm.</param>
     public static IReadOnlyList<WeighedExplanation> Weigh(Vehicle vehicle, IReadOnlyList<TreadShape> written, IReadOnlyDictionary<Position, TyreExpectation> expected, double technicianSdMm)
     {
-        var candidates = Candidates(vehicle, written);
-        var logs = new double[candidates.Count];
-        for (var i = 0; i < logs.Length; i++) logs[i] = Math.Log(candidates[i].Prior) + LogLikelihood(candidates[i].Explanation, written, expected, technicianSdMm);
-        var top = logs.Max();
-        var total = logs.Sum(l => Math.Exp(l - top));
-        var weighed = candidates.Select((c, i) => new WeighedExplanation(c.Explanation, Math.Exp(logs[i] - top) / total)).ToList();
-        if (weighed.MaxBy(w => w.Weight)!.Explanation.Kind != ExplanationKind.AsWritten && OneSurveyBehind(written, expected))
-        {
-            // Two surveys that contradict each other accuse one another equally.
-            var doubt = weighed.Where(w => w.Explanation.Kind != ExplanationKind.AsWritten).Sum(w => w.Weight) / 2;
-            weighed = [.. weighed.Select(w => w.Explanation.Kind == ExplanationKind.AsWritten ? w : w with { Weight = w.Weight / 2 })];
-            weighed.Add(new WeighedExplanation(new Explanation(ExplanationKind.ComparedSurveyWrong), doubt));
-        }
-        return [.. weighed.OrderByDescending(w => Math.Round(w.Weight, 12)).ThenBy(w => w.Explanation.Kind)];
+        var positions = vehicle.Positions().ToArray();
+        var shapes = new TreadShape?[positions.Length];
+        foreach (var shape in written) shapes[Array.IndexOf(positions, shape.Position)] = shape;
+        var set = ExplanationSet.Of(vehicle, positions, [.. written.Select(w => w.Position.Axle).Distinct()]);
+        return Weigh(set, shapes, [.. positions.Select(p => expected[p])], technicianSdMm);
     }
 
-    private static bool OneSurveyBehind(IReadOnlyList<TreadShape> written, IReadOnlyDictionary<Position, TyreExpectation> expected) =>
-        written.All(s => !expected.TryGetValue(s.Position, out var e) || e.Surveys <= 1);
+    /// <summary>The same for positions in the vehicle's order; a tyre that was not read is null.</summary>
+    internal static WeighedExplanation[] Weigh(ExplanationSet set, ReadOnlySpan<TreadShape?> written, ReadOnlySpan<TyreExpectation> expected, double technicianSdMm)
+    {
+        var candidates = set.Candidates;
+        Span<double> weights = stackalloc double[candidates.Length];
+        var (pairs, top) = (set.Pairs, double.NegativeInfinity);
+        Array.Clear(pairs);
+        for (var i = 0; i < weights.Length; i++)
+        {
+            weights[i] = candidates[i].LogPrior + LogLikelihood(candidates[i], set, written, expected, pairs, technicianSdMm);
+            top = Math.Max(top, weights[i]);
+        }
+        double total = 0;
+        foreach (ref var w in weights) total += w = Math.Exp(w - top);
+        // Two surveys that contradict each other accuse one another equally.
+        var mutual = weights[0] < 1 && OneSurveyBehind(written, expected);
+        var list = new WeighedExplanation[candidates.Length + (mutual ? 1 : 0)];
+        double doubt = 0;
+        for (var i = 0; i < candidates.Length; i++)
+        {
+            var weight = weights[i] / total;
+            if (mutual && i > 0) doubt += weight /= 2;
+            list[i] = new(candidates[i].Explanation, weight);
+        }
+        if (mutual) list[^1] = new(s_comparedSurveyWrong, doubt);
+        Order(list);
+        return list;
+    }
 
-    private static List<(Explanation Explanation, double Prior)> Candidates(Vehicle vehicle, IReadOnlyList<TreadShape> written)
+    private static readonly Explanation s_comparedSurveyWrong = new(ExplanationKind.ComparedSurveyWrong);
+
+    /// <summary>Likeliest first, ties by kind, else as they stand.</summary>
+    private static void Order(WeighedExplanation[] list)
+    {
+        for (var i = 1; i < list.Length; i++)
+        {
+            var moving = list[i];
+            var (weight, kind) = (Math.Round(moving.Weight, 12), moving.Explanation.Kind);
+            var j = i;
+            for (; j > 0; j--)
+            {
+                var other = Math.Round(list[j - 1].Weight, 12);
+                if (other > weight || (other == weight && list[j - 1].Explanation.Kind <= kind)) break;
+                list[j] = list[j - 1];
+            }
+            list[j] = moving;
+        }
+    }
+
+    private static bool OneSurveyBehind(ReadOnlySpan<TreadShape?> written, ReadOnlySpan<TyreExpectation> expected)
+    {
+        for (var p = 0; p < written.Length; p++)
+            if (written[p] is not null && expected[p].Surveys > 1) return false;
+        return true;
+    }
+
+    internal static List<(Explanation Explanation, double Prior)> Candidates(Vehicle vehicle, IReadOnlyList<int> axles)
     {
         List<(Explanation, double)> list = [(Explanation.AsWritten, 1 - SidesSwappedPrior - AxleSidesSwappedPrior - AxlesSwappedPrior - 2 * UnitPrior - OtherVehiclePrior)];
-        var axles = written.Select(s => s.Position.Axle).Distinct().Order().ToList();
         list.Add((new(ExplanationKind.SidesSwapped), SidesSwappedPrior));
         if (axles.Count > 1)
             foreach (var axle in axles) list.Add((new(ExplanationKind.AxleSidesSwapped, axle), AxleSidesSwappedPrior / axles.Count));
@@ -139,72 +183,136 @@ public static class SurveyExplanation
         return list;
     }
 
-    private static double LogLikelihood(Explanation explanation, IReadOnlyList<TreadShape> written, IReadOnlyDictionary<Position, TyreExpectation> expected, double technicianSd)
+    /// <summary>How the readings of one position fit the expectation of one position; the same whichever explanation joins the two.</summary>
+    /// <param name="Known">False until it has been worked out.</param>
+    /// <param name="Residual">Mean depth less expected, mm.</param>
+    /// <param name="Variance">Its variance, what all tyres share left aside.</param>
+    /// <param name="Regular">Log density of all figures but for the exponent of the mean.</param>
+    /// <param name="Odd">Log density of a tyre off for a reason of its own.</param>
+    internal readonly record struct PairFit(bool Known, double Residual, double Variance, double Regular, double Odd);
+
+    private static PairFit Pair(TreadShape shape, in TyreExpectation e, double factor, double sharedVariance)
     {
-        var factor = explanation.Factor;
-        var count = written.Count;
-        Span<double> residual = count <= 64 ? stackalloc double[count] : new double[count];
-        Span<double> variance = count <= 64 ? stackalloc double[count] : new double[count];
-        var behind = 0;
-        for (var i = 0; i < count; i++)
+        var mean = shape.MeanDepthMm * factor;
+        var residual = mean.Value - e.MeanMm.Value;
+        var variance = mean.StandardError * mean.StandardError + e.MeanMm.StandardError * e.MeanMm.StandardError;
+        var odd = LineBelief.LogDensity(residual, OddMeanSd * OddMeanSd + variance);
+        var regular = LineBelief.LogDensity(0, variance + sharedVariance);
+        Add(factor, shape.EdgeMm, e.EdgeMm, OddEdgeSd, ref odd, ref regular);
+        Add(factor, shape.ShoulderMm, e.ShoulderMm, OddShoulderSd, ref odd, ref regular);
+        return new(true, residual, variance, regular, odd);
+    }
+
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
+    private static double LogLikelihood(
+        ExplanationSet.Candidate candidate, ExplanationSet set, ReadOnlySpan<TreadShape?> written, ReadOnlySpan<TyreExpectation> expected, PairFit[] pairs, double technicianSd)
+    {
+        var (n, factor) = (written.Length, candidate.Factor);
+        int behind = 0, count = 0, figures = 0;
+        for (var p = 0; p < n; p++)
         {
-            var e = expected[explanation.Belongs(written[i].Position)].MeanMm;
-            var y = written[i].MeanDepthMm * factor;
-            residual[i] = y.Value - e.Value;
-            variance[i] = y.StandardError * y.StandardError + e.StandardError * e.StandardError;
-            behind = Math.Max(behind, expected[written[i].Position].Surveys);
+            if (written[p] is not { } shape) continue;
+            behind = Math.Max(behind, expected[p].Surveys);
+            figures += 1 + (shape.EdgeMm is null ? 0 : 1) + (shape.ShoulderMm is null ? 0 : 1);
+            count++;
         }
         // The others' technicians err too, so the shared part of a comparison is wider than one technician's.
         var sharedVariance = technicianSd * technicianSd * (1 + 1.0 / Math.Max(1, behind));
-        var shared = Shared(residual, variance, sharedVariance);
-        var log = count > 2 ? -0.5 * shared * shared / sharedVariance : 0;
+        // Of one tyre or two what they share cannot be told from their own.
+        var own = count > 2 ? 0 : sharedVariance;
+        Span<PairFit> fits = n <= 64 ? stackalloc PairFit[n] : new PairFit[n];
+        Span<double> residual = n <= 64 ? stackalloc double[n] : new double[n];
+        double precision = 0;
+        count = 0;
+        for (var p = 0; p < n; p++)
+        {
+            if (written[p] is not { } shape) continue;
+            var q = candidate.Belongs[p];
+            ref var kept = ref pairs[p * n + q];
+            if (!kept.Known || factor != 1) fits[p] = Pair(shape, expected[q], factor, own);
+            else fits[p] = kept;
+            if (factor == 1) kept = fits[p];
+            residual[count++] = fits[p].Residual;
+            precision += 1 / fits[p].Variance;
+        }
+        var shared = Shared(residual[..count], precision, sharedVariance);
+        var log = (count > 2 ? -0.5 * shared * shared / sharedVariance : 0) + figures * candidate.LogFactor;
         Span<double> alone = stackalloc double[Position.MaxAxle + 1];
         Span<double> together = stackalloc double[Position.MaxAxle + 1];
-        for (var i = 0; i < count; i++)
+        for (var p = 0; p < n; p++)
         {
-            var shape = written[i];
-            var e = expected[explanation.Belongs(shape.Position)];
-            var odd = LineBelief.LogDensity(residual[i], OddMeanSd * OddMeanSd + variance[i]);
-            var regular = LineBelief.LogDensity(residual[i] - shared, variance[i] + (count > 2 ? 0 : sharedVariance));
-            Add(shape.EdgeMm, e.EdgeMm, OddEdgeSd, ref odd, ref regular);
-            Add(shape.ShoulderMm, e.ShoulderMm, OddShoulderSd, ref odd, ref regular);
-            alone[shape.Position.Axle] += LogMix(OddTyrePrior, regular, odd);
-            together[shape.Position.Axle] += odd;
-            var figures = 1 + (shape.EdgeMm is null ? 0 : 1) + (shape.ShoulderMm is null ? 0 : 1);
-            log += figures * Math.Log(factor);
+            if (written[p] is null) continue;
+            var off = fits[p].Residual - shared;
+            alone[set.Axle[p]] += LogMix(s_oddTyre, fits[p].Regular - 0.5 * off * off / (fits[p].Variance + own), fits[p].Odd);
+            together[set.Axle[p]] += fits[p].Odd;
         }
-        for (var axle = 0; axle < alone.Length; axle++)
-            log += explanation.Kind == ExplanationKind.OtherVehicle ? together[axle] : LogMix(AxleChangedPrior, alone[axle], together[axle]);
+        foreach (var axle in set.Axles)
+            log += candidate.Explanation.Kind == ExplanationKind.OtherVehicle ? together[axle] : LogMix(s_axleChanged, alone[axle], together[axle]);
         return log;
+    }
 
-        void Add(Estimate? seen, Estimate e, double oddSd, ref double odd, ref double regular)
-        {
-            if (seen is not { } s) return;
-            var v = factor * factor * s.StandardError * s.StandardError + e.StandardError * e.StandardError;
-            odd += LineBelief.LogDensity(factor * s.Value - e.Value, oddSd * oddSd + v);
-            regular += LineBelief.LogDensity(factor * s.Value - e.Value, v);
-        }
+    private static void Add(double factor, in Estimate? seen, in Estimate e, double oddSd, ref double odd, ref double regular)
+    {
+        if (seen is not { } s) return;
+        var v = factor * factor * s.StandardError * s.StandardError + e.StandardError * e.StandardError;
+        odd += LineBelief.LogDensity(factor * s.Value - e.Value, oddSd * oddSd + v);
+        regular += LineBelief.LogDensity(factor * s.Value - e.Value, v);
     }
 
     /// <summary>What all tyres share: their median residual, shrunk to zero and held within three of its standard deviations.</summary>
-    private static double Shared(ReadOnlySpan<double> residual, ReadOnlySpan<double> variance, double sharedVariance)
+    private static double Shared(Span<double> residual, double precision, double sharedVariance)
     {
         if (residual.Length <= 2) return 0;
-        Span<double> sorted = stackalloc double[Math.Min(residual.Length, 64)];
-        residual[..sorted.Length].CopyTo(sorted);
-        sorted.Sort();
-        var median = Medians.OfSorted(sorted);
-        double precision = 0;
-        foreach (var v in variance) precision += 1 / v;
         var bound = 3 * Math.Sqrt(sharedVariance);
-        return Math.Clamp(median * sharedVariance / (sharedVariance + 1.57 / precision), -bound, bound);
+        return Math.Clamp(Selection.Median(residual) * sharedVariance / (sharedVariance + 1.57 / precision), -bound, bound);
     }
 
-    private static double LogMix(double oddShare, double regular, double odd)
+    private static readonly (double Regular, double Odd) s_oddTyre = (Math.Log(1 - OddTyrePrior), Math.Log(OddTyrePrior));
+    private static readonly (double Regular, double Odd) s_axleChanged = (Math.Log(1 - AxleChangedPrior), Math.Log(AxleChangedPrior));
+
+    private static double LogMix((double Regular, double Odd) logShares, double regular, double odd)
     {
-        var a = Math.Log(1 - oddShare) + regular;
-        var b = Math.Log(oddShare) + odd;
-        var top = Math.Max(a, b);
-        return top + Math.Log(Math.Exp(a - top) + Math.Exp(b - top));
+        var (a, b) = (logShares.Regular + regular, logShares.Odd + odd);
+        var (top, gap) = a > b ? (a, b - a) : (b, a - b);
+        // Below e^-40 the lesser part is beyond the last digit; below 1/500 four terms of the series of ln(1 + x) give twelve of them.
+        if (gap < -40) return top;
+        var x = Math.Exp(gap);
+        return top + (x < 0.002 ? x * (1 - x * (0.5 - x * (1.0 / 3 - x / 4))) : Math.Log(1 + x));
+    }
+}
+
+/// <summary>The explanations that a survey of certain axles can have, made once and used for every such survey of a vehicle, by one thread.</summary>
+internal sealed class ExplanationSet
+{
+    /// <param name="Explanation">Which.</param>
+    /// <param name="LogPrior">ln of its prior share.</param>
+    /// <param name="Factor">From the depth as stored to the depth as meant.</param>
+    /// <param name="LogFactor">Its logarithm.</param>
+    /// <param name="Belongs">Index of the position that a reading written at each position belongs to.</param>
+    public sealed record Candidate(Explanation Explanation, double LogPrior, double Factor, double LogFactor, int[] Belongs);
+
+    public required Candidate[] Candidates { get; init; }
+    /// <summary>Axle number of each position.</summary>
+    public required int[] Axle { get; init; }
+    /// <summary>Axles read, ascending.</summary>
+    public required int[] Axles { get; init; }
+
+    /// <summary>Room for the fits of each position's readings to each position's expectation; one survey at a time.</summary>
+    public required SurveyExplanation.PairFit[] Pairs { get; init; }
+
+    /// <param name="vehicle">The vehicle.</param>
+    /// <param name="positions">Its positions in order.</param>
+    /// <param name="axles">Axles read, in any order.</param>
+    public static ExplanationSet Of(Vehicle vehicle, Position[] positions, IReadOnlyList<int> axles)
+    {
+        int[] read = [.. axles.Order()];
+        return new ExplanationSet
+        {
+            Axle = [.. positions.Select(p => p.Axle)],
+            Axles = read,
+            Pairs = new SurveyExplanation.PairFit[positions.Length * positions.Length],
+            Candidates = [.. SurveyExplanation.Candidates(vehicle, read).Select(c => new Candidate(c.Explanation, Math.Log(c.Prior), c.Explanation.Factor, Math.Log(c.Explanation.Factor),
+                [.. positions.Select(p => Array.IndexOf(positions, c.Explanation.Belongs(p)))]))],
+        };
     }
 }

@@ -52,12 +52,9 @@ public sealed record TreadShape
     /// <param name="without">Groove to leave out as mistyped.</param>
     public static TreadShape? Of(TyreReadings readings, double resolutionMm, double repeatSdMm = GaugeNoise.RepeatSdMm, double? newDepthMm = null, int grooves = 0, int? without = null)
     {
-        var depths = readings.Depths.Where(d => double.IsFinite(d.DepthMm) && d.DepthMm >= 0 && d.Groove != without).ToList();
-        if (depths.Count == 0) return null;
-        var numbered = depths.Where(d => d.Groove > 0).ToList();
+        var (byGroove, places) = Means(readings.Depths, without);
+        if (byGroove.Length == 0) return null;
         var variance = GaugeNoise.ReadingVariance(repeatSdMm, resolutionMm);
-        var byGroove = (numbered.Count > 0 ? numbered : depths).GroupBy(d => d.Groove).OrderBy(g => g.Key)
-            .Select(g => new GrooveMean(g.Key, g.Average(d => d.DepthMm), g.Count())).ToList();
         var count = Math.Max(Math.Max(grooves, byGroove[^1].Groove), 1);
         var (mean, edge, shoulder) = Parabola(byGroove, count, variance);
         return new TreadShape
@@ -68,8 +65,8 @@ public sealed record TreadShape
             MeanLossMm = newDepthMm is { } n ? new Estimate(n, NewDepthSdMm) - mean : null,
             EdgeMm = edge,
             ShoulderMm = shoulder,
-            RoundVariationMm = RoundVariation(depths, variance),
-            FeatherMm = Feather(numbered, variance),
+            RoundVariationMm = places > byGroove.Length ? RoundVariation(readings.Depths, byGroove, without, variance) : null,
+            FeatherMm = Feather(readings.Depths, without, variance),
             HandRub = readings.HandRub,
             ByGroove = byGroove,
         };
@@ -86,10 +83,10 @@ public sealed record TreadShape
         ByGroove = factor == 1 ? ByGroove : [.. ByGroove.Select(g => g with { DepthMm = g.DepthMm * factor })],
     };
 
-    private static (Estimate Mean, Estimate? Edge, Estimate? Shoulder) Parabola(List<GrooveMean> byGroove, int count, double variance)
+    private static (Estimate Mean, Estimate? Edge, Estimate? Shoulder) Parabola(GrooveMean[] byGroove, int count, double variance)
     {
-        var columns = Math.Min(byGroove.Count, 3);
-        var partial = byGroove.Count < count && columns < 3 ? ProfileSdMm : 0;
+        var columns = Math.Min(byGroove.Length, 3);
+        var partial = byGroove.Length < count && columns < 3 ? ProfileSdMm : 0;
         if (columns == 1) return (new(byGroove[0].DepthMm, Root(variance / byGroove[0].Places, byGroove[0].Groove == 0 ? 0 : partial)), null, null);
         Span<double> normal = stackalloc double[9];
         Span<double> right = stackalloc double[3];
@@ -133,18 +130,46 @@ public sealed record TreadShape
         return true;
     }
 
+    private static bool Usable(GrooveDepth d, int? without) => double.IsFinite(d.DepthMm) && d.DepthMm >= 0 && d.Groove != without;
+
+    /// <summary>Mean depth of each groove, by number; the depth that stands for the whole tyre only where no groove was read. With the count of depths used.</summary>
+    private static (GrooveMean[] ByGroove, int Places) Means(IReadOnlyList<GrooveDepth> depths, int? without)
+    {
+        Span<GrooveMean> found = depths.Count <= 32 ? stackalloc GrooveMean[depths.Count] : new GrooveMean[depths.Count];
+        int count = 0, places = 0;
+        var numbered = false;
+        for (var i = 0; i < depths.Count; i++) numbered |= depths[i].Groove > 0 && Usable(depths[i], without);
+        for (var i = 0; i < depths.Count; i++)
+        {
+            var d = depths[i];
+            if (!Usable(d, without) || (numbered && d.Groove <= 0)) continue;
+            var at = 0;
+            while (at < count && found[at].Groove < d.Groove) at++;
+            if (at == count || found[at].Groove != d.Groove)
+            {
+                found[at..count].CopyTo(found[(at + 1)..]);
+                found[at] = new(d.Groove, 0, 0);
+                count++;
+            }
+            found[at] = new(d.Groove, found[at].DepthMm + d.DepthMm, found[at].Places + 1);
+            places++;
+        }
+        for (var i = 0; i < count; i++) found[i] = found[i] with { DepthMm = found[i].DepthMm / found[i].Places };
+        return (found[..count].ToArray(), places);
+    }
+
     /// <summary>Pooled variance within grooves less that of reading; the standard error is that of a variance on its degrees of freedom.</summary>
-    private static Estimate? RoundVariation(List<GrooveDepth> depths, double readingVariance)
+    private static Estimate? RoundVariation(IReadOnlyList<GrooveDepth> depths, GrooveMean[] byGroove, int? without, double readingVariance)
     {
         double squares = 0;
-        var freedom = 0;
-        foreach (var groove in depths.GroupBy(d => d.Groove))
+        var freedom = -byGroove.Length;
+        foreach (var d in depths)
         {
-            var mean = groove.Average(d => d.DepthMm);
-            squares += groove.Sum(d => (d.DepthMm - mean) * (d.DepthMm - mean));
-            freedom += groove.Count() - 1;
+            if (!Usable(d, without) || Array.FindIndex(byGroove, g => g.Groove == d.Groove) is not (>= 0 and var at)) continue;
+            squares += (d.DepthMm - byGroove[at].DepthMm) * (d.DepthMm - byGroove[at].DepthMm);
+            freedom++;
         }
-        if (freedom == 0) return null;
+        if (freedom <= 0) return null;
         var within = squares / freedom;
         var beyond = Math.Sqrt(Math.Max(0, within - readingVariance));
         var varianceError = Math.Max(within, readingVariance) * Math.Sqrt(2.0 / freedom);
@@ -155,13 +180,21 @@ public sealed record TreadShape
     /// Outboard of a groove lies the inboard edge of the next rib: it stands higher where the fins are inboard, so the
     /// recorded difference already has the sign of the feather.
     /// </summary>
-    private static Estimate? Feather(List<GrooveDepth> depths, double readingVariance)
+    private static Estimate? Feather(IReadOnlyList<GrooveDepth> depths, int? without, double readingVariance)
     {
-        var edges = depths.Where(d => d.OutboardEdgeMm is { } e && double.IsFinite(e)).Select(d => d.OutboardEdgeMm!.Value).ToList();
-        if (edges.Count == 0) return null;
-        var mean = edges.Average();
-        var spread = edges.Count > 2 ? edges.Sum(e => (e - mean) * (e - mean)) / (edges.Count - 1) : 0;
-        return new Estimate(mean, Math.Sqrt(Math.Max(2 * readingVariance, spread) / edges.Count));
+        double sum = 0, squares = 0;
+        var count = 0;
+        for (var i = 0; i < depths.Count; i++)
+        {
+            if (depths[i].OutboardEdgeMm is not { } edge || !double.IsFinite(edge) || depths[i].Groove <= 0 || !Usable(depths[i], without)) continue;
+            sum += edge;
+            squares += edge * edge;
+            count++;
+        }
+        if (count == 0) return null;
+        var mean = sum / count;
+        var spread = count > 2 ? Math.Max(0, squares - count * mean * mean) / (count - 1) : 0;
+        return new Estimate(mean, Math.Sqrt(Math.Max(2 * readingVariance, spread) / count));
     }
 
     private static double Root(double variance, double extraSd) => Math.Sqrt(variance + extraSd * extraSd);

@@ -71,7 +71,7 @@ public sealed class DistanceAxis
     /// <summary>The longest run of readings that never falls nor outruns any vehicle: what is left out was mistyped.</summary>
     private static List<TreadSurvey> Rising(List<TreadSurvey> stretch)
     {
-        if (stretch.Count == 0) return stretch;
+        if (stretch.Count == 0 || Enumerable.Range(1, stretch.Count - 1).All(i => Follows(stretch[i - 1], stretch[i]))) return stretch;
         var best = new int[stretch.Count];
         var from = new int[stretch.Count];
         for (var i = 0; i < stretch.Count; i++)
@@ -79,9 +79,7 @@ public sealed class DistanceAxis
             (best[i], from[i]) = (1, -1);
             for (var j = 0; j < i; j++)
             {
-                var km = stretch[i].DistanceKm!.Value - stretch[j].DistanceKm!.Value;
-                var most = MostKmPerWeek * ((stretch[i].At - stretch[j].At).TotalDays / 7 + 0.5);
-                if (km >= -1 && km <= most && best[j] + 1 > best[i]) (best[i], from[i]) = (best[j] + 1, j);
+                if (best[j] + 1 > best[i] && Follows(stretch[j], stretch[i])) (best[i], from[i]) = (best[j] + 1, j);
             }
         }
         var at = Array.IndexOf(best, best.Max());
@@ -89,6 +87,12 @@ public sealed class DistanceAxis
         for (; at >= 0; at = from[at]) kept.Add(stretch[at]);
         kept.Reverse();
         return kept;
+    }
+
+    private static bool Follows(TreadSurvey earlier, TreadSurvey later)
+    {
+        var km = later.DistanceKm!.Value - earlier.DistanceKm!.Value;
+        return km >= -1 && km <= MostKmPerWeek * ((later.At - earlier.At).TotalDays / 7 + 0.5);
     }
 
     private static double Spread(double weeks, double use) => use * Math.Sqrt(WeekShareSd * WeekShareSd * weeks + UseShareSd * UseShareSd * weeks * weeks);

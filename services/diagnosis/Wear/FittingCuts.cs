@@ -11,13 +11,19 @@ internal sealed class FittingCuts
     /// <param name="Km">Distance of the record.</param>
     public sealed record Cut(int Survey, FittingRecord? Record, double? Km);
 
-    private readonly Dictionary<Position, List<Cut>> _cuts = [];
+    private readonly Position[] _positions;
+    private readonly PositionIndex _index;
+    private readonly List<Cut>[] _cuts;
     private readonly Dictionary<string, Tyre> _tyres;
+
+    private static readonly Dictionary<string, Tyre> s_noTyres = [];
 
     public FittingCuts(VehicleTread tread, IReadOnlyList<StoredSurvey> surveys, IReadOnlyList<FittingRecord> records, DistanceAxis axis)
     {
-        _tyres = tread.Tyres.GroupBy(t => t.TyreId).ToDictionary(g => g.Key, g => g.First());
-        foreach (var position in tread.Vehicle.Positions()) _cuts[position] = [new Cut(0, null, null)];
+        _tyres = tread.Tyres.Count == 0 ? s_noTyres : tread.Tyres.GroupBy(t => t.TyreId).ToDictionary(g => g.Key, g => g.First());
+        _positions = [.. tread.Vehicle.Positions()];
+        _index = new PositionIndex(_positions);
+        _cuts = [.. _positions.Select(_ => new List<Cut> { new(0, null, null) })];
         foreach (var record in records)
         {
             var before = surveys.TakeWhile(s => s.Survey.At < record.At).Count();
@@ -28,12 +34,14 @@ internal sealed class FittingCuts
         }
     }
 
-    public IReadOnlyList<Cut> At(Position position) => _cuts[position];
+    /// <summary>Beginnings at a position, by its number in the vehicle's order.</summary>
+    public IReadOnlyList<Cut> At(int position) => _cuts[position];
 
     /// <summary>Adds a beginning; of two at one survey the later record counts.</summary>
     public void Add(Position position, Cut cut)
     {
-        if (!_cuts.TryGetValue(position, out var list)) return;
+        if (_index[position] is not (>= 0 and var p)) return;
+        var list = _cuts[p];
         if (cut.Record is null && list.Any(c => c.Survey == cut.Survey)) return;
         list.RemoveAll(c => c.Survey == cut.Survey);
         list.Add(cut);
@@ -41,24 +49,36 @@ internal sealed class FittingCuts
     }
 
     /// <summary>Index of the fitting that a survey falls in.</summary>
-    public int Of(Position position, int survey) => _cuts[position].FindLastIndex(c => c.Survey <= survey);
+    public int Of(int position, int survey)
+    {
+        var list = _cuts[position];
+        var at = list.Count - 1;
+        while (at >= 0 && list[at].Survey > survey) at--;
+        return at;
+    }
 
     public Tyre? Tyre(string? id) => id is not null && _tyres.TryGetValue(id, out var tyre) ? tyre : null;
 
     /// <summary>The record that says which tyre is on a position in a fitting: a tyre moved or turned is still the one it was.</summary>
-    public FittingRecord? Identity(Position position, int index)
+    public FittingRecord? Identity(int position, int index)
     {
         for (var depth = 0; depth < 8 && index >= 0; depth++)
         {
             var record = _cuts[position][index].Record;
             if (record is null or { TyreId: not null } or { NewDepthMm: not null } or { Event: FittingEvent.Fitted or FittingEvent.Removed }) return record;
-            if (record is { Event: FittingEvent.Moved, FromPosition: { } from } && _cuts.TryGetValue(from, out var there))
-                (index, position) = (there.FindLastIndex(c => c.Survey <= _cuts[position][index].Survey && (c.Record is null || c.Record.At < record.At) && c.Survey < Math.Max(1, _cuts[position][index].Survey)), from);
-            else index--;
+            if (record is { Event: FittingEvent.Moved, FromPosition: { } from } && _index[from] is >= 0 and var there)
+            {
+                var survey = _cuts[position][index].Survey;
+                (index, position) = (_cuts[there].FindLastIndex(c => c.Survey <= survey && (c.Record is null || c.Record.At < record.At) && c.Survey < Math.Max(1, survey)), there);
+            }
+            else
+            {
+                index--;
+            }
         }
         return null;
     }
 
     /// <summary>Depth when new of the tyre of a fitting, mm; null where nobody recorded it.</summary>
-    public double? NewDepth(Position position, int index) => Identity(position, index) is { Event: not FittingEvent.Removed } r ? r.NewDepthMm ?? Tyre(r.TyreId)?.NewDepthMm : null;
+    public double? NewDepth(int position, int index) => Identity(position, index) is { Event: not FittingEvent.Removed } r ? r.NewDepthMm ?? Tyre(r.TyreId)?.NewDepthMm : null;
 }

@@ -12,8 +12,35 @@ public sealed record NoiseFigures
     /// <summary>Correlation of neighbouring residuals of a wear line, 0 to 0.6: they come in runs of one sign.</summary>
     public double ResidualCorrelation { get; init; } = 0.1;
 
+    /// <summary>How the first wear differs from the later.</summary>
+    public RunIn RunIn { get; init; } = new();
+
     /// <summary>Widening of a slope's error for that correlation: √((1+ρ)/(1−ρ)), the AR(1) factor.</summary>
     public double SlopeFactor(int count) => count > 2 ? Math.Sqrt((1 + ResidualCorrelation) / (1 - ResidualCorrelation)) : 1;
+}
+
+/// <summary>The figures of a tread that are followed over distance.</summary>
+internal enum TreadFigure { Mean, Edge, Shoulder }
+
+/// <summary>A point of a fitting as its lines need it.</summary>
+/// <param name="X">Distance, 1000 km.</param>
+/// <param name="KmSd">Its error, km.</param>
+/// <param name="Weight">0 to 1: how far the survey is believed.</param>
+/// <param name="Mean">Mean depth, mm.</param>
+/// <param name="Edge">Edge part, mm; NaN where it was not measured.</param>
+/// <param name="Shoulder">Shoulder part, mm; NaN where it was not measured.</param>
+/// <param name="Technician">Number of the technician; −1 for the start of the fitting and for an unnamed hand.</param>
+/// <param name="Gauge">Number of the gauge; −1 where there is none.</param>
+/// <param name="Measured">False for the start of the fitting, which is recorded and not measured.</param>
+internal readonly record struct LinePoint(double X, double KmSd, double Weight, Estimate Mean, Estimate Edge, Estimate Shoulder, int Technician, int Gauge, bool Measured)
+{
+    /// <summary>Precision of the mean depth with the tyre's wandering, before the fleet's own scale, mm⁻².</summary>
+    public double MeanPrecision { get; } = Weight / (Mean.StandardError * Mean.StandardError + FittingLines.WanderSdMm * FittingLines.WanderSdMm);
+
+    private static readonly Estimate s_absent = new(double.NaN, double.NaN);
+
+    public static LinePoint Of(FittingPoint p, int technician, int gauge) =>
+        new(p.Km / 1000, p.KmSd, p.Weight, p.Mean, p.Edge ?? s_absent, p.Shoulder ?? s_absent, technician, gauge, p.Survey >= 0);
 }
 
 /// <summary>Lines of one fitting against distance, per 1000 km; losses positive.</summary>
@@ -25,6 +52,9 @@ internal sealed record FittingLines(CorrelatedLine? Mean, CorrelatedLine? Edge, 
     /// <summary>Fittings judged by their own scatter count for this many degrees of freedom of the fleet's.</summary>
     private const double FleetFreedom = 10;
 
+    /// <summary>Share of an error of distance that reaches the edge and shoulder parts, as a variance (from memory).</summary>
+    private const double ShapeShareOfDistance = 0.04;
+
     /// <summary>Loss of mean depth, mm per 1000 km.</summary>
     public Estimate? Rate(NoiseFigures noise) => Slope(Mean, noise) is { } s ? -s : null;
 
@@ -32,11 +62,13 @@ internal sealed record FittingLines(CorrelatedLine? Mean, CorrelatedLine? Edge, 
 
     public Estimate? ShoulderRate(NoiseFigures noise) => Slope(Shoulder, noise);
 
-    private static Estimate? Slope(CorrelatedLine? line, NoiseFigures noise)
+    private static Estimate? Slope(CorrelatedLine? line, NoiseFigures noise) => line is null ? null : Widened(line.Slope, line.ChiSquare, line.Count, noise);
+
+    /// <summary>A slope with its error widened for the scatter of its own residuals and for their correlation.</summary>
+    public static Estimate Widened(Estimate slope, double chiSquare, int count, NoiseFigures noise)
     {
-        if (line is null) return null;
-        var own = (FleetFreedom + line.ChiSquare) / (FleetFreedom + Math.Max(0, line.Count - 2));
-        return line.Slope with { StandardError = line.Slope.StandardError * Math.Sqrt(Math.Max(0.8, own)) * noise.SlopeFactor(line.Count) };
+        var own = (FleetFreedom + chiSquare) / (FleetFreedom + Math.Max(0, count - 2));
+        return slope with { StandardError = slope.StandardError * Math.Sqrt(Math.Max(0.8, own)) * noise.SlopeFactor(count) };
     }
 
     /// <param name="points">Points of the fitting in order of distance.</param>
@@ -45,27 +77,39 @@ internal sealed record FittingLines(CorrelatedLine? Mean, CorrelatedLine? Edge, 
     /// <param name="rateMmPer1000Km">About the rate, to turn an error of distance into one of depth.</param>
     public static FittingLines Fit(IReadOnlyList<FittingPoint> points, NoiseFigures noise, Func<int, (Estimate Bias, int Reader)> bias, double rateMmPer1000Km)
     {
-        var (mean, edge, shoulder) = Readings(points, noise, bias, rateMmPer1000Km);
-        return new(CorrelatedLine.Fit(mean), CorrelatedLine.Fit(edge), CorrelatedLine.Fit(shoulder));
+        var readings = new List<LineReading>(points.Count);
+        var kept = new LinePoint[points.Count];
+        for (var i = 0; i < kept.Length; i++) kept[i] = LinePoint.Of(points[i], points[i].Survey < 0 ? -1 : bias(points[i].Survey).Reader, -1);
+        var fittedNew = kept.Length > 0 && points[0].New;
+        var loss = fittedNew ? RunIn.MiddleLoss(kept) : 0;
+        return new(Line(TreadFigure.Mean), Line(TreadFigure.Edge), Line(TreadFigure.Shoulder));
+
+        CorrelatedLine? Line(TreadFigure figure)
+        {
+            readings.Clear();
+            for (var i = 0; i < kept.Length; i++)
+            {
+                var b = points[i].Survey < 0 ? new Estimate(0, 0) : bias(points[i].Survey).Bias;
+                var p = fittedNew ? noise.RunIn.OnLine(kept[i], kept[0].Mean.Value, loss) : kept[i];
+                if (Reading(p, figure, noise, b, rateMmPer1000Km) is { } reading) readings.Add(reading);
+            }
+            return CorrelatedLine.Fit(readings);
+        }
     }
 
-    /// <summary>The points with their whole errors: of the reading, of the wandering line, of the distance, of the reader.</summary>
-    public static (List<LineReading> Mean, List<LineReading> Edge, List<LineReading> Shoulder) Readings(IReadOnlyList<FittingPoint> points, NoiseFigures noise, Func<int, (Estimate Bias, int Reader)> bias, double rateMmPer1000Km)
+    /// <summary>One reading of a figure's line; null where the point does not have it. Readings of one technician share the error of his bias.</summary>
+    public static LineReading? Reading(in LinePoint p, TreadFigure figure, NoiseFigures noise, in Estimate bias, double rateMmPer1000Km)
     {
-        var mean = new List<LineReading>(points.Count);
-        var edge = new List<LineReading>(points.Count);
-        var shoulder = new List<LineReading>(points.Count);
-        foreach (var p in points)
+        var seen = figure switch { TreadFigure.Mean => p.Mean, TreadFigure.Edge => p.Edge, _ => p.Shoulder };
+        if (double.IsNaN(seen.Value)) return null;
+        var distance = Square(rateMmPer1000Km / 1000 * p.KmSd);
+        var variance = Square(seen.StandardError) + (p.Measured ? WanderSdMm * WanderSdMm : 0);
+        return figure switch
         {
-            var (b, reader) = p.Survey < 0 ? (new Estimate(0, 0), -1) : bias(p.Survey);
-            var x = p.Km / 1000;
-            var distance = Square(rateMmPer1000Km / 1000 * p.KmSd);
-            var wander = p.Survey < 0 ? 0 : WanderSdMm * WanderSdMm;
-            mean.Add(new(x, p.Mean.Value - b.Value, (Square(noise.MeanScale) * (Square(p.Mean.StandardError) + wander) + distance) / p.Weight, reader, Square(b.StandardError)));
-            if (p.Edge is { } e) edge.Add(new(x, e.Value, (Square(noise.EdgeScale) * (Square(e.StandardError) + wander) + 0.04 * distance) / p.Weight));
-            if (p.Shoulder is { } s) shoulder.Add(new(x, s.Value, (Square(noise.ShoulderScale) * (Square(s.StandardError) + wander) + 0.04 * distance) / p.Weight));
-        }
-        return (mean, edge, shoulder);
+            TreadFigure.Mean => new(p.X, seen.Value - bias.Value, (Square(noise.MeanScale) * variance + distance) / p.Weight, p.Technician, Square(bias.StandardError)),
+            TreadFigure.Edge => new(p.X, seen.Value, (Square(noise.EdgeScale) * variance + ShapeShareOfDistance * distance) / p.Weight),
+            _ => new(p.X, seen.Value, (Square(noise.ShoulderScale) * variance + ShapeShareOfDistance * distance) / p.Weight),
+        };
     }
 
     private static double Square(double x) => x * x;

@@ -1,5 +1,3 @@
-using WearWatch.Diagnosis.Statistics;
-
 namespace WearWatch.Diagnosis.Wear;
 
 /// <summary>Noise of a fleet's readings from the residuals of its wear lines.</summary>
@@ -13,48 +11,41 @@ internal static class FleetNoise
 
     private const double PriorCorrelation = 0.1;
 
-    public static NoiseFigures Of(IReadOnlyList<FittingLines> lines, NoiseFigures before) => before with
+    public static NoiseFigures Of(IReadOnlyList<FleetTyre> tyres, NeighbourSums neighbours, NoiseFigures before) => before with
     {
-        MeanScale = before.MeanScale * Scale([.. lines.Select(l => l.Mean).OfType<CorrelatedLine>()], before.MeanScale),
-        EdgeScale = before.EdgeScale * Scale([.. lines.Select(l => l.Edge).OfType<CorrelatedLine>()], before.EdgeScale),
-        ShoulderScale = before.ShoulderScale * Scale([.. lines.Select(l => l.Shoulder).OfType<CorrelatedLine>()], before.ShoulderScale),
-        ResidualCorrelation = Correlation([.. lines.SelectMany(l => new[] { l.Edge, l.Shoulder }).OfType<CorrelatedLine>()]),
+        MeanScale = before.MeanScale * Scale(tyres, t => t.Mean, before.MeanScale),
+        EdgeScale = before.EdgeScale * Scale(tyres, t => t.Edge, before.EdgeScale),
+        ShoulderScale = before.ShoulderScale * Scale(tyres, t => t.Shoulder, before.ShoulderScale),
+        ResidualCorrelation = Math.Clamp(
+            (PriorPairs * PriorCorrelation + (neighbours.Squares > 0 ? neighbours.Pairs * neighbours.Products / neighbours.Squares : 0)) / (PriorPairs + neighbours.Pairs), 0, 0.6),
     };
 
     /// <summary>
     /// Factor that makes the residuals what their errors say: per line the mean square on its degrees of freedom, over lines the
     /// mean without the worst tenth, which blunders make.
     /// </summary>
-    private static double Scale(IReadOnlyList<CorrelatedLine> lines, double present)
+    private static double Scale(IReadOnlyList<FleetTyre> tyres, Func<FleetTyre, KeptLine> line, double present)
     {
-        var usable = lines.Where(l => l.Count > 3).Select(l => (Square: l.ChiSquare, Freedom: l.Count - 2.0)).OrderBy(l => l.Square / l.Freedom).ToList();
-        if (usable.Count == 0) return 1;
-        var kept = usable.Take((int)Math.Ceiling(usable.Count * 0.9)).ToList();
+        var ratios = new List<double>(tyres.Count);
+        var lines = new List<(double Square, double Freedom)>(tyres.Count);
+        foreach (var tyre in tyres)
+        {
+            if (line(tyre) is not { Fit: { } fit, Count: > 3 } kept) continue;
+            ratios.Add(fit.ChiSquare / (kept.Count - 2.0));
+            lines.Add((fit.ChiSquare, kept.Count - 2.0));
+        }
+        if (lines.Count == 0) return 1;
+        var (keys, sorted) = (ratios.ToArray(), lines.ToArray());
+        Array.Sort(keys, sorted);
         // Leaving out the worst tenth of χ²/df values takes some honest scatter with it: about a sixth on few degrees of freedom.
-        var trimmed = usable.Count >= 10 ? 1.17 : 1;
-        var seen = kept.Sum(l => l.Square) * trimmed;
-        var freedom = kept.Sum(l => l.Freedom);
+        var trimmed = sorted.Length >= 10 ? 1.17 : 1;
+        double seen = 0, freedom = 0;
+        for (var i = 0; i < (int)Math.Ceiling(sorted.Length * 0.9); i++)
+        {
+            seen += sorted[i].Square * trimmed;
+            freedom += sorted[i].Freedom;
+        }
         var prior = PriorFreedom / (present * present);
         return Math.Clamp(Math.Sqrt((prior + seen) / (PriorFreedom + freedom)), 0.5, 2);
-    }
-
-    /// <summary>
-    /// Lag-one correlation of residuals, corrected for what fitting a line alone does to it: near −2/n for white noise
-    /// at even spacing.
-    /// </summary>
-    private static double Correlation(IReadOnlyList<CorrelatedLine> lines)
-    {
-        double products = 0, squares = 0, pairs = 0;
-        foreach (var line in lines.Where(l => l.Count >= 5))
-        {
-            var r = line.Standardised.Select(v => Math.Clamp(v, -3, 3)).ToArray();
-            var square = r.Sum(v => v * v) / (line.Count - 2);
-            for (var i = 1; i < r.Length; i++) products += r[i] * r[i - 1];
-            products += 2 * square * (line.Count - 1.0) / line.Count;
-            squares += square * (line.Count - 1);
-            pairs += line.Count - 1;
-        }
-        var seen = squares > 0 ? products / squares : 0;
-        return Math.Clamp((PriorPairs * PriorCorrelation + pairs * seen) / (PriorPairs + pairs), 0, 0.6);
     }
 }

@@ -16,107 +16,157 @@ internal sealed class FleetWearFit
     /// <summary>How far kinds of position of one class may differ from their class's common factor, ln; from memory.</summary>
     private const double KindLogSd = 0.2;
 
+    /// <summary>Spread of a tyre's own rate about its kind's, share, faulty ones included; from memory.</summary>
+    private const double OwnRateShare = 0.4;
+
     private const int Rounds = 3;
 
-    private readonly VehicleHistory[] _histories;
+    /// <summary>Most blocks the fleet is cut into, and bytes that their sums of readers' effects may take together.</summary>
+    private const int MostBlocks = 128;
+    private const long MostBlockBytes = 64 << 20;
+
     private readonly string[] _technicians;
     private readonly string[] _gauges;
-    private readonly List<(Fitting Fitting, int Vehicle)> _fittings = [];
-    private readonly int[][] _technicianOf;
-    private readonly int[][] _gaugeOf;
+    private readonly FleetTyre[][] _blocks;
+    private readonly FleetTyre[] _tyres;
 
     private FleetWear _fleet;
 
+    /// <summary>
+    /// Vehicles in order of their id are cut into blocks by number alone, and what the blocks find is added up in their order:
+    /// the same result to the last digit whatever the order of the facts and the number of threads.
+    /// </summary>
     private FleetWearFit(IReadOnlyList<VehicleTread> fleet, DateOnly asOf)
     {
         _fleet = new FleetWear { AsOf = asOf, Vehicles = fleet.Count };
-        var context = new HistoryContext((v, p) => NormalWear.BuiltIn(v.Class, WearPrior.RoleOf(v, p.Axle), p.Dual), _ => 0, GaugeNoise.RepeatSdMm, GaugeNoise.TechnicianSdMm);
-        _histories = [.. fleet.OrderBy(v => v.Vehicle.VehicleId, StringComparer.Ordinal).Select(v => VehicleHistory.Of(v, asOf, context))];
-        _technicians = Names(s => s.Technician);
-        _gauges = Names(s => s.Gauge);
-        _technicianOf = [.. _histories.Select(h => h.Surveys.Select(s => IndexOf(_technicians, s.Survey.Technician)).ToArray())];
-        _gaugeOf = [.. _histories.Select(h => h.Surveys.Select(s => IndexOf(_gauges, s.Survey.Gauge)).ToArray())];
-        for (var v = 0; v < _histories.Length; v++)
-            foreach (var fitting in _histories[v].Fittings.Where(f => f.LinePoints.Count > 1 && f.LinePoints[^1].Km - f.LinePoints[0].Km >= LeastKm)) _fittings.Add((fitting, v));
+        var vehicles = fleet.OrderBy(v => v.Vehicle.VehicleId, StringComparer.Ordinal).ToArray();
+        var end = VehicleHistory.End(asOf);
+        _technicians = Names(vehicles, end, s => s.Technician);
+        _gauges = Names(vehicles, end, s => s.Gauge);
+        var readers = Math.Max(1, _technicians.Length + _gauges.Length);
+        var blocks = (int)Math.Clamp(MostBlockBytes / (8L * readers * readers), 1, Math.Min(MostBlocks, Math.Max(1, vehicles.Length / 4)));
+        _blocks = new FleetTyre[blocks][];
+        var context = new HistoryContext((v, p) => s_builtIn[(v.Class, WearPrior.RoleOf(v, p.Axle), p.Dual)], _ => 0, GaugeNoise.RepeatSdMm, GaugeNoise.TechnicianSdMm);
+        Parallel.For(0, blocks, k =>
+        {
+            var tyres = new List<FleetTyre>();
+            for (var v = (int)((long)vehicles.Length * k / blocks); v < (int)((long)vehicles.Length * (k + 1) / blocks); v++) Read(VehicleHistory.Of(vehicles[v], asOf, context), v, tyres);
+            _blocks[k] = [.. tyres];
+        });
+        _tyres = [.. _blocks.SelectMany(b => b)];
     }
+
+    /// <summary>What is believed of each kind of position before the fleet has shown anything.</summary>
+    private static readonly Dictionary<(VehicleClass, AxleRole, Dual), NormalWear> s_builtIn =
+        (from c in Enum.GetValues<VehicleClass>() from r in Enum.GetValues<AxleRole>() from d in Enum.GetValues<Dual>() select (c, r, d)).ToDictionary(k => k, k => NormalWear.BuiltIn(k.c, k.r, k.d));
 
     public static FleetWear Of(IReadOnlyList<VehicleTread> fleet, DateOnly asOf)
     {
         var fit = new FleetWearFit(fleet, asOf);
-        for (var round = 0; round < Rounds && fit._fittings.Count > 0; round++) fit.Round();
+        for (var round = 0; round < Rounds && fit._tyres.Length > 0; round++) fit.Round();
         return fit._fleet;
     }
 
-    private string[] Names(Func<TreadSurvey, string?> of) =>
-        [.. _histories.SelectMany(h => h.Surveys).Select(s => of(s.Survey)).OfType<string>().Distinct().Order(StringComparer.Ordinal)];
+    private static string[] Names(VehicleTread[] vehicles, DateTimeOffset end, Func<TreadSurvey, string?> of)
+    {
+        var names = new HashSet<string>(StringComparer.Ordinal);
+        foreach (var vehicle in vehicles)
+            foreach (var survey in vehicle.Surveys)
+                if (survey.Survey.At < end && of(survey.Survey) is { } name) names.Add(name);
+        return [.. names.Order(StringComparer.Ordinal)];
+    }
 
-    private static int IndexOf(string[] names, string? name) => name is null ? -1 : Array.BinarySearch(names, name, StringComparer.Ordinal);
+    private static int IndexOf(string[] names, string? name) => name is null ? -1 : Math.Max(-1, Array.BinarySearch(names, name, StringComparer.Ordinal));
+
+    /// <summary>Keeps of a vehicle's history what its lines need; the rest may go.</summary>
+    private void Read(VehicleHistory history, int vehicle, List<FleetTyre> tyres)
+    {
+        var technicians = history.Surveys.Select(s => IndexOf(_technicians, s.Survey.Technician)).ToArray();
+        var gauges = history.Surveys.Select(s => IndexOf(_gauges, s.Survey.Gauge)).ToArray();
+        foreach (var fitting in history.Fittings)
+        {
+            var points = fitting.LinePoints;
+            if (points.Count < 2 || points[^1].Km - points[0].Km < LeastKm) continue;
+            var kept = new LinePoint[points.Count];
+            for (var i = 0; i < kept.Length; i++) kept[i] = LinePoint.Of(points[i], points[i].Survey < 0 ? -1 : technicians[points[i].Survey], points[i].Survey < 0 ? -1 : gauges[points[i].Survey]);
+            tyres.Add(new FleetTyre
+            {
+                Vehicle = vehicle,
+                Class = fitting.Class,
+                Role = fitting.Role,
+                Dual = fitting.Position.Dual,
+                Fall = NormalWear.FallSign(fitting.Position, history.Tread.Depot.TrafficSide),
+                Feather = fitting.Points.LastOrDefault(p => p.Shape?.FeatherMm is not null)?.Shape!.FeatherMm,
+                FittedNew = points[0].New,
+                Points = kept,
+            });
+        }
+    }
 
     private void Round()
     {
-        var lines = _fittings.Select(f => (f.Fitting, f.Vehicle, Lines: FittingLines.Fit(f.Fitting.LinePoints, _fleet.Noise, s => Bias(f.Vehicle, s), Rate(f.Fitting)))).ToList();
-        _fleet = _fleet with { Noise = FleetNoise.Of([.. lines.Select(l => l.Lines)], _fleet.Noise), FittingsWithRate = lines.Count(l => l.Lines.Mean is not null) };
-        _fleet = _fleet with { Normals = Normals(lines) };
-        var readings = _fittings.Select(f => ((IReadOnlyList<ReaderBiases.Reading>)Readings(f.Fitting, f.Vehicle), new Estimate(Rate(f.Fitting) / 1000, Rate(f.Fitting) / 1000 * 0.4))).ToList();
-        var (technicians, gauges) = ReaderBiases.Fit(readings, _technicians, _gauges);
+        var readers = new ReaderTable(_fleet.Technicians, _fleet.Gauges);
+        var normals = _fleet.Normals.ToDictionary(n => (n.Class, n.Role, n.Dual), n => n.RateMmPer1000Km);
+        double Rate(FleetTyre t) => normals.TryGetValue((t.Class, t.Role, t.Dual), out var rate) ? rate : s_builtIn[(t.Class, t.Role, t.Dual)].RateMmPer1000Km;
+        var neighbours = new NeighbourSums[_blocks.Length];
+        Parallel.For(0, _blocks.Length, k =>
+        {
+            var sums = new NeighbourSums();
+            foreach (var tyre in _blocks[k]) tyre.FitLines(_fleet.Noise, readers, Rate(tyre), ref sums);
+            neighbours[k] = sums;
+        });
+        _fleet = _fleet with
+        {
+            Noise = FleetNoise.Of(_tyres, neighbours.Aggregate((a, b) => a + b), _fleet.Noise),
+            FittingsWithRate = _tyres.Count(t => t.Mean.Fit is not null),
+        };
+        _fleet = _fleet with { Noise = _fleet.Noise with { RunIn = RunIn.Of(_tyres, _fleet.Noise, readers, Rate) } };
+        _fleet = _fleet with { Normals = Normals() };
+        normals = _fleet.Normals.ToDictionary(n => (n.Class, n.Role, n.Dual), n => n.RateMmPer1000Km);
+        var (technicians, gauges) = ReaderBiases.Fit(_blocks, t => new(Rate(t), Rate(t) * OwnRateShare), _fleet.Noise.MeanScale, _technicians, _gauges);
         _fleet = _fleet with { Technicians = technicians, Gauges = gauges };
     }
 
-    private double Rate(Fitting f) => _fleet.For(f.Class, f.Role, f.Position.Dual).RateMmPer1000Km;
-
-    private (Estimate Bias, int Reader) Bias(int vehicle, int survey)
+    private NormalWear[] Normals()
     {
-        var (t, g) = (_technicianOf[vehicle][survey], _gaugeOf[vehicle][survey]);
-        if (_fleet.Technicians.Count == 0 && _fleet.Gauges.Count == 0) return (new(0, GaugeNoise.TechnicianSdMm), t < 0 ? -1 : t);
-        var technician = t >= 0 ? _fleet.Technicians[t].BiasMm with { StandardError = _fleet.Technicians[t].AgainstOthersSdMm } : new(0, GaugeNoise.TechnicianSdMm);
-        return (technician + (g >= 0 ? _fleet.Gauges[g].BiasMm with { StandardError = _fleet.Gauges[g].AgainstOthersSdMm } : new(0, 0)), t < 0 ? -1 : t);
-    }
-
-    private List<ReaderBiases.Reading> Readings(Fitting fitting, int vehicle) =>
-    [
-        .. fitting.LinePoints.Select(p => new ReaderBiases.Reading(p.Km, p.Mean.Value,
-            (Math.Pow(_fleet.Noise.MeanScale, 2) * (Math.Pow(p.Mean.StandardError, 2) + Math.Pow(FittingLines.WanderSdMm, 2))) / p.Weight,
-            p.Survey < 0 ? -1 : _technicianOf[vehicle][p.Survey], p.Survey < 0 ? -1 : _gaugeOf[vehicle][p.Survey])),
-    ];
-
-    private List<NormalWear> Normals(List<(Fitting Fitting, int Vehicle, FittingLines Lines)> lines)
-    {
-        var normals = new List<NormalWear>();
-        foreach (var byClass in lines.GroupBy(l => l.Fitting.Class).OrderBy(g => g.Key))
+        var kinds = new List<(NormalWear Table, Estimate Prior, FleetTyre[] Members)>();
+        foreach (var byClass in _tyres.GroupBy(t => t.Class).OrderBy(g => g.Key))
         {
             // The class as a whole against the built-in table, so that a kind with few tyres borrows from its nearest kin.
-            var ratios = byClass.Select(l => (l.Vehicle, Rate: l.Lines.Rate(_fleet.Noise), Table: WearPrior.For(l.Fitting.Class, l.Fitting.Role)))
-                .Where(l => l.Rate is not null).Select(l => (l.Vehicle, Ratio: l.Rate!.Value * (1 / l.Table.RateMmPer1000Km))).ToList();
+            var ratios = new List<(int, Estimate)>();
+            foreach (var tyre in byClass)
+                if (tyre.Rate(_fleet.Noise) is { } rate) ratios.Add((tyre.Vehicle, rate * (1 / WearPrior.For(tyre.Class, tyre.Role).RateMmPer1000Km)));
             if (ratios.Count == 0) continue;
-            var classFactor = Log(Clustered([.. ratios], 0.1));
-            var tableSd = WearPrior.For(byClass.Key, AxleRole.Steer).LogSd;
-            var common = Pool(new(0, tableSd), classFactor.Centre);
-            foreach (var kind in byClass.GroupBy(l => (l.Fitting.Role, l.Fitting.Position.Dual)).OrderBy(g => g.Key))
+            var common = Pool(new(0, WearPrior.For(byClass.Key, AxleRole.Steer).LogSd), Log(Clustered(ratios, 0.1)).Centre);
+            foreach (var kind in byClass.GroupBy(t => (t.Role, t.Dual)).OrderBy(g => g.Key))
             {
                 var table = NormalWear.BuiltIn(byClass.Key, kind.Key.Role, kind.Key.Dual);
-                normals.Add(Kind([.. kind], table, new(table.LogRate.Value + common.Value, Math.Sqrt(KindLogSd * KindLogSd + common.StandardError * common.StandardError))));
+                kinds.Add((table, new(table.LogRate.Value + common.Value, Math.Sqrt(KindLogSd * KindLogSd + common.StandardError * common.StandardError)), [.. kind]));
             }
         }
+        var normals = new NormalWear[kinds.Count];
+        Parallel.For(0, kinds.Count, k => normals[k] = Kind(kinds[k].Members, kinds[k].Table, kinds[k].Prior));
         return normals;
     }
 
-    private NormalWear Kind(List<(Fitting Fitting, int Vehicle, FittingLines Lines)> members, NormalWear table, Estimate prior)
+    private NormalWear Kind(FleetTyre[] members, NormalWear table, Estimate prior)
     {
-        var rates = members.Where(m => m.Lines.Mean is not null).Select(m => (m.Vehicle, Rate: m.Lines.Rate(_fleet.Noise)!.Value)).ToList();
-        var vehicles = rates.Select(r => r.Vehicle).Distinct().Count();
+        var rates = new List<(int Vehicle, Estimate Rate)>(members.Length);
+        foreach (var m in members)
+            if (m.Rate(_fleet.Noise) is { } own) rates.Add((m.Vehicle, own));
+        var vehicles = Vehicles(rates);
         if (vehicles == 0) return table with { LogRate = prior };
         var expected = Math.Exp(prior.Value);
-        var seen = Clustered([.. rates.Select(r => (r.Vehicle, r.Rate))], 0.08 * expected);
+        var seen = Clustered(rates, 0.08 * expected);
         var log = Log(seen);
         var logRate = Pool(prior, log.Centre);
         // A spread among few is hardly known: it counts with the vehicles behind it against ten of the prior's.
         var between = Math.Sqrt((10 * table.LogRateBetweenSd * table.LogRateBetweenSd + vehicles * log.BetweenSd * log.BetweenSd) / (10 + vehicles));
         var rate = Math.Exp(logRate.Value);
-        var lean = PerMm(members, m => m.Lines.EdgeRate(_fleet.Noise) * Fall(m), rate, table.LeanPerMm, table.EdgeBetweenSd).PerMm;
-        var edge = PerMm(members, m => m.Lines.EdgeRate(_fleet.Noise) - new Estimate(lean.Value * rate * Fall(m), 0), rate, table.EdgePerMm, table.EdgeBetweenSd);
-        var feathers = members.Select(m => (m.Vehicle, Feather: m.Fitting.Points.LastOrDefault(p => p.Shape?.FeatherMm is not null)?.Shape!.FeatherMm * Fall(m)))
-            .Where(m => m.Feather is not null).Select(m => (m.Vehicle, m.Feather!.Value)).ToList();
-        var shoulder = PerMm(members, m => m.Lines.ShoulderRate(_fleet.Noise), rate, table.ShoulderPerMm, table.ShoulderBetweenSd);
+        var lean = PerMm(members, m => m.Edge.Slope(_fleet.Noise) * m.Fall, rate, table.LeanPerMm, table.EdgeBetweenSd).PerMm;
+        var edge = PerMm(members, m => m.Edge.Slope(_fleet.Noise) - new Estimate(lean.Value * rate * m.Fall, 0), rate, table.EdgePerMm, table.EdgeBetweenSd);
+        var feathers = members.Where(m => m.Feather is not null).Select(m => (m.Vehicle, m.Feather!.Value * m.Fall)).ToList();
+        var shoulder = PerMm(members, m => m.Shoulder.Slope(_fleet.Noise), rate, table.ShoulderPerMm, table.ShoulderBetweenSd);
         var ownShare = 1 - Math.Pow(logRate.StandardError / prior.StandardError, 2);
         return table with
         {
@@ -133,20 +183,18 @@ internal sealed class FleetWearFit
         };
     }
 
-    private int Fall((Fitting Fitting, int Vehicle, FittingLines Lines) m) => NormalWear.FallSign(m.Fitting.Position, _histories[m.Vehicle].Tread.Depot.TrafficSide);
-
-    private (Estimate PerMm, double Between) PerMm(List<(Fitting Fitting, int Vehicle, FittingLines Lines)> members, Func<(Fitting, int, FittingLines Lines), Estimate?> slope, double normalRate, Estimate prior, double priorBetween)
+    private (Estimate PerMm, double Between) PerMm(FleetTyre[] members, Func<FleetTyre, Estimate?> slope, double normalRate, Estimate prior, double priorBetween)
     {
         var ratios = new List<(int, Estimate)>();
         foreach (var m in members)
         {
-            if (slope(m) is not { } s || m.Lines.Rate(_fleet.Noise) is not { } own) continue;
+            if (slope(m) is not { } s || m.Rate(_fleet.Noise) is not { } own) continue;
             var rate = own.Value > 3 * own.StandardError ? own.Value : normalRate;
             ratios.Add((m.Vehicle, s * (1 / rate)));
         }
         if (ratios.Count == 0) return (prior, priorBetween);
-        var seen = Clustered([.. ratios], 0.03);
-        var n = ratios.Select(r => r.Item1).Distinct().Count();
+        var seen = Clustered(ratios, 0.03);
+        var n = Vehicles(ratios);
         return (Pool(prior, seen.Centre), Math.Sqrt((10 * priorBetween * priorBetween + n * seen.BetweenSd * seen.BetweenSd) / (10 + n)));
     }
 
@@ -154,8 +202,17 @@ internal sealed class FleetWearFit
     private static PooledLocation Clustered(List<(int Vehicle, Estimate Value)> members, double floor)
     {
         var pooled = PooledLocation.Fit([.. members.Select(m => m.Value)], floor);
-        var vehicles = members.Select(m => m.Vehicle).Distinct().Count();
+        var vehicles = Vehicles(members);
         return pooled with { Centre = pooled.Centre with { StandardError = pooled.Centre.StandardError * Math.Sqrt((double)members.Count / vehicles) } };
+    }
+
+    /// <summary>Vehicles among members that stand vehicle by vehicle.</summary>
+    private static int Vehicles(List<(int Vehicle, Estimate)> members)
+    {
+        var count = 0;
+        for (var i = 0; i < members.Count; i++)
+            if (i == 0 || members[i].Vehicle != members[i - 1].Vehicle) count++;
+        return count;
     }
 
     private static PooledLocation Log(PooledLocation linear)

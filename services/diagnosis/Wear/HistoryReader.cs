@@ -29,15 +29,29 @@ internal sealed class HistoryReader
     private readonly Position[] _positions;
     private readonly NormalWear[] _normal;
     private readonly Estimate[] _km;
-    private readonly Dictionary<Position, int> _index = [];
-    private readonly TreadShape?[,] _written;
-    private readonly Dictionary<Position, TyreReadings>[] _readings;
+    private readonly PositionIndex _index;
+    // By survey and position, see Slot.
+    private readonly TreadShape?[] _written;
+    private readonly TyreReadings?[] _readings;
     private readonly Explanation[] _explanation;
     private readonly double[] _weight;
     private readonly IReadOnlyList<WeighedExplanation>[] _weighed;
-    private readonly Dictionary<(int Survey, Position Position), double> _misread = [];
+    private readonly Dictionary<(int Survey, int Position), double> _misread = [];
     private readonly List<WeighedExplanation>[] _odd;
+    /// <summary>Recorded beginnings whose tyre the readings do not bear out.</summary>
+    private readonly HashSet<(int Position, int Survey)> _notThatTyre = [];
     private readonly List<(Position Position, int Survey, double Probability)> _inferredCuts = [];
+    private readonly Dictionary<int, ExplanationSet> _sets = [];
+    // Restated whenever an explanation, a weight or a beginning changes: evidence of each fitting, and place of each survey in it.
+    private readonly FittingEvidence[][] _evidence;
+    private readonly int[] _place;
+    private readonly TreadShape?[] _seen;
+    private readonly TyreExpectation[] _expected;
+    private int _version;
+    private readonly int[] _weighedAt;
+
+    private static readonly WeighedExplanation[] s_asWritten = [new(Explanation.AsWritten, 1)];
+    private static readonly List<WeighedExplanation> s_nothingOdd = [];
 
     public List<InferredFitting> Inferred { get; } = [];
 
@@ -45,57 +59,109 @@ internal sealed class HistoryReader
     {
         (_tread, _surveys, _cuts, _context) = (tread, surveys, cuts, context);
         _positions = [.. tread.Vehicle.Positions()];
-        for (var i = 0; i < _positions.Length; i++) _index[_positions[i]] = i;
-        _normal = [.. _positions.Select(p => context.Normal(tread.Vehicle, p))];
-        _km = [.. surveys.Select(s => axis.At(s.Survey.At))];
-        _written = new TreadShape?[surveys.Count, _positions.Length];
-        _readings = [.. surveys.Select(s => s.Survey.Tyres.Where(t => _index.ContainsKey(t.Position)).GroupBy(t => t.Position).ToDictionary(g => g.Key, g => g.First()))];
-        _explanation = [.. surveys.Select(_ => Explanation.AsWritten)];
-        _weight = [.. surveys.Select(_ => 1.0)];
-        _weighed = [.. surveys.Select(_ => (IReadOnlyList<WeighedExplanation>)[new WeighedExplanation(Explanation.AsWritten, 1)])];
-        _odd = [.. surveys.Select(_ => new List<WeighedExplanation>())];
+        _index = new PositionIndex(_positions);
+        var (n, places) = (surveys.Count, _positions.Length);
+        _normal = new NormalWear[places];
+        for (var p = 0; p < places; p++) _normal[p] = context.Normal(tread.Vehicle, _positions[p]);
+        (_km, _explanation, _weight, _weighed, _odd, _weighedAt) = (new Estimate[n], new Explanation[n], new double[n], new IReadOnlyList<WeighedExplanation>[n], new List<WeighedExplanation>[n], new int[n]);
+        (_written, _readings, _place) = (new TreadShape?[n * places], new TyreReadings?[n * places], new int[n * places]);
+        (_evidence, _seen, _expected) = (new FittingEvidence[places][], new TreadShape?[places], new TyreExpectation[places]);
+        for (var s = 0; s < n; s++)
+        {
+            (_km[s], _explanation[s], _weight[s], _weighed[s], _odd[s], _weighedAt[s]) = (axis.At(surveys[s].Survey.At), Explanation.AsWritten, 1, s_asWritten, s_nothingOdd, -1);
+            var tyres = surveys[s].Survey.Tyres;
+            for (var i = 0; i < tyres.Count; i++)
+                if (_index[tyres[i].Position] is >= 0 and var p) _readings[Slot(s, p)] ??= tyres[i];
+        }
         Shapes();
+        Restate();
     }
+
+    private int Slot(int survey, int position) => survey * _positions.Length + position;
 
     private void Shapes()
     {
+        var biases = new double[_surveys.Count];
+        for (var s = 0; s < biases.Length; s++) biases[s] = _context.BiasMm(_surveys[s].Survey);
+        List<int> within = [];
+        List<TyreReadings> readings = [];
+        List<double> resolutions = [];
         for (var p = 0; p < _positions.Length; p++)
         {
-            for (var c = 0; c < _cuts.At(_positions[p]).Count; c++)
+            for (var c = 0; c < _cuts.At(p).Count; c++)
             {
-                var within = Enumerable.Range(0, _surveys.Count).Where(s => _cuts.Of(_positions[p], s) == c && _readings[s].ContainsKey(_positions[p])).ToList();
-                var grooves = within.SelectMany(s => _readings[s][_positions[p]].Depths).Select(d => d.Groove).DefaultIfEmpty(0).Max();
-                var mistyped = GrooveOutliers.Find([.. within.Select(s => (s, _readings[s][_positions[p]], _surveys[s].Survey.ResolutionMm))], _context.RepeatSdMm);
-                foreach (var s in within)
+                within.Clear();
+                readings.Clear();
+                resolutions.Clear();
+                var grooves = 0;
+                for (var s = 0; s < _surveys.Count; s++)
                 {
+                    if (_readings[Slot(s, p)] is not { } tyre || _cuts.Of(p, s) != c) continue;
+                    within.Add(s);
+                    readings.Add(tyre);
+                    resolutions.Add(_surveys[s].Survey.ResolutionMm);
+                    for (var j = 0; j < tyre.Depths.Count; j++) grooves = Math.Max(grooves, tyre.Depths[j].Groove);
+                }
+                var mistyped = GrooveOutliers.Find(readings, resolutions, _context.RepeatSdMm);
+                for (var i = 0; i < within.Count; i++)
+                {
+                    var s = within[i];
                     int? without = null;
-                    if (mistyped.TryGetValue(s, out var odd))
+                    if (mistyped is not null && mistyped.TryGetValue(i, out var odd))
                     {
                         without = odd.Groove;
-                        _odd[s].Add(new(new(ExplanationKind.GrooveMistyped, Position: _positions[p], Groove: odd.Groove), odd.Probability));
+                        Odd(s).Add(new(new(ExplanationKind.GrooveMistyped, Position: _positions[p], Groove: odd.Groove), odd.Probability));
                     }
-                    var shape = TreadShape.Of(_readings[s][_positions[p]], _surveys[s].Survey.ResolutionMm, _context.RepeatSdMm, null, grooves, without);
-                    _written[s, p] = shape is null ? null : shape with { MeanDepthMm = shape.MeanDepthMm with { Value = shape.MeanDepthMm.Value - _context.BiasMm(_surveys[s].Survey) } };
+                    var shape = TreadShape.Of(readings[i], resolutions[i], _context.RepeatSdMm, null, grooves, without);
+                    _written[Slot(s, p)] = shape is null || biases[s] == 0 ? shape : shape with { MeanDepthMm = shape.MeanDepthMm with { Value = shape.MeanDepthMm.Value - biases[s] } };
                 }
             }
         }
     }
+
+    private List<WeighedExplanation> Odd(int survey) => ReferenceEquals(_odd[survey], s_nothingOdd) ? _odd[survey] = [] : _odd[survey];
 
     /// <summary>Shape at a position under the survey's present explanation.</summary>
     private TreadShape? Shape(int survey, int position)
     {
         var e = _explanation[survey];
         if (e.Kind == ExplanationKind.OtherVehicle) return null;
-        if (e.Kind == ExplanationKind.AsWritten) return _written[survey, position];
-        var written = _index.TryGetValue(e.Belongs(_positions[position]), out var w) ? _written[survey, w] : null;
-        return written is null ? null : written.As(_positions[position], e.Factor);
+        if (e.Kind == ExplanationKind.AsWritten) return _written[Slot(survey, position)];
+        return _index[e.Belongs(_positions[position])] is >= 0 and var w ? _written[Slot(survey, w)]?.As(_positions[position], e.Factor) : null;
     }
 
-    private TyreReadings? Readings(int survey, Position position)
+    private TyreReadings? Readings(int survey, int position)
     {
         var e = _explanation[survey];
-        if (e.Kind == ExplanationKind.OtherVehicle || !_readings[survey].TryGetValue(e.Belongs(position), out var r)) return null;
-        return e.Kind == ExplanationKind.AsWritten ? r : r with { Position = position, Depths = [.. r.Depths.Select(d => d with { DepthMm = d.DepthMm * e.Factor })] };
+        if (e.Kind == ExplanationKind.AsWritten) return _readings[Slot(survey, position)];
+        if (e.Kind == ExplanationKind.OtherVehicle || _index[e.Belongs(_positions[position])] is not (>= 0 and var w) || _readings[Slot(survey, w)] is not { } r) return null;
+        return r with { Position = _positions[position], Depths = [.. r.Depths.Select(d => d with { DepthMm = d.DepthMm * e.Factor })] };
+    }
+
+    /// <summary>Brings points and evidence in line with the present explanations, weights and beginnings.</summary>
+    private void Restate()
+    {
+        _version++;
+        var wander = Square(WanderSdMm);
+        var technician = Square(_context.TechnicianSdMm);
+        for (var p = 0; p < _positions.Length; p++)
+        {
+            var cuts = _cuts.At(p);
+            _evidence[p] = new FittingEvidence[cuts.Count];
+            for (var f = 0; f < cuts.Count; f++)
+            {
+                var end = f + 1 < cuts.Count ? cuts[f + 1].Survey : _surveys.Count;
+                var points = new List<FittingPoint>(Math.Max(0, end - cuts[f].Survey) + 1);
+                if (Start(p, f) is { } start) points.Add(start);
+                for (var s = cuts[f].Survey; s < end; s++)
+                {
+                    var point = Point(s, p);
+                    _place[Slot(s, p)] = point is null ? -1 : points.Count;
+                    if (point is not null) points.Add(point);
+                }
+                _evidence[p][f] = new(points, Prior(p, f), wander, technician);
+            }
+        }
     }
 
     /// <summary>
@@ -108,15 +174,16 @@ internal sealed class HistoryReader
         {
             var surveys = Climb(_surveys.Count, Survey);
             MovedForGood();
+            ChangedForGood();
             if (!Climb(_positions.Length, Tyre) && !surveys) break;
         }
         Settle();
-        new InferredEvents(_tread, _surveys, _positions, (s, p) => Shape(s, _index[p]), (a, b, p) => _normal[_index[p]].RateMmPer1000Km / 1000 * (_km[b].Value - _km[a].Value)).Name(_inferredCuts, Inferred);
+        if (_inferredCuts.Count > 0) new InferredEvents(_tread, _surveys, _positions, (s, p) => Shape(s, _index[p]), (a, b, p) => _normal[_index[p]].RateMmPer1000Km / 1000 * (_km[b].Value - _km[a].Value)).Name(_inferredCuts, Inferred);
     }
 
     private delegate void Proposal(int index, ref (double Gain, Action? Apply) best);
 
-    private static bool Climb(int count, Proposal propose)
+    private bool Climb(int count, Proposal propose)
     {
         for (var step = 0; step <= 2 * count; step++)
         {
@@ -124,6 +191,7 @@ internal sealed class HistoryReader
             for (var i = 0; i < count; i++) propose(i, ref best);
             if (best.Apply is null) return step > 0;
             best.Apply();
+            Restate();
         }
         return true;
     }
@@ -132,6 +200,7 @@ internal sealed class HistoryReader
     private void MovedForGood()
     {
         var last = _surveys.Count - 1;
+        if (last < 1 || _explanation[last].Kind == ExplanationKind.AsWritten) return;
         var first = last;
         while (first > 0 && _explanation[first - 1] == _explanation[last]) first--;
         if (first == 0 || first == last || _explanation[last].Kind is not (ExplanationKind.SidesSwapped or ExplanationKind.AxleSidesSwapped or ExplanationKind.AxlesSwapped)) return;
@@ -142,78 +211,78 @@ internal sealed class HistoryReader
             _cuts.Add(p, new FittingCuts.Cut(first, null, null));
             _inferredCuts.Add((p, first, _weighed[first].FirstOrDefault(w => w.Explanation == moved)?.Weight ?? 0.5));
         }
+        Restate();
+    }
+
+    /// <summary>Two walks or more in a row that look like another vehicle's are this one's with other tyres on; which were changed is left to the tyres.</summary>
+    private void ChangedForGood()
+    {
+        for (var s = 1; s < _surveys.Count; s++)
+        {
+            if (_explanation[s].Kind != ExplanationKind.OtherVehicle || _explanation[s - 1].Kind != ExplanationKind.OtherVehicle) continue;
+            for (var first = s - 1; s < _surveys.Count && _explanation[s].Kind == ExplanationKind.OtherVehicle; s++)
+                for (; first <= s; first++) _explanation[first] = Explanation.AsWritten;
+            Restate();
+        }
     }
 
     private void Survey(int s, ref (double Gain, Action? Apply) best)
     {
-        _weighed[s] = Weigh(s);
-        var now = _weighed[s].FirstOrDefault(w => w.Explanation == _explanation[s])?.Weight ?? 0;
-        var top = _weighed[s].Where(w => w.Explanation.Kind != ExplanationKind.ComparedSurveyWrong).MaxBy(w => w.Weight)!;
-        if (top.Explanation == _explanation[s]) return;
+        Weigh(s);
+        var weighed = _weighed[s];
+        WeighedExplanation? top = null;
+        for (var i = 0; i < weighed.Count; i++)
+            if (weighed[i].Explanation.Kind != ExplanationKind.ComparedSurveyWrong && (top is null || weighed[i].Weight > top.Weight)) top = weighed[i];
+        if (top!.Explanation == _explanation[s]) return;
+        var now = weighed.FirstOrDefault(w => w.Explanation == _explanation[s])?.Weight ?? 0;
         var gain = Math.Log(top.Weight / Math.Max(now, 1e-300));
         // Of two surveys that accuse each other the later is asked first.
         if (gain > best.Gain || (gain > best.Gain - 1e-6 && best.Apply is not null)) best = (gain, () => _explanation[s] = top.Explanation);
     }
 
-    private IReadOnlyList<WeighedExplanation> Weigh(int s)
+    /// <summary>Weighs the explanations of a survey, unless nothing has changed since it last was.</summary>
+    private void Weigh(int s)
     {
-        var written = new List<TreadShape>();
-        var expected = new Dictionary<Position, TyreExpectation>();
+        if (_weighedAt[s] == _version) return;
+        (_weighedAt[s], _weighed[s]) = (_version, s_asWritten);
+        int axles = 0, behind = 0;
         for (var p = 0; p < _positions.Length; p++)
         {
-            if (_written[s, p] is { } shape && !_misread.ContainsKey((s, _positions[p]))) written.Add(shape);
-            expected[_positions[p]] = Expected(s, p);
+            _seen[p] = _misread.Count > 0 && _misread.ContainsKey((s, p)) ? null : _written[Slot(s, p)];
+            if (_seen[p] is not null) axles |= 1 << _positions[p].Axle;
+            _expected[p] = Expected(s, p);
+            behind = Math.Max(behind, _expected[p].Surveys);
         }
-        return written.Count == 0 || expected.Values.All(e => e.Surveys == 0)
-            ? [new WeighedExplanation(Explanation.AsWritten, 1)]
-            : SurveyExplanation.Weigh(_tread.Vehicle, written, expected, _context.TechnicianSdMm);
+        if (axles == 0 || behind == 0) return;
+        if (!_sets.TryGetValue(axles, out var set))
+            _sets[axles] = set = ExplanationSet.Of(_tread.Vehicle, _positions, [.. Enumerable.Range(1, Position.MaxAxle).Where(a => (axles & (1 << a)) != 0)]);
+        _weighed[s] = SurveyExplanation.Weigh(set, _seen, _expected, _context.TechnicianSdMm);
     }
 
     /// <summary>What the other surveys of the same fitting expect at a survey.</summary>
     private TyreExpectation Expected(int s, int p)
     {
-        var fitting = _cuts.Of(_positions[p], s);
-        var (mean, edge, shoulder) = Beliefs(p, fitting);
-        var at = _km[s].Value;
-        var surveys = 0;
-        if (Start(p, fitting) is { } start)
-        {
-            Take(ref mean, ref edge, ref shoulder, start, at, 0);
-            surveys = 2; // A recorded start is not itself in doubt.
-        }
-        for (var other = 0; other < _surveys.Count; other++)
-        {
-            if (other == s || _cuts.Of(_positions[p], other) != fitting || Point(other, p) is not { } point) continue;
-            Take(ref mean, ref edge, ref shoulder, point, at, 0);
-            surveys++;
-        }
-        return new(mean.Intercept, Wander(edge.Intercept), Wander(shoulder.Intercept), surveys);
+        var evidence = _evidence[p][_cuts.Of(p, s)];
+        var own = _place[Slot(s, p)];
+        var (mean, edge, shoulder) = evidence.Expected(_km[s].Value, own);
+        // A recorded start is not itself in doubt: it counts for two.
+        return new(mean, Wander(edge), Wander(shoulder), evidence.Points.Count + (evidence.Started ? 1 : 0) - (own < 0 ? 0 : 1));
 
         static Estimate Wander(Estimate e) => new(e.Value, Math.Sqrt(e.StandardError * e.StandardError + WanderSdMm * WanderSdMm));
     }
 
-    private (LineBelief Mean, LineBelief Edge, LineBelief Shoulder) Beliefs(int p, int fitting)
+    private FittingPrior Prior(int p, int fitting)
     {
         var rate = _normal[p].RateMmPer1000Km / 1000;
-        var middle = _cuts.NewDepth(_positions[p], fitting) ?? WearPrior.For(_tread.Vehicle.Class, _normal[p].Role).NewDepthMm;
-        return (new(new(middle * 0.6, AnyDepthSdMm), new(-rate, rate)),
-            new(new(0, 0.7), new(rate * _normal[p].EdgePerMm.Value, rate * 0.5)),
-            new(new(0, 0.9), new(rate * _normal[p].ShoulderPerMm.Value, rate * 0.4)));
-    }
-
-    private double Take(ref LineBelief mean, ref LineBelief edge, ref LineBelief shoulder, FittingPoint point, double origin, double extraMeanVariance)
-    {
-        var x = point.Km - origin;
-        var wander = WanderSdMm * WanderSdMm + extraMeanVariance;
-        var log = mean.Take(x, point.Mean.Value, (Square(point.Mean.StandardError) + wander) / point.Weight);
-        if (point.Edge is { } e) log += edge.Take(x, e.Value, (Square(e.StandardError) + WanderSdMm * WanderSdMm) / point.Weight);
-        if (point.Shoulder is { } h) log += shoulder.Take(x, h.Value, (Square(h.StandardError) + WanderSdMm * WanderSdMm) / point.Weight);
-        return log;
+        var middle = _cuts.NewDepth(p, fitting) ?? WearPrior.For(_tread.Vehicle.Class, _normal[p].Role).NewDepthMm;
+        return new(new(middle * 0.6, AnyDepthSdMm), new(-rate, rate),
+            new(0, 0.7), new(rate * _normal[p].EdgePerMm.Value, rate * 0.5),
+            new(0, 0.9), new(rate * _normal[p].ShoulderPerMm.Value, rate * 0.4));
     }
 
     private FittingPoint? Point(int s, int p)
     {
-        if (_weight[s] <= 0 || _misread.ContainsKey((s, _positions[p])) || Shape(s, p) is not { } shape) return null;
+        if (_weight[s] <= 0 || (_misread.Count > 0 && _misread.ContainsKey((s, p))) || Shape(s, p) is not { } shape) return null;
         var kmError = _normal[p].RateMmPer1000Km / 1000 * _km[s].StandardError;
         return new FittingPoint
         {
@@ -225,20 +294,21 @@ internal sealed class HistoryReader
             Shoulder = shape.ShoulderMm,
             Weight = _weight[s],
             Shape = shape,
+            Readings = Readings(s, p),
         };
     }
 
     /// <summary>Where a recorded fitting began: new depth and no wear yet, or for a tyre moved or turned what it last read.</summary>
     private FittingPoint? Start(int p, int fitting)
     {
-        var cut = _cuts.At(_positions[p])[fitting];
-        if (cut.Record is not { } r || cut.Km is not { } km) return null;
+        var cut = _cuts.At(p)[fitting];
+        if (cut.Record is not { } r || cut.Km is not { } km || _notThatTyre.Contains((p, cut.Survey))) return null;
         return r.Event switch
         {
-            FittingEvent.Fitted when _cuts.NewDepth(_positions[p], fitting) is { } n && r.RetreadCount >= 0 => NewTyre(p, fitting, n, km),
+            FittingEvent.Fitted when _cuts.NewDepth(p, fitting) is { } n && r.RetreadCount >= 0 => NewTyre(p, fitting, n, km),
             FittingEvent.Regrooved when r.NewDepthMm is { } n => new FittingPoint { Survey = -1, Km = km, Mean = new(n, 2 * TreadShape.NewDepthSdMm) },
             FittingEvent.TurnedOnRim when fitting > 0 => Carried(p, fitting - 1, p, km, flip: true),
-            FittingEvent.Moved when r.FromPosition is { } from && _index.TryGetValue(from, out var q) => Carried(q, LastBefore(q, cut.Survey), p, km, flip: false),
+            FittingEvent.Moved when r.FromPosition is { } from && _index[from] is >= 0 and var q => Carried(q, LastBefore(q, cut.Survey), p, km, flip: false),
             _ => null,
         };
     }
@@ -246,8 +316,8 @@ internal sealed class HistoryReader
     /// <summary>A fitting record gives the depth when new; the first survey shows whether the tyre was new.</summary>
     private FittingPoint? NewTyre(int p, int fitting, double newDepth, double km)
     {
-        var start = new FittingPoint { Survey = -1, Km = km, Mean = new(newDepth, TreadShape.NewDepthSdMm), Edge = new(0, 0.15), Shoulder = new(0, 0.3) };
-        for (var s = _cuts.At(_positions[p])[fitting].Survey; s < _surveys.Count && _cuts.Of(_positions[p], s) == fitting; s++)
+        var start = new FittingPoint { Survey = -1, New = true, Km = km, Mean = new(newDepth, TreadShape.NewDepthSdMm), Edge = new(0, 0.15), Shoulder = new(0, 0.3) };
+        for (var s = _cuts.At(p)[fitting].Survey; s < _surveys.Count && _cuts.Of(p, s) == fitting; s++)
         {
             if (Shape(s, p) is not { } first) continue;
             var rate = _normal[p].RateMmPer1000Km / 1000;
@@ -257,7 +327,7 @@ internal sealed class HistoryReader
         return start;
     }
 
-    private int LastBefore(int q, int survey) => survey == 0 ? -1 : _cuts.Of(_positions[q], survey - 1);
+    private int LastBefore(int q, int survey) => survey == 0 ? -1 : _cuts.Of(q, survey - 1);
 
     /// <summary>The tyre as last read where it came from; a change between outer and inner dual turns the wheel round, so only the mean is carried.</summary>
     private FittingPoint? Carried(int from, int fitting, int to, double km, bool flip)
@@ -265,7 +335,7 @@ internal sealed class HistoryReader
         if (fitting < 0) return null;
         for (var s = _surveys.Count - 1; s >= 0; s--)
         {
-            if (_km[s].Value > km + 1 || _cuts.Of(_positions[from], s) != fitting || Point(s, from) is not { } last) continue;
+            if (_km[s].Value > km + 1 || _cuts.Of(from, s) != fitting || Point(s, from) is not { } last) continue;
             var rate = _normal[from].RateMmPer1000Km / 1000;
             var since = Math.Max(0, km - last.Km);
             var sd = Math.Sqrt(Square(last.Mean.StandardError) + Square(rate * since * 0.5));
@@ -285,64 +355,61 @@ internal sealed class HistoryReader
     /// <summary>An unrecorded change of the tyre, or one misreading, where that explains its readings better.</summary>
     private void Tyre(int p, ref (double Gain, Action? Apply) best)
     {
-        for (var f = 0; f < _cuts.At(_positions[p]).Count; f++)
+        foreach (var evidence in _evidence[p])
         {
-            var points = new List<FittingPoint>();
-            var start = Start(p, f);
-            if (start is not null) points.Add(start);
-            for (var s = 0; s < _surveys.Count; s++)
-                if (_cuts.Of(_positions[p], s) == f && Point(s, p) is { } point) points.Add(point);
-            if (points.Count < 2) continue;
-            var whole = Evidence(p, f, points, 0, points.Count);
-            // All is well in nearly every fitting: the greatest gain possible is bounded by a perfect fit.
-            for (var k = 1; k < points.Count; k++)
+            var points = evidence.Points;
+            var n = points.Count;
+            if (n < 2) continue;
+            var whole = evidence.Of(0, n);
+            for (var k = 1; k < n; k++)
             {
                 if (points[k].Survey <= 0) continue;
-                var gain = Evidence(p, f, points, 0, k) + Evidence(p, f, points, k, points.Count) - whole + Math.Log(ChangePrior);
-                if (gain <= best.Gain) continue;
-                var (at, probability) = (points[k].Survey, 1 / (1 + Math.Exp(-gain)));
-                best = (gain, () =>
-                {
-                    _cuts.Add(_positions[p], new FittingCuts.Cut(at, null, null));
-                    _inferredCuts.Add((_positions[p], at, probability));
-                }
-                );
+                var gain = evidence.Of(0, k) + evidence.Of(k, n) - whole + s_logChange;
+                if (gain > best.Gain) best = (gain, Changed(p, points[k].Survey, gain));
             }
-            if (points.Count < 3) continue;
-            for (var k = start is null ? 0 : 1; k < points.Count; k++)
+            // The last survey cannot be told from a change: it waits for the next.
+            for (var k = evidence.Started ? 1 : 0; n > 2 && k < n - 1; k++)
             {
-                var rest = points.Where((_, i) => i != k).ToList();
-                var gain = Evidence(p, f, rest, 0, rest.Count) + Evidence(p, f, points, k, k + 1) - whole + Math.Log(MisreadPrior);
-                if (gain <= best.Gain || k == points.Count - 1) continue;
-                var (at, probability) = (points[k].Survey, 1 / (1 + Math.Exp(-gain)));
-                best = (gain, () => _misread[(at, _positions[p])] = probability);
+                var gain = evidence.Without(k) + evidence.Of(k, k + 1) - whole + s_logMisread;
+                if (gain > best.Gain) best = (gain, Misread(p, points[k].Survey, gain));
             }
         }
     }
 
-    private double Evidence(int p, int fitting, List<FittingPoint> points, int from, int to)
+    private static readonly double s_logChange = Math.Log(ChangePrior), s_logMisread = Math.Log(MisreadPrior);
+
+    private static double Probability(double gain) => 1 / (1 + Math.Exp(-gain));
+
+    private Action Changed(int p, int survey, double gain) => () =>
     {
-        var (mean, edge, shoulder) = Beliefs(p, fitting);
-        double log = 0;
-        var technician = Square(_context.TechnicianSdMm);
-        for (var i = from; i < to; i++) log += Take(ref mean, ref edge, ref shoulder, points[i], points[from].Km, technician);
-        return log;
-    }
+        // Where a fitting was recorded it stands, but the tyre is not the one the record tells of: it starts at nothing known.
+        if (_cuts.At(p)[_cuts.Of(p, survey)] is { Record: not null } cut && cut.Survey == survey) _notThatTyre.Add((p, survey));
+        else _cuts.Add(_positions[p], new FittingCuts.Cut(survey, null, null));
+        _inferredCuts.Add((_positions[p], survey, Probability(gain)));
+    };
+
+    private Action Misread(int p, int survey, double gain) => () => _misread[(survey, p)] = Probability(gain);
 
     /// <summary>Acts only on what is clear; a survey in doubt stays as written and counts for less.</summary>
     private void Settle()
     {
-        for (var s = 0; s < _surveys.Count; s++) _weighed[s] = Weigh(s);
+        for (var s = 0; s < _surveys.Count; s++) Weigh(s);
+        var changed = false;
         for (var s = 0; s < _surveys.Count; s++)
         {
             // Whether one axle or all were exchanged cannot show where the sides of the other axle are alike, nor does it matter there.
+            if (_weighed[s][0].Weight >= SurveyExplanation.Clear && _weighed[s][0].Explanation == _explanation[s]) continue;
             var used = _weighed[s].Where(w => w.Explanation == _explanation[s] || (SidesExchanged(w.Explanation) && SidesExchanged(_explanation[s]))).Sum(w => w.Weight);
             if (used >= SurveyExplanation.Clear) continue;
+            changed = true;
+            // Readings that more likely are another vehicle's would only spoil the lines of this one.
+            if (_explanation[s].Kind == ExplanationKind.OtherVehicle && used >= 0.5) continue;
             _explanation[s] = Explanation.AsWritten;
             _weight[s] = Math.Max(0.05, _weighed[s].FirstOrDefault(w => w.Explanation.Kind == ExplanationKind.AsWritten)?.Weight ?? 0);
         }
-        foreach (var ((s, position), probability) in _misread.OrderBy(m => m.Key.Survey).ThenBy(m => m.Key.Position))
-            _odd[s].Add(new(new(ExplanationKind.TyreMisread, Position: position), probability));
+        foreach (var ((s, p), probability) in _misread.OrderBy(m => m.Key.Survey).ThenBy(m => _positions[m.Key.Position]))
+            Odd(s).Add(new(new(ExplanationKind.TyreMisread, Position: _positions[p]), probability));
+        if (changed) Restate();
     }
 
     private static bool SidesExchanged(Explanation e) => e.Kind is ExplanationKind.SidesSwapped or ExplanationKind.AxleSidesSwapped;
@@ -364,14 +431,12 @@ internal sealed class HistoryReader
         var list = new List<Fitting>();
         for (var p = 0; p < _positions.Length; p++)
         {
-            var cuts = _cuts.At(_positions[p]);
+            var cuts = _cuts.At(p);
             for (var f = 0; f < cuts.Count; f++)
             {
-                var points = new List<FittingPoint>();
-                for (var s = cuts[f].Survey; s < (f + 1 < cuts.Count ? cuts[f + 1].Survey : _surveys.Count); s++)
-                    if (Point(s, p) is { } point) points.Add(point with { Readings = Readings(s, _positions[p]) });
-                var identity = _cuts.Identity(_positions[p], f);
-                if (identity?.Event == FittingEvent.Removed && points.Count == 0) identity = null;
+                var evidence = _evidence[p][f];
+                var identity = _cuts.Identity(p, f);
+                if (identity?.Event == FittingEvent.Removed && evidence.Points.Count == (evidence.Started ? 1 : 0)) identity = null;
                 list.Add(new Fitting
                 {
                     VehicleId = _tread.Vehicle.VehicleId,
@@ -380,10 +445,10 @@ internal sealed class HistoryReader
                     Class = _tread.Vehicle.Class,
                     TyreId = identity?.TyreId,
                     Pattern = identity?.Pattern ?? _cuts.Tyre(identity?.TyreId)?.Pattern,
-                    NewDepthMm = _cuts.NewDepth(_positions[p], f),
+                    NewDepthMm = _cuts.NewDepth(p, f),
                     Winter = identity?.Winter ?? false,
-                    Start = Start(p, f),
-                    Points = points,
+                    Start = evidence.Started ? evidence.Points[0] : null,
+                    Points = evidence.Started ? [.. evidence.Points.Skip(1)] : evidence.Points,
                     Current = f == cuts.Count - 1,
                 });
             }

@@ -1,3 +1,4 @@
+using System.Runtime.CompilerServices;
 using MathNet.Numerics.LinearAlgebra;
 using WearWatch.Diagnosis.Statistics;
 using WearWatch.Diagnosis.Tread;
@@ -15,110 +16,223 @@ public sealed record ReaderBias(string Reader, Estimate BiasMm, double AgainstOt
 /// Crossed random effects of technicians and gauges on the depths of the whole fleet, against each fitting's own line
 /// (intercept free, rate shrunk to the fleet's). Only differences between readers can show; what all share stays in the depths.
 /// </summary>
-/// <remarks>Ridge form of the mixed model: N. M. Laird and J. H. Ware, Biometrics 38 (1982) 963.</remarks>
-internal static class ReaderBiases
+/// <remarks>
+/// Ridge form of the mixed model: N. M. Laird and J. H. Ware, Biometrics 38 (1982) 963. The covariance of a fitting is a diagonal
+/// plus its level and its rate, so its inverse is closed (Woodbury) and a fitting costs what it has readings and readers.
+/// </remarks>
+internal sealed class ReaderBiases
 {
-    /// <summary>One reading of a fitting's mean depth.</summary>
-    public readonly record struct Reading(double Km, double DepthMm, double Variance, int Technician, int Gauge);
-
     /// <summary>Variance of a fitting's level about the mean of its own readings, mm²: as good as free, or the fleet's depths would feign a bias common to all.</summary>
     private const double FreeVariance = 1e4;
 
+    private const int Passes = 3;
+
+    /// <summary>Standard deviations beyond which a reading is pulled in; wide, so that readers' biases themselves are not.</summary>
+    private const double HoldSds = 2.5;
+
+    private readonly FleetTyre[][] _blocks;
+    private readonly Func<FleetTyre, Estimate> _rateMmPer1000Km;
+    private readonly double _scale;
+    private readonly int _technicians, _size;
+
+    private ReaderBiases(FleetTyre[][] blocks, Func<FleetTyre, Estimate> rateMmPer1000Km, double meanScale, int technicians, int size) =>
+        (_blocks, _rateMmPer1000Km, _scale, _technicians, _size) = (blocks, rateMmPer1000Km, meanScale * meanScale, technicians, size);
+
+    /// <param name="blocks">The fleet's tyres in a fixed partition, so that the sums do not depend on who adds them up.</param>
+    /// <param name="rateMmPer1000Km">What the fleet expects of a tyre's rate.</param>
+    /// <param name="meanScale">Scale of the errors of the means.</param>
+    /// <param name="technicians">Names by number.</param>
+    /// <param name="gauges">Names by number.</param>
     public static (ReaderBias[] Technicians, ReaderBias[] Gauges) Fit(
-        IReadOnlyList<(IReadOnlyList<Reading> Readings, Estimate RateMmPerKm)> fittings, IReadOnlyList<string> technicians, IReadOnlyList<string> gauges)
+        FleetTyre[][] blocks, Func<FleetTyre, Estimate> rateMmPer1000Km, double meanScale, IReadOnlyList<string> technicians, IReadOnlyList<string> gauges)
     {
         var size = technicians.Count + gauges.Count;
         if (size == 0) return ([], []);
-        var counts = new int[size];
-        var information = Matrix<double>.Build.Dense(size, size);
-        var beta = Vector<double>.Build.Dense(size);
-        Matrix<double> inverse = Matrix<double>.Build.Dense(size, size);
-        for (var pass = 0; pass < 3; pass++)
+        var work = new ReaderBiases(blocks, rateMmPer1000Km, meanScale, technicians.Count, size);
+        var (information, counts) = work.Information();
+        var factor = Matrix<double>.Build.DenseOfColumnMajor(size, size, information).Cholesky();
+        var beta = new double[size];
+        for (var pass = 0; pass < Passes; pass++) beta = factor.Solve(Vector<double>.Build.Dense(work.Right(beta, robust: pass > 0))).ToArray();
+        var inverse = factor.Solve(Matrix<double>.Build.DenseIdentity(size));
+        return (Named(technicians, 0), Named(gauges, technicians.Count));
+
+        ReaderBias[] Named(IReadOnlyList<string> names, int from)
         {
-            information.Clear();
-            Array.Clear(counts);
-            var right = Vector<double>.Build.Dense(size);
-            for (var i = 0; i < size; i++) information[i, i] = 1 / Math.Pow(i < technicians.Count ? GaugeNoise.TechnicianSdMm : GaugeNoise.GaugeSdMm, 2);
-            foreach (var (readings, rate) in fittings) Add(readings, rate, technicians.Count, beta, pass > 0, information, right, counts);
-            var factor = information.Cholesky();
-            beta = factor.Solve(right);
-            if (pass == 2) inverse = factor.Solve(Matrix<double>.Build.DenseIdentity(size));
+            var against = AgainstOthers(inverse, from, names.Count);
+            return [.. names.Select((name, i) => new ReaderBias(name, new(beta[from + i], Math.Sqrt(inverse[from + i, from + i])), against[i], counts[from + i]))];
         }
-        ReaderBias Of(string name, int i, int from, int count) => new(name, new(beta[i], Math.Sqrt(inverse[i, i])), AgainstOthers(inverse, i, from, count), counts[i]);
-        return ([.. technicians.Select((t, i) => Of(t, i, 0, technicians.Count))], [.. gauges.Select((g, i) => Of(g, technicians.Count + i, technicians.Count, gauges.Count))]);
     }
 
-    private static double AgainstOthers(Matrix<double> covariance, int i, int from, int count)
+    /// <summary>Standard error of each effect less the mean of its kind.</summary>
+    private static double[] AgainstOthers(Matrix<double> covariance, int from, int count)
     {
-        double row = 0, all = 0;
-        for (var j = from; j < from + count; j++)
-        {
-            row += covariance[i, j] / count;
-            for (var k = from; k < from + count; k++) all += covariance[j, k] / count / count;
-        }
-        return Math.Sqrt(Math.Max(0, covariance[i, i] - 2 * row + all));
+        var rows = new double[count];
+        for (var i = 0; i < count; i++)
+            for (var j = 0; j < count; j++) rows[i] += covariance[from + i, from + j] / count;
+        var all = rows.Sum() / Math.Max(1, count);
+        return [.. rows.Select((row, i) => Math.Sqrt(Math.Max(0, covariance[from + i, from + i] - 2 * row + all)))];
     }
 
-    private static void Add(IReadOnlyList<Reading> readings, Estimate rate, int offset, Vector<double> beta, bool robust, Matrix<double> information, Vector<double> right, int[] counts)
+    /// <summary>Precision matrix of the effects, prior and readings, and readings by effect.</summary>
+    private (double[] Information, int[] Counts) Information()
     {
-        var n = readings.Count;
-        if (n < 2) return;
-        var x0 = readings.Average(r => r.Km);
-        var covariance = new double[n, n];
-        var columns = new SortedDictionary<int, double[]>();
-        var y = new double[n];
-        for (var i = 0; i < n; i++)
+        var parts = new (double[] Sum, int[] Counts)[_blocks.Length];
+        Parallel.For(0, _blocks.Length, k =>
         {
-            var r = readings[i];
-            y[i] = r.DepthMm + rate.Value * (r.Km - x0);
-            foreach (var c in Columns(r, offset))
-            {
-                if (!columns.TryGetValue(c, out var column)) columns[c] = column = new double[n];
-                column[i] = 1;
-                counts[c]++;
-            }
-        }
-        if (robust) HoldIn(readings, offset, beta, y);
-        var level = y.Average();
-        for (var i = 0; i < n; i++) y[i] -= level;
-        for (var i = 0; i < n; i++)
+            parts[k] = (new double[_size * _size], new int[_size]);
+            var columns = new Columns(_size, _technicians);
+            foreach (var tyre in _blocks[k]) AddInformation(tyre, columns, parts[k].Sum, parts[k].Counts);
+        });
+        var (information, counts) = (new double[_size * _size], new int[_size]);
+        for (var i = 0; i < _size; i++) information[i * _size + i] = 1 / (i < _technicians ? GaugeNoise.TechnicianSdMm * GaugeNoise.TechnicianSdMm : GaugeNoise.GaugeSdMm * GaugeNoise.GaugeSdMm);
+        foreach (var (sum, count) in parts)
         {
-            for (var j = 0; j <= i; j++)
-                covariance[i, j] = FreeVariance + rate.StandardError * rate.StandardError * (readings[i].Km - x0) * (readings[j].Km - x0);
-            covariance[i, i] += readings[i].Variance;
+            for (var i = 0; i < sum.Length; i++) information[i] += sum[i];
+            for (var i = 0; i < _size; i++) counts[i] += count[i];
         }
-        SmallCholesky.Factor(covariance);
-        SmallCholesky.Whiten(covariance, y);
-        foreach (var (_, column) in columns) SmallCholesky.Whiten(covariance, column);
-        foreach (var (a, ca) in columns)
-        {
-            right[a] += Dot(ca, y);
-            foreach (var (b, cb) in columns) information[a, b] += Dot(ca, cb);
-        }
+        // Only one half was filled.
+        for (var i = 0; i < _size; i++)
+            for (var j = 0; j < i; j++) information[j * _size + i] = information[i * _size + j] += information[j * _size + i];
+        return (information, counts);
     }
 
-    /// <summary>Huber's pseudo-values: residuals from the fitting's median beyond 2 standard deviations are pulled in.</summary>
-    private static void HoldIn(IReadOnlyList<Reading> readings, int offset, Vector<double> beta, double[] y)
+    private double[] Right(double[] beta, bool robust)
     {
-        var rest = y.Select((v, i) => v - Columns(readings[i], offset).Sum(c => beta[c])).ToArray();
-        var middle = Medians.Median(rest);
-        for (var i = 0; i < y.Length; i++)
+        var parts = new double[_blocks.Length][];
+        Parallel.For(0, _blocks.Length, k =>
         {
-            var bound = 2.5 * Math.Sqrt(readings[i].Variance);
-            y[i] += Math.Clamp(rest[i] - middle, -bound, bound) - (rest[i] - middle);
-        }
+            parts[k] = new double[_size];
+            var columns = new Columns(_size, _technicians);
+            foreach (var tyre in _blocks[k]) AddRight(tyre, columns, beta, robust, parts[k]);
+        });
+        var right = new double[_size];
+        foreach (var part in parts)
+            for (var i = 0; i < _size; i++) right[i] += part[i];
+        return right;
     }
 
-    private static IEnumerable<int> Columns(Reading r, int offset)
-    {
-        if (r.Technician >= 0) yield return r.Technician;
-        if (r.Gauge >= 0) yield return offset + r.Gauge;
-    }
+    private double Precision(in LinePoint p) => p.MeanPrecision / _scale;
 
-    private static double Dot(double[] a, double[] b)
+    private static double Centre(FleetTyre tyre)
     {
         double sum = 0;
-        for (var i = 0; i < a.Length; i++) sum += a[i] * b[i];
-        return sum;
+        foreach (ref readonly var p in tyre.Points.AsSpan()) sum += p.X;
+        return sum / tyre.Points.Length;
+    }
+
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
+    private void AddInformation(FleetTyre tyre, Columns columns, double[] information, int[] counts)
+    {
+        if (tyre.Points.Length < 2) return;
+        var (x0, rate) = (Centre(tyre), _rateMmPer1000Km(tyre));
+        foreach (ref readonly var p in tyre.Points.AsSpan())
+        {
+            var w = Precision(p);
+            var (t, g) = columns.Add(p, w, w * (p.X - x0));
+            if (t >= 0) counts[t]++;
+            if (g >= 0) counts[g]++;
+            if (t >= 0 && g >= 0) information[t * _size + g] += w;
+        }
+        var (m11, m12, m22) = columns.Shared(rate.StandardError);
+        for (var i = 0; i < columns.Used.Count; i++)
+        {
+            var a = columns.Used[i];
+            var (pa, qa) = (m11 * columns.One[a] + m12 * columns.X[a], m12 * columns.One[a] + m22 * columns.X[a]);
+            information[a * _size + a] += columns.One[a] - pa * columns.One[a] - qa * columns.X[a];
+            for (var j = 0; j < i; j++)
+            {
+                var b = columns.Used[j];
+                information[Math.Min(a, b) * _size + Math.Max(a, b)] -= pa * columns.One[b] + qa * columns.X[b];
+            }
+        }
+        columns.Clear();
+    }
+
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
+    private void AddRight(FleetTyre tyre, Columns columns, double[] beta, bool robust, double[] right)
+    {
+        var points = tyre.Points;
+        var n = points.Length;
+        if (n < 2) return;
+        var (x0, rate) = (Centre(tyre), _rateMmPer1000Km(tyre));
+        Span<double> y = n <= 64 ? stackalloc double[n] : new double[n];
+        for (var i = 0; i < n; i++) y[i] = points[i].Mean.Value + rate.Value * (points[i].X - x0);
+        if (robust) HoldIn(points, beta, y);
+        double level = 0, one = 0, x = 0;
+        foreach (var v in y) level += v / n;
+        for (var i = 0; i < n; i++)
+        {
+            var w = Precision(points[i]);
+            var rest = y[i] - level;
+            var (t, g) = columns.Add(points[i], w, w * (points[i].X - x0));
+            if (t >= 0) right[t] += w * rest;
+            if (g >= 0) right[g] += w * rest;
+            one += w * rest;
+            x += w * rest * (points[i].X - x0);
+        }
+        var (m11, m12, m22) = columns.Shared(rate.StandardError);
+        foreach (var a in columns.Used) right[a] -= columns.One[a] * (m11 * one + m12 * x) + columns.X[a] * (m12 * one + m22 * x);
+        columns.Clear();
+    }
+
+    /// <summary>Huber's pseudo-values: residuals from the fitting's median beyond <see cref="HoldSds"/> are pulled in.</summary>
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
+    private void HoldIn(LinePoint[] points, double[] beta, Span<double> y)
+    {
+        var n = y.Length;
+        Span<double> rest = n <= 64 ? stackalloc double[n] : new double[n];
+        Span<double> sorted = n <= 64 ? stackalloc double[n] : new double[n];
+        for (var i = 0; i < n; i++)
+            rest[i] = y[i] - (points[i].Technician >= 0 ? beta[points[i].Technician] : 0) - (points[i].Gauge >= 0 ? beta[_technicians + points[i].Gauge] : 0);
+        rest.CopyTo(sorted);
+        var middle = Selection.Median(sorted);
+        for (var i = 0; i < n; i++)
+        {
+            var off = rest[i] - middle;
+            var bound = HoldSds * HoldSds / Precision(points[i]);
+            if (off * off > bound) y[i] += Math.Sign(off) * Math.Sqrt(bound) - off;
+        }
+    }
+
+    /// <summary>Sums of one fitting by effect: precision, and precision times distance from the middle.</summary>
+    private sealed class Columns(int size, int technicians)
+    {
+        private double _s, _sx, _sxx;
+
+        public double[] One { get; } = new double[size];
+        public double[] X { get; } = new double[size];
+        public List<int> Used { get; } = [];
+
+        public (int Technician, int Gauge) Add(in LinePoint p, double w, double wx)
+        {
+            _s += w;
+            _sx += wx;
+            _sxx += wx * wx / w;
+            return (Take(p.Technician, w, wx), p.Gauge < 0 ? -1 : Take(technicians + p.Gauge, w, wx));
+        }
+
+        private int Take(int column, double w, double wx)
+        {
+            if (column < 0) return -1;
+            if (One[column] == 0) Used.Add(column);
+            One[column] += w;
+            X[column] += wx;
+            return column;
+        }
+
+        /// <summary>(C⁻¹ + U'WU)⁻¹ of the level and the rate that all readings of the fitting share.</summary>
+        public (double M11, double M12, double M22) Shared(double rateSd)
+        {
+            var (a, b, d) = (1 / FreeVariance + _s, _sx, 1 / (rateSd * rateSd) + _sxx);
+            var determinant = a * d - b * b;
+            return (d / determinant, -b / determinant, a / determinant);
+        }
+
+        public void Clear()
+        {
+            foreach (var c in Used) One[c] = X[c] = 0;
+            Used.Clear();
+            (_s, _sx, _sxx) = (0, 0, 0);
+        }
     }
 }

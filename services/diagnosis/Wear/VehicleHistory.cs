@@ -15,9 +15,12 @@ internal sealed class VehicleHistory
     public required IReadOnlyList<SurveyJudgement> Judgements { get; init; }
     public required IReadOnlyList<InferredFitting> Inferred { get; init; }
 
+    /// <summary>The first moment that no longer belongs to a day's knowledge.</summary>
+    public static DateTimeOffset End(DateOnly asOf) => new(asOf.AddDays(1).ToDateTime(TimeOnly.MinValue), TimeSpan.Zero);
+
     public static VehicleHistory Of(VehicleTread tread, DateOnly asOf, HistoryContext context)
     {
-        var end = new DateTimeOffset(asOf.AddDays(1).ToDateTime(TimeOnly.MinValue), TimeSpan.Zero);
+        var end = End(asOf);
         var surveys = tread.Surveys.Where(s => s.Survey.At < end).OrderBy(s => s.Survey.At).ThenBy(s => s.SurveyId, StringComparer.Ordinal).ToList();
         var records = tread.Fittings.Where(f => f.At < end).OrderBy(f => f.At).ThenBy(f => f.Position).ThenBy(f => f.Event).ToList();
         var axis = DistanceAxis.Of(tread.Vehicle, [.. surveys.Select(s => s.Survey)]);

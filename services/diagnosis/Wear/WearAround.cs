@@ -47,19 +47,20 @@ internal sealed class WearAround
     {
         var position = fittings[0].Position;
         var normal = _fleet.For(_history.Tread.Vehicle, position);
-        var rate = normal.RateMmPer1000Km;
+        var (rate, noise) = (normal.RateMmPer1000Km, _fleet.Noise);
         var mean = new PlaceSlopes(_history.Surveys.Count, new(PlaceWander * rate, _memory), new(VehicleWander * rate, _memory));
         var edge = new PlaceSlopes(0, new(EdgeWander * rate, _memory), default(SlopeWander) with { Memory = 1 });
         foreach (var fitting in fittings)
         {
             if (fitting.Points.Count == 0) continue;
             var points = Since(fitting.LinePoints);
-            var lines = FittingLines.Readings(points, _fleet.Noise, s => _biases[s], rate);
-            var lost = lines.Mean.Select(r => (fitting.NewDepthMm ?? WearPrior.For(fitting.Class, fitting.Role).NewDepthMm) - r.Y).ToArray();
-            mean.Add([.. lines.Mean.Select((r, i) => r with { Y = RunningIn.SettledMm(lost[i]) })], [.. points.Select(p => p.Survey)], _breaks,
-                [.. lost.Select(l => RunningIn.ExcessSd * RunningIn.PerExcessMm(l))], _fleet.Noise.SlopeFactor(points.Count));
-            if (UnknownStart(fitting, normal) is { } start) lines = FittingLines.Readings(Since([start, .. fitting.Points]), _fleet.Noise, s => _biases[s], rate);
-            edge.Add(lines.Edge, [.. lines.Edge.Select(_ => -1)], _breaks, [.. lines.Edge.Select(_ => 0.0)], _fleet.Noise.SlopeFactor(lines.Edge.Count));
+            var newMm = fitting.NewDepthMm ?? WearPrior.For(fitting.Class, fitting.Role).NewDepthMm;
+            var depths = Readings(points, TreadFigure.Mean, rate);
+            mean.Add([.. depths.Select(r => r with { Y = noise.RunIn.SettledMm(newMm - r.Y, newMm) })], [.. points.Select(p => p.Survey)], _breaks,
+                [.. depths.Select(r => noise.RunIn.SettledSdMm(newMm - r.Y))], noise.SlopeFactor(points.Count));
+            if (UnknownStart(fitting, normal) is { } start) points = Since([start, .. fitting.Points]);
+            var edges = Readings(points, TreadFigure.Edge, rate);
+            edge.Add(edges, [.. edges.Select(_ => -1)], _breaks, [.. edges.Select(_ => 0.0)], noise.SlopeFactor(edges.Count));
         }
         return new PlaceHistory
         {
@@ -96,6 +97,17 @@ internal sealed class WearAround
             + (i == j ? WalkSdMm * WalkSdMm : 0)
             + (i == j || (_biases[i].Reader >= 0 && _biases[i].Reader == _biases[j].Reader) ? _biases[i].Bias.StandardError * _biases[j].Bias.StandardError : 0));
         return covariance.Inverse().ToRowMajorArray();
+    }
+
+    private List<LineReading> Readings(List<FittingPoint> points, TreadFigure figure, double rate)
+    {
+        var readings = new List<LineReading>(points.Count);
+        foreach (var p in points)
+        {
+            var (bias, reader) = p.Survey < 0 ? (new(0, 0), -1) : _biases[p.Survey];
+            if (FittingLines.Reading(LinePoint.Of(p, reader, -1), figure, _fleet.Noise, bias, rate) is { } reading) readings.Add(reading);
+        }
+        return readings;
     }
 
     private List<FittingPoint> Since(IReadOnlyList<FittingPoint> points) => [.. points.Where(p => p.Km >= _since)];

@@ -207,7 +207,7 @@ public static class ChangeDating
         return day => mean + slope * (day - time);
     }
 
-    private static IReadOnlyList<ChangeEvent> Happened(IReadOnlyList<ChangeEvent> events, DateTimeOffset from, DateTimeOffset to, DateTimeOffset likely) =>
+    internal static IReadOnlyList<ChangeEvent> Happened(IReadOnlyList<ChangeEvent> events, DateTimeOffset from, DateTimeOffset to, DateTimeOffset likely) =>
         [.. events.Where(e => e.At >= from.AddDays(-NearDays) && e.At <= to.AddDays(NearDays))
             .OrderBy(e => (e.At - likely).Duration()).ThenBy(e => e.At).ThenBy(e => e.Rests, StringComparer.Ordinal)];
 

@@ -22,18 +22,37 @@ public sealed class SteeringSeries
         _cells = fit.Cells.ToDictionary(c => c.Cell, StringComparer.Ordinal);
     }
 
+    /// <summary>Changes of one vehicle and where its series stand.</summary>
+    public VehicleChanges Read(RoadVehicle vehicle, IReadOnlyList<StraightRun> runs, IReadOnlyList<ChangeEvent> events)
+    {
+        var read = Of(vehicle, runs, events).Select(ChangeDating.Read).ToArray();
+        return new(vehicle.VehicleId, vehicle.Torque, ReadingZero(runs), [.. read.SelectMany(r => r.Changes).OrderBy(c => c.Likely).ThenBy(c => c.Quantity)], [.. read.Select(r => r.Now).OfType<RunningLevel>()]);
+    }
+
+    /// <summary>What runs that came after the fit raise, provisional.</summary>
+    /// <param name="vehicle">The same record that the fit was given.</param>
+    /// <param name="then">The vehicle at the fit.</param>
+    /// <param name="since">Runs since, in any order.</param>
+    /// <param name="events">What was recorded of it.</param>
+    /// <param name="kmPerWeek">Its use, above zero.</param>
+    public IReadOnlyList<DatedChange> Watch(RoadVehicle vehicle, VehicleChanges then, IReadOnlyList<StraightRun> since, IReadOnlyList<ChangeEvent> events, double kmPerWeek) =>
+        [.. Of(vehicle, since, events, then.ReadingZero)
+            .Select(s => then.Now.FirstOrDefault(n => n.Quantity == s.Quantity) is { } level ? RunningWatch.Watch(s, level, kmPerWeek) : null)
+            .OfType<DatedChange>()];
+
     /// <summary>The series that the vehicle's signals allow; none, one or two.</summary>
     /// <param name="vehicle">The same record that the fit was given.</param>
     /// <param name="runs">All of its runs, in any order.</param>
     /// <param name="events">What was recorded of it.</param>
-    public IReadOnlyList<ChangeSeries> Of(RoadVehicle vehicle, IReadOnlyList<StraightRun> runs, IReadOnlyList<ChangeEvent> events)
+    /// <param name="zero">Zero of its bank reading, from <see cref="ReadingZero"/> of a longer time; else these runs'.</param>
+    public IReadOnlyList<ChangeSeries> Of(RoadVehicle vehicle, IReadOnlyList<StraightRun> runs, IReadOnlyList<ChangeEvent> events, double? zero = null)
     {
         // Steady runs alone, as in the road fit; where hardly any are, driven ones carry the vehicle and count with their spread.
         var steady = runs.Where(r => r.Mode == RunMode.Coast).ToArray();
         var used = steady.Length >= RoadProblem.EnoughSteadyRuns ? steady : [.. runs.Where(r => r.Mode != RunMode.Brake)];
         var kind = vehicle.Torque == TorqueKind.TorsionBar ? TorqueKind.TorsionBar : TorqueKind.Total;
         if (_fit.Gains.FirstOrDefault(g => g.Class == vehicle.Class && g.Torque == kind) is not { } gain) return [];
-        var zero = ReadingZero(used);
+        zero ??= ReadingZero(used);
         var series = new List<ChangeSeries>();
         if (vehicle.TorqueUsable && gain.TorqueNmPerSine is { } torqueGain)
         {
@@ -59,7 +78,8 @@ public sealed class SteeringSeries
     }
 
     /// <summary>Zero of the vehicle's bank reading against the cells' banks; null where they seldom meet.</summary>
-    private double? ReadingZero(IReadOnlyList<StraightRun> runs)
+    /// <param name="runs">Of one vehicle.</param>
+    public double? ReadingZero(IReadOnlyList<StraightRun> runs)
     {
         var differences = runs.Where(r => r.BankReading is not null && r.RoadCell is not null && _cells.ContainsKey(r.RoadCell))
             .Select(r => r.BankReading!.Value.Value - (1 + SteeringEquations.RollGain) * _cells[r.RoadCell!].Bank.Value).ToArray();

@@ -73,7 +73,7 @@ internal sealed partial class Diagnosing(FactReader facts, FleetFitStore fits, D
         var day = vehicle.FactsThrough is { } through && DateOnly.FromDateTime(through.UtcDateTime) > fleet.AsOf && fit != 0 ? DateOnly.FromDateTime(through.UtcDateTime) : fleet.AsOf;
         var tread = VehicleFiguresOf.Tread(vehicle, settings);
         var wear = VehicleWear.Estimate(tread, fleet.Wear, day);
-        var changes = ChangeReading.Of(vehicle, tread, fleet, since, day);
+        var changes = VehicleChangesOf.Vehicle(vehicle, tread, fleet, since, day);
         var figures = VehicleFiguresOf.Figures(vehicle, settings, wear, fleet.Roads.Of(vehicle.Vehicle.VehicleId), day, changes);
         var verdict = CauseEstimate.Judge(figures, FaultPriors.Default);
         var inputs = MoneyInputs.For(vehicle.Vehicle, vehicle.Depot, [.. settings?.Prices.Select(p => p.Body) ?? []], [.. settings?.Settings.Select(s => s.Body) ?? []], day);

@@ -8,10 +8,10 @@ using WearWatch.Storage.Facts;
 namespace WearWatch.Analysis;
 
 /// <summary>Brings facts and runs into the form that the dating of changes takes.</summary>
-internal static class ChangeReading
+internal static class VehicleChangesOf
 {
     /// <summary>Steering changes of every vehicle with straight runs, on the roads of a fit.</summary>
-    public static IReadOnlyList<VehicleChanges> OfFleet(IReadOnlyList<VehicleFacts> fleet, ILookup<string, StraightRun> runs, IReadOnlyDictionary<string, TorqueKind> torque, RoadFit roads)
+    public static IReadOnlyList<VehicleChanges> Fleet(IReadOnlyList<VehicleFacts> fleet, ILookup<string, StraightRun> runs, IReadOnlyDictionary<string, TorqueKind> torque, RoadFit roads)
     {
         var series = new SteeringSeries(roads);
         return [.. fleet.Where(v => runs.Contains(v.Vehicle.VehicleId)).AsParallel().AsOrdered()
@@ -24,7 +24,7 @@ internal static class ChangeReading
     /// <param name="fleet">The fit it is judged on.</param>
     /// <param name="since">Runs that came after the fit.</param>
     /// <param name="day">As-of date.</param>
-    public static IReadOnlyList<DatedChange> Of(VehicleFacts vehicle, VehicleTread tread, FleetSnapshot fleet, IReadOnlyList<StraightRun> since, DateOnly day)
+    public static IReadOnlyList<DatedChange> Vehicle(VehicleFacts vehicle, VehicleTread tread, FleetSnapshot fleet, IReadOnlyList<StraightRun> since, DateOnly day)
     {
         var events = Events(vehicle);
         var then = fleet.Changes.FirstOrDefault(c => c.VehicleId == vehicle.Vehicle.VehicleId);

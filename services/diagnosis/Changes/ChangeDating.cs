@@ -50,12 +50,15 @@ public static class ChangeDating
 
     private const double MostCorrelation = 0.6;
 
+    /// <summary>Standard deviations at which a trip is not taken together with the others of its day.</summary>
+    private const double ApartSd = 3.5;
+
     /// <summary>
-    /// Price of a change in χ²: 2 ln n pays for the choice among n places (Yao, Stat. Probab. Lett. 6 (1988) 181), the constant for
+    /// Price of a change in χ²: 2 ln n pays for the choice among n days (Yao, Stat. Probab. Lett. 6 (1988) 181), the constant for
     /// what noise alone finds within that choice and for tails beyond the normal; the tests hold it to a false change in twenty
     /// vehicle-years and more.
     /// </summary>
-    public static double Penalty(int trips) => 2 * Math.Log(Math.Max(2, trips)) + 8;
+    public static double Penalty(int days) => 2 * Math.Log(Math.Max(2, days)) + 8;
 
     /// <returns>Changes in order of time; none with fewer than four trips.</returns>
     public static IReadOnlyList<DatedChange> Find(ChangeSeries series) => Read(series).Changes;
@@ -68,14 +71,13 @@ public static class ChangeDating
         var variance = series.TripSd * series.TripSd;
         var scale = OwnScatter(trips, variance);
         trips = DrawnIn(trips, variance * scale, scale);
-        var (cost, cut) = Cut(trips, variance, scale);
-        var correlated = Correlation(trips, cost, cut, variance, scale);
+        var (cost, segments) = Cut(trips, variance, scale);
+        var correlated = Correlation(trips, cost, segments, variance, scale);
         if (correlated > 0)
         {
             scale *= (1 + correlated) / (1 - correlated);
-            (cost, cut) = Cut(trips, variance, scale);
+            (cost, segments) = Cut(trips, variance, scale);
         }
-        var segments = cut.Segments;
         var changes = new List<DatedChange>();
         for (var k = 0; k < segments.Count; k++)
         {
@@ -85,12 +87,38 @@ public static class ChangeDating
         return (changes.OrderBy(c => c.Likely).ThenBy(c => c.Form).ToArray(), Now(series, trips, cost, segments[^1], scale));
     }
 
-    private static (SegmentCost, Segmentation) Cut(IReadOnlyList<Trip> trips, double tripVariance, double scale)
+    /// <summary>Costs of the trips, and the segments in trips; a change is sought between days, and dated among the trips afterwards.</summary>
+    private static (SegmentCost Cost, IReadOnlyList<Segment> Segments) Cut(IReadOnlyList<Trip> trips, double tripVariance, double scale)
     {
-        var penalty = Penalty(trips.Count);
-        double[] times = [.. trips.Select(t => Day(trips, t))], values = [.. trips.Select(t => t.Mean)];
-        var cost = new SegmentCost(times, values, [.. trips.Select(t => 1 / (scale * (t.OwnVariance + tripVariance)))], penalty, LeastSloped(times));
-        return (cost, Segmentation.Pelt(cost, penalty, LeastTrips));
+        double[] times = [.. trips.Select(t => Day(trips, t))], values = [.. trips.Select(t => t.Mean)], weights = [.. trips.Select(t => 1 / (scale * (t.OwnVariance + tripVariance)))];
+        var trip = new SegmentCost(times, values, weights);
+        var days = Days(trips, trip);
+        var penalty = Penalty(days.Count - 1);
+        var (t, y, w) = (new double[days.Count - 1], new double[days.Count - 1], new double[days.Count - 1]);
+        for (var d = 0; d < t.Length; d++)
+        {
+            var (mean, variance, time) = trip.Mean(days[d], days[d + 1]);
+            (t[d], y[d], w[d]) = (time, mean, 1 / variance);
+        }
+        var cut = Segmentation.Pelt(new SegmentCost(t, y, w, penalty, LeastSloped(t)), penalty, LeastTrips);
+        return (trip, [.. cut.Segments.Select(s => new Segment(days[s.From], days[s.To], s.Sloped))]);
+    }
+
+    /// <summary>
+    /// First trips of the days, and the end. Trips of a day are taken together, which loses nothing to a change between days, unless
+    /// one stands apart from those before it.
+    /// </summary>
+    private static List<int> Days(IReadOnlyList<Trip> trips, SegmentCost cost)
+    {
+        var starts = new List<int> { 0 };
+        for (var i = 1; i < trips.Count; i++)
+        {
+            var (before, error, _) = cost.Mean(starts[^1], i);
+            var (mean, variance, _) = cost.Mean(i, i + 1);
+            if (trips[i].From.UtcDateTime.Date != trips[i - 1].From.UtcDateTime.Date || Math.Abs(mean - before) > ApartSd * Math.Sqrt(error + variance)) starts.Add(i);
+        }
+        starts.Add(trips.Count);
+        return starts;
     }
 
     /// <summary>
@@ -113,10 +141,10 @@ public static class ChangeDating
     }
 
     /// <summary>First autocorrelation of the trips about their segments, drawn to zero by ten trips' worth: what wanders is not a change.</summary>
-    private static double Correlation(IReadOnlyList<Trip> trips, SegmentCost cost, Segmentation cut, double tripVariance, double scale)
+    private static double Correlation(IReadOnlyList<Trip> trips, SegmentCost cost, IReadOnlyList<Segment> segments, double tripVariance, double scale)
     {
         var (lagged, square, pairs) = (0.0, 0.0, 0);
-        foreach (var s in cut.Segments)
+        foreach (var s in segments)
         {
             var level = Level(cost, s);
             double? before = null;
@@ -129,7 +157,7 @@ public static class ChangeDating
             }
         }
         // A segment's own mean takes about 1/n off each lag (Kendall, Biometrika 41 (1954) 403).
-        var own = square > 0 ? lagged / square + cut.Segments.Count / (double)trips.Count : 0;
+        var own = square > 0 ? lagged / square + segments.Count / (double)trips.Count : 0;
         return Math.Clamp(own * pairs / (pairs + PriorTrips), 0, MostCorrelation);
     }
 

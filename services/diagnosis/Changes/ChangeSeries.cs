@@ -49,8 +49,8 @@ internal static class Trips
     {
         var trips = new List<Trip>();
         var open = new List<ChangeReading>();
-        var sorted = readings.Where(r => double.IsFinite(r.Value) && r.Variance > 0 && double.IsFinite(r.Variance))
-            .OrderBy(r => r.At).ThenBy(r => r.Trip, StringComparer.Ordinal).ThenBy(r => r.Rests, StringComparer.Ordinal).ThenBy(r => r.Value);
+        var sorted = readings.Where(r => double.IsFinite(r.Value) && r.Variance > 0 && double.IsFinite(r.Variance)).ToArray();
+        Array.Sort(sorted, InOrder);
         foreach (var r in sorted)
         {
             if (open.Count > 0 && (r.Trip != open[0].Trip || r.At - open[^1].At > s_silence || r.At - open[0].At > s_longest)) Close();
@@ -73,26 +73,43 @@ internal static class Trips
     {
         var r = trip.Readings;
         if (r.Count < 2 * LeastReadings) return null;
-        var cost = new SegmentCost([.. r.Select((_, i) => (double)i)], [.. r.Select(x => x.Value)], [.. r.Select(x => 1 / x.Variance)]);
+        var whole = new LevelSums();
+        foreach (var x in r) whole = whole.With(x.Value, 1 / x.Variance);
+        var left = new LevelSums();
         var (best, gain) = (0, StepPrice);
-        for (var at = LeastReadings; at <= r.Count - LeastReadings; at++)
+        for (var at = 1; at <= r.Count - LeastReadings; at++)
         {
-            var saved = cost.Level(0, r.Count) - cost.Level(0, at) - cost.Level(at, r.Count);
-            if (saved > gain && Math.Abs(cost.Mean(at, r.Count).Mean - cost.Mean(0, at).Mean) > StepOverTripSd * tripSd) (best, gain) = (at, saved);
+            left = left.With(r[at - 1].Value, 1 / r[at - 1].Variance);
+            if (at < LeastReadings) continue;
+            var right = whole.Less(left);
+            var saved = whole.Scatter - left.Scatter - right.Scatter;
+            if (saved > gain && Math.Abs(right.Mean - left.Mean) > StepOverTripSd * tripSd) (best, gain) = (at, saved);
         }
         return best > 0 ? best : null;
     }
 
+    private static int InOrder(ChangeReading a, ChangeReading b)
+    {
+        var by = a.At.UtcTicks.CompareTo(b.At.UtcTicks);
+        if (by == 0) by = string.CompareOrdinal(a.Trip, b.Trip);
+        if (by == 0) by = string.CompareOrdinal(a.Rests, b.Rests);
+        return by == 0 ? a.Value.CompareTo(b.Value) : by;
+    }
+
     private static Trip Of(List<ChangeReading> readings)
     {
-        var drawn = RunningMedian.DrawIn([.. readings.Select(r => r.Value)], [.. readings.Select(r => Math.Sqrt(r.Variance))], Reach);
+        double[] values = new double[readings.Count], deviations = new double[readings.Count];
+        for (var i = 0; i < values.Length; i++) (values[i], deviations[i]) = (readings[i].Value, Math.Sqrt(readings[i].Variance));
+        var drawn = RunningMedian.DrawIn(values, deviations, Reach);
+        var kept = new ChangeReading[drawn.Length];
         var (weights, sum) = (0.0, 0.0);
         for (var i = 0; i < drawn.Length; i++)
         {
+            kept[i] = readings[i] with { Value = drawn[i] };
             weights += 1 / readings[i].Variance;
             sum += drawn[i] / readings[i].Variance;
         }
-        return new() { Readings = [.. readings.Select((r, i) => r with { Value = drawn[i] })], Mean = sum / weights, OwnVariance = 1 / weights };
+        return new() { Readings = kept, Mean = sum / weights, OwnVariance = 1 / weights };
     }
 }
 

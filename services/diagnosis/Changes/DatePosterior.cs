@@ -18,8 +18,14 @@ internal static class DatePosterior
 
     private const double TripDays = 1;
 
+    /// <summary>Weight against the best candidate's that no quantile would notice.</summary>
+    private const double Negligible = 1e-9;
+
     /// <summary>Least weight of a gap: minutes on the road count for more than minutes at rest.</summary>
     private const double ShortGapDays = 0.05;
+
+    /// <summary>Log likelihood below the best gap from which on neither a gap nor a trip beside it is looked at: e⁻³⁰, where prior weights span e¹³.</summary>
+    private const double Hopeless = 30;
 
     private readonly record struct Candidate(DateTimeOffset From, DateTimeOffset To, double LogWeight, double Size, double SizeVariance);
 
@@ -33,7 +39,7 @@ internal static class DatePosterior
     {
         var candidates = Candidates(trips, left, right, tripVariance, scale, events);
         var top = candidates.Max(c => c.LogWeight);
-        var parts = candidates.Select(c => (c.From, c.To, Weight: Math.Exp(c.LogWeight - top), c.Size, c.SizeVariance)).Where(c => c.Weight > 0).OrderBy(c => c.From).ThenBy(c => c.To).ToArray();
+        var parts = candidates.Select(c => (c.From, c.To, Weight: Math.Exp(c.LogWeight - top), c.Size, c.SizeVariance)).Where(c => c.Weight > Negligible).OrderBy(c => c.From).ThenBy(c => c.To).ToArray();
         var total = parts.Sum(p => p.Weight);
         var mean = parts.Sum(p => p.Weight * p.Size) / total;
         var variance = parts.Sum(p => p.Weight * (p.SizeVariance + (p.Size - mean) * (p.Size - mean))) / total;
@@ -44,17 +50,27 @@ internal static class DatePosterior
     private static List<Candidate> Candidates(IReadOnlyList<Trip> trips, Func<DateTimeOffset, double> left, Func<DateTimeOffset, double> right, double tripVariance, double scale, IReadOnlyList<ChangeEvent> events)
     {
         var n = trips.Count;
-        var before = new Sums[n + 1];
-        var after = new Sums[n + 1];
+        var before = new LevelSums[n + 1];
+        var after = new LevelSums[n + 1];
         for (var j = 0; j < n; j++) before[j + 1] = before[j].With(trips[j].Mean - left(Middle(trips[j])), Weight(trips[j]));
         for (var j = n - 1; j >= 0; j--) after[j] = after[j + 1].With(trips[j].Mean - right(Middle(trips[j])), Weight(trips[j]));
         var candidates = new List<Candidate>();
-        for (var j = 0; j < n; j++)
+        var gaps = new (double Log, double Size, double Variance)[n];
+        var top = double.NegativeInfinity;
+        for (var j = 1; j < n; j++)
         {
-            if (j > 0) Gap(trips[j - 1].To, trips[j].From, (trips[j].From - trips[j - 1].To).TotalDays, Likelihood(before[j], after[j], null));
+            gaps[j] = Likelihood(before[j], after[j], null);
+            top = Math.Max(top, gaps[j].Log);
+        }
+        for (var j = 1; j < n; j++)
+            if (gaps[j].Log > top - Hopeless) Gap(trips[j - 1].To, trips[j].From, (trips[j].From - trips[j - 1].To).TotalDays, gaps[j]);
+        for (var j = 1; j < n - 1; j++)
+        {
+            // A step on the way shows in the gaps before and after the trip too, if less well.
+            if (Math.Max(gaps[j].Log, gaps[j + 1].Log) < top - Hopeless) continue;
             var readings = trips[j].Readings;
             // The outermost trips stay whole: one of them may hold the neighbouring change.
-            for (var r = 1; r < readings.Count && j > 0 && j < n - 1; r++)
+            for (var r = 1; r < readings.Count; r++)
             {
                 var split = Split(readings, r, left, right, tripVariance, scale);
                 Gap(readings[r - 1].At, readings[r].At, TripDays / (readings.Count - 1), Likelihood(before[j], after[j + 1], split));
@@ -83,7 +99,7 @@ internal static class DatePosterior
 
     private static Cut Split(IReadOnlyList<ChangeReading> readings, int at, Func<DateTimeOffset, double> left, Func<DateTimeOffset, double> right, double tripVariance, double scale)
     {
-        var (a, b, whole) = (new Sums(), new Sums(), new Sums());
+        var (a, b, whole) = (new LevelSums(), new LevelSums(), new LevelSums());
         foreach (var r in readings) whole = whole.With(r.Value, 1 / (scale * r.Variance));
         for (var i = 0; i < at; i++) a = a.With(readings[i].Value - left(readings[i].At), 1 / (scale * readings[i].Variance));
         for (var i = at; i < readings.Count; i++) b = b.With(readings[i].Value - right(readings[i].At), 1 / (scale * readings[i].Variance));
@@ -91,14 +107,14 @@ internal static class DatePosterior
         var (s11, s22) = (1 / a.W + trip, 1 / b.W + trip);
         var determinant = s11 * s22 - trip * trip;
         var (p11, p12, p22) = (s22 / determinant, -trip / determinant, s11 / determinant);
-        var (m1, m2) = (a.Wy / a.W, b.Wy / b.W);
+        var (m1, m2) = (a.Mean, b.Mean);
         var square = p11 * m1 * m1 + 2 * p12 * m1 * m2 + p22 * m2 * m2;
         // Within the halves and, against the whole trip, what its own scatter would have cost uncut.
         return new(p11, p12, p22, p11 * m1 + p12 * m2, p12 * m1 + p22 * m2, square + a.Scatter + b.Scatter - whole.Scatter);
     }
 
     /// <summary>Log likelihood of a candidate with both levels integrated out, and the size of the step with its variance.</summary>
-    private static (double Log, double Size, double Variance) Likelihood(Sums before, Sums after, Cut? cut)
+    private static (double Log, double Size, double Variance) Likelihood(LevelSums before, LevelSums after, Cut? cut)
     {
         var c = cut ?? default;
         var (h11, h12, h22) = (before.W + c.P11, c.P12, after.W + c.P22);
@@ -129,12 +145,4 @@ internal static class DatePosterior
     private static DateTimeOffset Later(DateTimeOffset a, DateTimeOffset b) => a > b ? a : b;
 
     private static DateTimeOffset Earlier(DateTimeOffset a, DateTimeOffset b) => a < b ? a : b;
-
-    private readonly record struct Sums(double W, double Wy, double Wyy)
-    {
-        public Sums With(double y, double w) => new(W + w, Wy + w * y, Wyy + w * y * y);
-
-        /// <summary>Squared error about the mean.</summary>
-        public double Scatter => W > 0 ? Math.Max(0, Wyy - Wy * Wy / W) : 0;
-    }
 }

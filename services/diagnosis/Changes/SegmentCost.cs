@@ -63,9 +63,11 @@ public sealed class SegmentCost
     }
 
     /// <summary>The cheaper of a level and, at its penalty, a line.</summary>
-    public double Best(int from, int to)
+    public double Best(int from, int to) => Best(from, to, Level(from, to));
+
+    /// <summary>The same where the level's cost is known.</summary>
+    internal double Best(int from, int to, double level)
     {
-        var level = Level(from, to);
         // A line saves at most the whole error of the level.
         return level <= SlopePenalty || to - from < LeastSloped ? level : Math.Min(level, Line(from, to) + SlopePenalty);
     }

@@ -32,6 +32,7 @@ public sealed record Segmentation(IReadOnlyList<Segment> Segments, double Cost, 
         var dropFrom = new int[n + 1];
         Array.Fill(dropFrom, int.MaxValue);
         var candidates = new int[n + 1];
+        var levels = new double[n + 1];
         var (count, evaluations) = (0, 0L);
         var wait = double.IsPositiveInfinity(cost.SlopePenalty) ? leastPoints : Math.Max(leastPoints, cost.LeastSloped);
         for (var t = leastPoints; t <= n; t++)
@@ -41,8 +42,10 @@ public sealed record Segmentation(IReadOnlyList<Segment> Segments, double Cost, 
             var from = -1;
             for (var c = 0; c < count; c++)
             {
-                var value = best[candidates[c]] + cost.Best(candidates[c], t) + penalty;
-                if (value < least) (least, from) = (value, candidates[c]);
+                var s = candidates[c];
+                levels[c] = cost.Level(s, t);
+                var value = best[s] + cost.Best(s, t, levels[c]) + penalty;
+                if (value < least) (least, from) = (value, s);
             }
             evaluations += count;
             (best[t], last[t]) = (least, from);
@@ -51,7 +54,9 @@ public sealed record Segmentation(IReadOnlyList<Segment> Segments, double Cost, 
             {
                 var s = candidates[c];
                 // The tolerance keeps what rounding alone would drop.
-                if (dropFrom[s] == int.MaxValue && best[s] + cost.Floor(s, t) > least + 1e-9 * Math.Abs(least)) dropFrom[s] = t + wait;
+                // The floor is never above the level, which spares most of the lines.
+                var bound = least + 1e-9 * Math.Abs(least);
+                if (dropFrom[s] == int.MaxValue && best[s] + levels[c] > bound && best[s] + cost.Floor(s, t) > bound) dropFrom[s] = t + wait;
                 if (dropFrom[s] > t + 1) candidates[kept++] = s;
             }
             count = kept;

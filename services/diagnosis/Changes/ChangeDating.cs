@@ -76,7 +76,9 @@ public static class ChangeDating
         if (correlated > 0)
         {
             scale *= (1 + correlated) / (1 - correlated);
-            (cost, segments) = Cut(trips, variance, scale);
+            // Wider errors never bring a change where there was none.
+            if (segments.Count > 1 || segments[0].Sloped) (cost, segments) = Cut(trips, variance, scale);
+            else cost = TripCost(trips, variance, scale);
         }
         var changes = new List<DatedChange>();
         for (var k = 0; k < segments.Count; k++)
@@ -90,8 +92,7 @@ public static class ChangeDating
     /// <summary>Costs of the trips, and the segments in trips; a change is sought between days, and dated among the trips afterwards.</summary>
     private static (SegmentCost Cost, IReadOnlyList<Segment> Segments) Cut(IReadOnlyList<Trip> trips, double tripVariance, double scale)
     {
-        double[] times = [.. trips.Select(t => Day(trips, t))], values = [.. trips.Select(t => t.Mean)], weights = [.. trips.Select(t => 1 / (scale * (t.OwnVariance + tripVariance)))];
-        var trip = new SegmentCost(times, values, weights);
+        var trip = TripCost(trips, tripVariance, scale);
         var days = Days(trips, trip);
         var penalty = Penalty(days.Count - 1);
         var (t, y, w) = (new double[days.Count - 1], new double[days.Count - 1], new double[days.Count - 1]);
@@ -103,6 +104,9 @@ public static class ChangeDating
         var cut = Segmentation.Pelt(new SegmentCost(t, y, w, penalty, LeastSloped(t)), penalty, LeastTrips);
         return (trip, [.. cut.Segments.Select(s => new Segment(days[s.From], days[s.To], s.Sloped))]);
     }
+
+    private static SegmentCost TripCost(IReadOnlyList<Trip> trips, double tripVariance, double scale) =>
+        new([.. trips.Select(t => Day(trips, t))], [.. trips.Select(t => t.Mean)], [.. trips.Select(t => 1 / (scale * (t.OwnVariance + tripVariance)))]);
 
     /// <summary>
     /// First trips of the days, and the end. Trips of a day are taken together, which loses nothing to a change between days, unless

@@ -3,6 +3,7 @@ using Npgsql;
 using WearWatch.Diagnosis.Causes;
 using WearWatch.Diagnosis.Money;
 using WearWatch.Diagnosis.Rules;
+using WearWatch.Diagnosis.Steering;
 using WearWatch.Diagnosis.Tread;
 using WearWatch.Diagnosis.Wear;
 using WearWatch.Storage;
@@ -12,7 +13,7 @@ using WearWatch.Storage.Facts;
 namespace WearWatch.Analysis;
 
 /// <summary>Diagnoses due vehicles on the latest fleet snapshot and publishes what was found.</summary>
-internal sealed partial class Diagnosing(FactReader facts, FleetFitStore fits, DiagnosisStore store, FleetFitting fitting, TimeProvider clock, ILogger<Diagnosing> log)
+internal sealed partial class Diagnosing(FactReader facts, FleetFitStore fits, DiagnosisStore store, RunStore runs, FleetFitting fitting, TimeProvider clock, ILogger<Diagnosing> log)
 {
     /// <summary>Raised when any stage of the diagnosis changes, so that every vehicle becomes due.</summary>
     public const string Method = "diagnosis-1";
@@ -34,7 +35,8 @@ internal sealed partial class Diagnosing(FactReader facts, FleetFitStore fits, D
             {
                 if (await facts.LoadVehicle(due.VehicleId, null, cancel) is not { } vehicle) throw new InvalidDataException("the vehicle has no record that holds");
                 var open = await claim.OpenFindings(due, cancel);
-                var result = await Task.Run(() => Of(vehicle, settings.GetValueOrDefault(vehicle.Depot.DepotId), fit.Snapshot, fit.Id), cancel);
+                var since = await Since(vehicle.Vehicle.VehicleId, [.. settings.Keys], fit.Snapshot, cancel);
+                var result = await Task.Run(() => Of(vehicle, settings.GetValueOrDefault(vehicle.Depot.DepotId), fit.Snapshot, fit.Id, since), cancel);
                 await claim.Publish(Publication.Of(due, result, open, clock.GetUtcNow()), cancel);
             }
             catch (Exception failure) when (failure is not (OperationCanceledException or NpgsqlException))
@@ -57,14 +59,22 @@ internal sealed partial class Diagnosing(FactReader facts, FleetFitStore fits, D
         if (await facts.LoadVehicle(vehicleId, day, cancel) is not { } vehicle) return null;
         var (snapshot, _, _) = await fitting.Make(day, cancel);
         var settings = await facts.LoadSettings(cancel);
-        return await Task.Run(() => Of(vehicle, settings.GetValueOrDefault(vehicle.Depot.DepotId), snapshot, 0), cancel);
+        return await Task.Run(() => Of(vehicle, settings.GetValueOrDefault(vehicle.Depot.DepotId), snapshot, 0, []), cancel);
     }
 
-    private static VehicleDiagnosis Of(VehicleFacts vehicle, DepotSettings? settings, FleetSnapshot fleet, long fit)
+    /// <summary>Straight runs that came after the fit saw the vehicle's last one.</summary>
+    private async Task<IReadOnlyList<StraightRun>> Since(string vehicleId, string[] depots, FleetSnapshot fleet, CancellationToken cancel) =>
+        fleet.Changes.FirstOrDefault(c => c.VehicleId == vehicleId) is { Now.Count: > 0 } then
+            ? await runs.Since(vehicleId, depots, then.Now.Min(n => n.Through).UtcDateTime, cancel)
+            : [];
+
+    private static VehicleDiagnosis Of(VehicleFacts vehicle, DepotSettings? settings, FleetSnapshot fleet, long fit, IReadOnlyList<StraightRun> since)
     {
         var day = vehicle.FactsThrough is { } through && DateOnly.FromDateTime(through.UtcDateTime) > fleet.AsOf && fit != 0 ? DateOnly.FromDateTime(through.UtcDateTime) : fleet.AsOf;
-        var wear = VehicleWear.Estimate(VehicleFiguresOf.Tread(vehicle, settings), fleet.Wear, day);
-        var figures = VehicleFiguresOf.Figures(vehicle, settings, wear, fleet.Roads.Of(vehicle.Vehicle.VehicleId), day);
+        var tread = VehicleFiguresOf.Tread(vehicle, settings);
+        var wear = VehicleWear.Estimate(tread, fleet.Wear, day);
+        var changes = VehicleChangesOf.Vehicle(vehicle, tread, fleet, since, day);
+        var figures = VehicleFiguresOf.Figures(vehicle, settings, wear, fleet.Roads.Of(vehicle.Vehicle.VehicleId), day, changes);
         var verdict = CauseEstimate.Judge(figures, FaultPriors.Default);
         var inputs = MoneyInputs.For(vehicle.Vehicle, vehicle.Depot, [.. settings?.Prices.Select(p => p.Body) ?? []], [.. settings?.Settings.Select(s => s.Body) ?? []], day);
         var cost = CostOfWaiting.Of(figures, verdict, inputs);

@@ -1,6 +1,7 @@
 using System.Globalization;
 using Google.Protobuf.WellKnownTypes;
 using WearWatch.Contracts.V1;
+using WearWatch.Diagnosis.Changes;
 using WearWatch.Diagnosis.Facts;
 using WearWatch.Diagnosis.Rules;
 using WearWatch.Diagnosis.Statistics;
@@ -42,6 +43,7 @@ internal static class DiagnosisMessage
         message.CannotTell.Add(d.Verdict.CannotTell.Select(c => new CannotTell { What = c.What, Because = c.Because, WouldHelp = c.WouldHelp }));
         message.CannotTell.Add((steering?.NotPossible ?? []).Select(NotPossible));
         message.CannotTell.Add(d.Cost.Assumed.Select(a => new CannotTell { What = "the money exactly", Because = $"{a} was assumed", WouldHelp = "the operator's own figure" }));
+        message.Changes.Add(d.Figures.Changes.Select(c => Of(c, ChangeLimits.IsPublished(d.Figures, c))));
         message.SurveyNotes.Add(d.Wear.Surveys.Where(s => s.Corrected || s.Weight < 0.9).Select(Of));
         message.SurveyNotes.Add(d.Wear.Inferred.Select(i => new SurveyNote { Note = i.Sentence }));
         return message;
@@ -73,6 +75,33 @@ internal static class DiagnosisMessage
         if (c.Axle is { } axle) cause.Axle = axle;
         return cause;
     }
+
+    private static Change Of(DatedChange c, bool published)
+    {
+        var change = new Change
+        {
+            Quantity = Snake(c.Quantity.ToString()),
+            Form = Snake(c.Form.ToString()),
+            From = Timestamp.FromDateTimeOffset(c.From),
+            To = Timestamp.FromDateTimeOffset(c.To),
+            Likely = Timestamp.FromDateTimeOffset(c.Likely),
+            Size = Of(c.Size, c.Quantity switch { ChangeQuantity.SteeringPull => "N·m", ChangeQuantity.OffCentreAngle => "deg", _ => "1" }),
+            Before = c.Before,
+            After = c.After,
+            TripsBefore = c.TripsBefore,
+            TripsAfter = c.TripsAfter,
+            Provisional = c.Provisional,
+            Published = published,
+        };
+        if (c.Axle is { } axle) change.Axle = axle;
+        change.Happened.Add(c.Happened.Select(e => new Contracts.V1.ChangeEvent { Kind = Snake(e.Kind.ToString()), At = Timestamp.FromDateTimeOffset(e.At), What = e.Words, RestsOn = e.Rests }));
+        change.RestsOn.Add(c.Rests);
+        return change;
+    }
+
+    /// <summary>SteeringPull as steering_pull.</summary>
+    internal static string Snake(string name) =>
+        string.Concat(name.Select((c, i) => char.IsUpper(c) && i > 0 ? $"_{char.ToLowerInvariant(c)}" : $"{char.ToLowerInvariant(c)}"));
 
     private static TyreDiagnosis Of(TyreFigures t)
     {

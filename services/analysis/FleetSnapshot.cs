@@ -1,3 +1,4 @@
+using WearWatch.Diagnosis.Changes;
 using WearWatch.Diagnosis.Roads;
 using WearWatch.Diagnosis.Unusual;
 using WearWatch.Diagnosis.Wear;
@@ -14,4 +15,6 @@ internal sealed record FleetSnapshot
     public required FleetWear Wear { get; init; }
     public required RoadFit Roads { get; init; }
     public required UnusualFit Unusual { get; init; }
+    /// <summary>Changes of steering pull and off-centre angle, by vehicle.</summary>
+    public IReadOnlyList<VehicleChanges> Changes { get; init; } = [];
 }

@@ -62,7 +62,7 @@ internal static class Publication
     }
 
     internal static string Kind(Finding finding) =>
-        string.Concat(finding.Kind.ToString().Select((c, i) => char.IsUpper(c) && i > 0 ? $"_{char.ToLowerInvariant(c)}" : $"{char.ToLowerInvariant(c)}"));
+        DiagnosisMessage.Snake(finding.Kind.ToString());
 
     private static string Place(Finding finding) => string.Create(CultureInfo.InvariantCulture,
         $"{(finding.Axle is { } axle ? axle : "vehicle")}{finding.Side switch { Diagnosis.Facts.Side.Left => "L", Diagnosis.Facts.Side.Right => "R", _ => "" }}{finding.Dual switch { Diagnosis.Facts.Dual.Outer => "O", Diagnosis.Facts.Dual.Inner => "I", _ => "" }}");

@@ -1,3 +1,4 @@
+using WearWatch.Diagnosis.Changes;
 using WearWatch.Diagnosis.Facts;
 using WearWatch.Diagnosis.Roads;
 using WearWatch.Diagnosis.Rules;
@@ -23,7 +24,7 @@ internal static class VehicleFiguresOf
 
     public static IReadOnlyList<DepthLimitFact> Limits(DepotSettings? settings) => [.. settings?.Limits.Select(l => l.Body) ?? []];
 
-    public static VehicleFigures Figures(VehicleFacts v, DepotSettings? settings, VehicleWearResult wear, SteeringFigures? steering, DateOnly asOf) => new()
+    public static VehicleFigures Figures(VehicleFacts v, DepotSettings? settings, VehicleWearResult wear, SteeringFigures? steering, DateOnly asOf, IReadOnlyList<DatedChange>? changes = null) => new()
     {
         Vehicle = v.Vehicle,
         Depot = v.Depot,
@@ -31,6 +32,7 @@ internal static class VehicleFiguresOf
         Tyres = wear.Tyres,
         Wear = wear.History,
         Steering = steering,
+        Changes = changes ?? [],
         Route = v.Route,
         DriverReports = [.. v.DriverReports.Select(r => r.Body)],
         WorkshopRecords = [.. v.WorkshopRecords.Select(r => r.Body)],

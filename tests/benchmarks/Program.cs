@@ -3,6 +3,7 @@ using WearWatch.Benchmarks;
 
 var names = new Dictionary<string, Func<IReadOnlyDictionary<string, object>>>(StringComparer.Ordinal)
 {
+    ["changes"] = ChangesBenchmark.Run,
     ["door"] = DoorBenchmark.Run,
     ["reduction"] = ReductionBenchmark.Run,
     ["roads"] = RoadsBenchmark.Run,

@@ -6,6 +6,7 @@ public enum FindingKind
 {
     SteeringPull, OffCentreWheel, Feathering, OneEdgeWear, AxleSkew, CentreWear, ShoulderWear, Cupping, DiagonalWear,
     FastWear, PressureOff, DepthGap, BelowLimit, UnsafeTyre, Unusual,
+    SteeringPullChange, OffCentreChange, WearRateChange,
 }
 
 /// <summary>One condition on one axle or wheel, with its evidence.</summary>

@@ -7,6 +7,7 @@ public enum CheckFor
 {
     Toe, SideForce, WheelCamber, TurnAngles, AxleDirection, TrailerDirection, SteeringPull, OffCentreWheel, Pressure, WearRoundTyre,
     DiagonalWear, FastWear, DepthMatch, UnsafeTyre, Inspection,
+    ChangeWithoutRecord, ChangeAtTyres, ChangeAtWorkshop, SteeringDrift, WearChange,
 }
 
 /// <summary>One row of the table; the suspension is null where it makes no difference.</summary>
@@ -64,6 +65,12 @@ public static class FirstCheck
         new(CheckFor.DepthMatch, null, "Measure both tyres again at three places; match the pair before any alignment is judged.", Practice),
         new(CheckFor.UnsafeTyre, null, "Look at this tyre now and do not drive on until it is changed or passed by a competent person.", Practice),
         new(CheckFor.Inspection, null, "Inspect the vehicle, starting with the figures named; measure them again before anything is adjusted.", Practice),
+
+        new(CheckFor.ChangeWithoutRecord, null, "Look at wheels, rims, tyres and steering arms for the mark of a kerb or a hole in the road, and ask the driver of that day; joints and track-rod ends by hand; then front toe of each wheel and the rear axle's direction.", Practice),
+        new(CheckFor.ChangeAtTyres, null, "Set cold pressures and see that the tyres of the axle match; swap the steer tyres left and right: what changes side is the tyres' and not the geometry's.", Practice),
+        new(CheckFor.ChangeAtWorkshop, null, "Hold the workshop's figures before and after against this change; drive again on a road the vehicle knows before anything is adjusted anew.", Practice),
+        new(CheckFor.SteeringDrift, null, "Set cold pressures; then wear of bushes, ball joints and track-rod ends by hand, ride height; then toe, rear before front.", Practice),
+        new(CheckFor.WearChange, null, $"{Before}; what the vehicle carried and where it ran since then; then read the tread at three grooves across before asking for an alignment.", Practice),
     ];
 
     /// <summary>Words for a check on an axle of this suspension; the general words where the suspension makes no difference.</summary>

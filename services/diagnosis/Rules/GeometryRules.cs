@@ -19,6 +19,7 @@ public static class GeometryRules
         CuppingRule.Find,
         DiagonalWearRule.Find,
         FastWearRule.Find,
+        ChangeRule.Find,
     ];
 
     /// <summary>All findings on one vehicle: by safety, then strength, then place; the order of the input does not matter.</summary>

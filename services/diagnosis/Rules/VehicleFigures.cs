@@ -1,3 +1,4 @@
+using WearWatch.Diagnosis.Changes;
 using WearWatch.Diagnosis.Facts;
 using WearWatch.Diagnosis.Roads;
 using WearWatch.Diagnosis.Wear;
@@ -19,6 +20,9 @@ public sealed record VehicleFigures
     public IReadOnlyList<WorkshopRecord> WorkshopRecords { get; init; } = [];
     /// <summary>Operator's tolerances in force, over the built-in ones.</summary>
     public IReadOnlyList<ToleranceFact> Tolerances { get; init; } = [];
+
+    /// <summary>Changes of steering pull, off-centre angle and wear rate, in order of time; the small ones too.</summary>
+    public IReadOnlyList<DatedChange> Changes { get; init; } = [];
 
     public TyreFigures? At(Position position) => Tyres.FirstOrDefault(t => t.Position == position);
 }

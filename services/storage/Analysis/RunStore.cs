@@ -126,6 +126,29 @@ public sealed class RunStore(NpgsqlDataSource analysis)
         return runs;
     }
 
+    // Served by straight_run_vehicle, once a depot.
+    private const string SinceSql = """
+        SELECT vehicle_id, stream_id, sequence, start_at, seconds, mode, speed_km_h, torque_nm, torque_se, with_assist,
+          angle_deg, angle_se, bank, bank_se, yaw_rate, load_kg, road_cell
+        FROM analysis.straight_run
+        WHERE depot = ANY(@depots) AND vehicle_id = @vehicle AND start_at > @after
+        ORDER BY start_at, stream_id, ordinal
+        """;
+
+    /// <summary>Runs of one vehicle that began after a time, in order of time.</summary>
+    public async Task<IReadOnlyList<StraightRun>> Since(string vehicleId, string[] depots, DateTime after, CancellationToken cancel)
+    {
+        await using var command = analysis.CreateCommand(SinceSql);
+        command.CommandTimeout = TimeoutSeconds;
+        command.Parameters.AddWithValue("vehicle", vehicleId);
+        command.Parameters.AddWithValue("depots", depots);
+        command.Parameters.AddWithValue("after", after);
+        await using var reader = await command.ExecuteReaderAsync(cancel);
+        var runs = new List<StraightRun>();
+        while (await reader.ReadAsync(cancel)) runs.Add(Read(reader));
+        return runs;
+    }
+
     private static StraightRun Read(NpgsqlDataReader row)
     {
         double? Number(int column) => row.IsDBNull(column) ? null : row.GetDouble(column);

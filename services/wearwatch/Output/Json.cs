@@ -30,6 +30,7 @@ internal static class Json
             ["off_centre_angle"] = Range(d.OffCentreAngle),
             ["tyres"] = List(d.Tyres, Tyre),
             ["findings"] = List(d.Findings, Finding),
+            ["changes"] = List(d.Changes, Change),
             ["cannot_tell"] = List(d.CannotTell, c => new JsonObject { ["what"] = c.What, ["because"] = c.Because, ["would_help"] = c.WouldHelp }),
             ["below_limit"] = List(report.BelowLimit, Unsafe),
             ["survey_notes"] = List(d.SurveyNotes, n => new JsonObject { ["survey_id"] = n.SurveyId, ["note"] = n.Note }),
@@ -121,6 +122,27 @@ internal static class Json
         ["opened_at"] = f.OpenedAt?.ToDateTimeOffset().ToString("yyyy-MM-ddTHH:mm:ssZ"),
         ["opened_because"] = f.OpenedBecause,
     };
+
+    private static JsonObject Change(Change c) => new()
+    {
+        ["quantity"] = c.Quantity,
+        ["form"] = c.Form,
+        ["axle"] = c.HasAxle ? c.Axle : null,
+        ["from"] = Time(c.From),
+        ["to"] = Time(c.To),
+        ["likely"] = Time(c.Likely),
+        ["size"] = Range(c.Size),
+        ["before"] = Round(c.Before),
+        ["after"] = Round(c.After),
+        ["trips_before"] = c.TripsBefore,
+        ["trips_after"] = c.TripsAfter,
+        ["happened"] = List(c.Happened, e => new JsonObject { ["kind"] = e.Kind, ["at"] = Time(e.At), ["what"] = e.What, ["rests_on"] = e.RestsOn }),
+        ["provisional"] = c.Provisional,
+        ["published"] = c.Published,
+        ["rests_on"] = List(c.RestsOn, id => JsonValue.Create(id)),
+    };
+
+    private static string? Time(Google.Protobuf.WellKnownTypes.Timestamp? at) => at?.ToDateTimeOffset().ToString("yyyy-MM-ddTHH:mm:ssZ");
 
     private static JsonObject Evidence(Evidence e) => new() { ["statement"] = e.Statement, ["rests_on"] = List(e.RestsOn, id => JsonValue.Create(id)) };
 

@@ -67,6 +67,7 @@ internal static class Screen
         Causes(console, d);
         Tyres(console, d);
         foreach (var finding in d.Findings) Finding(console, finding);
+        Changes(console, d);
         foreach (var note in d.SurveyNotes) console.MarkupLineInterpolated($"{(note.SurveyId.Length > 0 ? $"Survey {note.SurveyId}: " : "")}{note.Note}");
         foreach (var gap in d.CannotTell) console.MarkupLineInterpolated($"Cannot tell {gap.What}: {gap.Because}. Would help: {gap.WouldHelp}.");
         console.WriteLine();
@@ -94,6 +95,22 @@ internal static class Screen
                 t.RemainingKm is null ? "not known" : string.Create(CultureInfo.InvariantCulture, $"{t.RemainingKm.Value:#,0} ({t.RemainingKm.Low:#,0} to {t.RemainingKm.High:#,0})"), t.HasLimitMm ? $"{t.LimitMm:0.0#}" : "");
         }
         if (table.Rows.Count > 0) console.Write(table);
+    }
+
+    private static void Changes(IAnsiConsole console, Contracts.V1.Diagnosis d)
+    {
+        var small = d.Changes.Count(c => !c.Published);
+        if (d.Changes.Count == 0) return;
+        var table = new Table().Border(TableBorder.Simple).AddColumns("changed", "how", "when (90 %)", "by (90 %)", "recorded then");
+        foreach (var c in d.Changes.Where(c => c.Published).TakeLast(8))
+        {
+            table.AddRow(Markup.Escape(c.HasAxle ? $"{Words(c.Quantity)}, axle {c.Axle}" : Words(c.Quantity)), c.Provisional ? $"{c.Form}, provisional" : c.Form,
+                $"{c.From.ToDateTimeOffset():yyyy-MM-dd HH:mm} to {c.To.ToDateTimeOffset():yyyy-MM-dd HH:mm}",
+                string.Create(CultureInfo.InvariantCulture, $"{c.Size.Value:+0.00;-0.00} ({c.Size.Low:0.00} to {c.Size.High:0.00}) {(c.Size.Unit == "1" ? "of normal" : c.Size.Unit)}"),
+                Markup.Escape(c.Happened.Count > 0 ? string.Join("; ", c.Happened.Take(2).Select(e => e.What)) : "nothing"));
+        }
+        if (table.Rows.Count > 0) console.Write(table);
+        if (small > 0) console.MarkupLineInterpolated($"{small} smaller {(small == 1 ? "change" : "changes")} too small to act on: [italic]--json[/] lists them.");
     }
 
     private static void Finding(IAnsiConsole console, Finding f)

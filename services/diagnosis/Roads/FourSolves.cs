@@ -14,6 +14,7 @@ internal sealed class FourSolves
 
     private readonly RoadSystem _s;
     private readonly float[] _perPivot, _diagonal, _block, _share;
+    private readonly float[] _direction, _times, _scaled;
 
     public FourSolves(RoadSystem system)
     {
@@ -22,6 +23,8 @@ internal sealed class FourSolves
         _diagonal = Array.ConvertAll(system.Diagonal, d => (float)d);
         _block = Array.ConvertAll(system.Block, b => (float)b);
         _share = new float[Sides * system.Graph.Cells];
+        var length = Stride * system.Graph.Vehicles;
+        (_direction, _times, _scaled) = (new float[length], new float[length], new float[length]);
         (Slow, SlowWeight) = (new float[Lanes * system.Graph.Vehicles], new double[system.Components]);
     }
 
@@ -33,7 +36,7 @@ internal sealed class FourSolves
     /// <summary>Adds to x the solution for what right holds; right is used up.</summary>
     public void Solve(float[] right, float[] x, double fall, int most)
     {
-        var (residual, direction, times, scaled) = (right, new float[right.Length], new float[right.Length], new float[right.Length]);
+        var (residual, direction, times, scaled) = (right, _direction, _times, _scaled);
         Precondition(residual, scaled);
         var energy = Dots(residual, scaled);
         var goal = energy.Select(e => e * fall * fall).ToArray();

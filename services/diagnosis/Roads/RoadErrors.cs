@@ -1,3 +1,4 @@
+using System.Runtime.Intrinsics;
 using MathNet.Numerics.Random;
 
 namespace WearWatch.Diagnosis.Roads;
@@ -11,36 +12,38 @@ namespace WearWatch.Diagnosis.Roads;
 internal sealed class RoadErrors
 {
     private const int Lanes = RoadProblem.Lanes, Sides = FourSolves.Sides, Stride = FourSolves.Stride;
-    private const int Batches = 8; // of four probes
-    private const double Fall = 1e-3, ProbeFall = 0.02;
+    private const int LeastBatches = 4, MostBatches = 16; // of four probes
+    private const double Ample = 0.15; // scatter of the worst variance, twice that of its standard error, at which probing ends
+    private const double Fall = 1e-3, RoughFall = 0.01, ProbeFall = 0.1;
     private const int MostSteps = 200;
     private const double LeastShare = 0.2; // of the vehicle's own block, below which only a probe's scatter can take it
 
     private readonly RoadSystem _s;
+    private readonly double _fall;
     private readonly int[] _border;     // unknowns that touch many vehicles; the component's level follows them
     private readonly double[][] _columns;
     private readonly double[] _answers; // of each vehicle's lane to each border unknown and its level, sign turned
     private readonly double[] _conditional;
+    private readonly double[] _slow;    // of unit variance
     private readonly double[] _cells;
     private readonly RoadBorder _covariance;
     private readonly DenseComponents _dense;
 
     /// <param name="system">At its solution.</param>
     /// <param name="denseUpTo">Most unknowns of a component that is inverted.</param>
-    /// <param name="probes">Whether large components are probed, or left at the first two parts.</param>
-    /// <param name="earlier">Errors of the same unknowns under other weights, to start from.</param>
-    public RoadErrors(RoadSystem system, int denseUpTo, bool probes, RoadErrors? earlier = null)
+    /// <param name="roughly">Gains are taken as known and large components left at the first two parts.</param>
+    public RoadErrors(RoadSystem system, int denseUpTo, bool roughly = false)
     {
-        _s = system;
-        _border = Enumerable.Range(system.GainAt, system.Size - system.GainAt).Where(Touches).ToArray();
+        (_s, _fall) = (system, roughly ? RoughFall : Fall);
+        _border = Enumerable.Range(system.GainAt, system.Size - system.GainAt).Where(i => Touches(i) && (!roughly || i >= system.CrownAt)).ToArray();
         _columns = [.. _border.Select(y => Column(i => i == y)), Column(i => i >= system.LevelAt && i < system.GainAt)];
-        _answers = earlier?._answers ?? new double[Lanes * system.Graph.Vehicles * _columns.Length];
-        _conditional = new double[Lanes * system.Graph.Vehicles];
+        _answers = new double[Lanes * system.Graph.Vehicles * _columns.Length];
+        (_conditional, _slow) = (new double[Lanes * system.Graph.Vehicles], new double[Lanes * system.Graph.Vehicles]);
         _cells = new double[system.Graph.Cells];
         for (var v = 0; v < system.Graph.Vehicles; v++)
             for (var lane = 0; lane < 3; lane++) _conditional[Lanes * v + lane] = system.Block[3 * Lanes * v + Lanes * lane + lane];
         _dense = new(system, denseUpTo);
-        if (_dense.Left > 0) Iterate(probes);
+        if (_dense.Left > 0) Iterate(!roughly);
         _dense.Each(_columns, _answers, _conditional, _cells);
         _covariance = new(system, _border, _columns, _answers);
     }
@@ -60,20 +63,27 @@ internal sealed class RoadErrors
         return variance;
     }
 
-    /// <summary>Variance of every cell: its own equations', its vehicles' as if independent of one another (exact in small components), and what gains and levels bring.</summary>
+    /// <summary>Variance of every cell: its own equations', its vehicles' as if they shared nothing but the slow direction (exact in small components), and what gains and levels bring.</summary>
     public double[] CellVariances()
     {
-        var variance = new double[_s.Graph.Cells];
+        var (variance, blocks) = (new double[_s.Graph.Cells], ScaledBlocks());
         _s.Graph.ByCell.Each((_, from, to) =>
         {
             var answer = new double[_columns.Length];
-            for (var c = from; c < to; c++) variance[c] = Cell(c, answer);
+            for (var c = from; c < to; c++) variance[c] = Cell(c, answer, blocks);
         });
         return variance;
     }
 
-    /// <summary>Variance of the mean bank a component's roads are drawn to, on one traffic side.</summary>
-    public double LevelVariance(int component, int side)
+    /// <summary>Variance of the mean bank a component's roads are drawn to, both traffic sides of each component in turn.</summary>
+    public double[] LevelVariances()
+    {
+        var variances = new double[2 * _s.Components];
+        for (var i = 0; i < variances.Length; i++) variances[i] = LevelVariance(i / 2, i % 2);
+        return variances;
+    }
+
+    private double LevelVariance(int component, int side)
     {
         Span<double> factors = stackalloc double[_columns.Length];
         factors[^1] = 1;
@@ -98,7 +108,10 @@ internal sealed class RoadErrors
         Slow(solves);
         for (var first = 0; first < _columns.Length; first += Sides) Answers(solves, first);
         for (var i = 0; i < _s.LevelAt; i++)
-            if (solves.SlowWeight[_s.Component[i / Lanes]] is var w and > 0) _conditional[i] += solves.Slow[i] * solves.Slow[i] / w;
+        {
+            if (solves.SlowWeight[_s.Component[i / Lanes]] is var w and > 0) _slow[i] = solves.Slow[i] / Math.Sqrt(w);
+            _conditional[i] += _slow[i] * _slow[i];
+        }
         if (probes) Probe(solves);
         Multiplications += solves.Multiplications;
     }
@@ -124,24 +137,18 @@ internal sealed class RoadErrors
         Weigh();
         for (var v = 0; v < _s.Graph.Vehicles; v++)
             for (var lane = 0; lane < 3; lane++) right[Stride * v + lane] = (float)(_s.Diagonal[Lanes * v + lane] * solves.Slow[Lanes * v + lane]);
-        solves.Solve(right, x, Fall, MostSteps);
+        solves.Solve(right, x, _fall, MostSteps);
         for (var i = 0; i < solves.Slow.Length; i++) solves.Slow[i] = x[Sides * (i - i % Lanes) + i % Lanes];
         Weigh();
     }
 
     private void Answers(FourSolves solves, int first)
     {
-        var (right, x, times) = (new float[Stride * _s.Graph.Vehicles], new float[Stride * _s.Graph.Vehicles], new float[Stride * _s.Graph.Vehicles]);
+        var (right, x) = (new float[Stride * _s.Graph.Vehicles], new float[Stride * _s.Graph.Vehicles]);
         var sides = Math.Min(Sides, _columns.Length - first);
         for (var i = 0; i < _s.LevelAt; i++)
-            for (var side = 0; side < sides; side++)
-            {
-                var at = Stride * (i / Lanes) + Lanes * side + i % Lanes;
-                (right[at], x[at]) = ((float)_columns[first + side][i], (float)_answers[i * _columns.Length + first + side]);
-            }
-        solves.Multiply(x, times);
-        for (var i = 0; i < right.Length; i++) right[i] -= times[i];
-        solves.Solve(right, x, Fall, MostSteps);
+            for (var side = 0; side < sides; side++) right[Stride * (i / Lanes) + Lanes * side + i % Lanes] = (float)_columns[first + side][i];
+        solves.Solve(right, x, _fall, MostSteps);
         for (var i = 0; i < _s.LevelAt; i++)
             for (var side = 0; side < sides; side++) _answers[i * _columns.Length + first + side] = x[Stride * (i / Lanes) + Lanes * side + i % Lanes];
     }
@@ -154,12 +161,17 @@ internal sealed class RoadErrors
         var n = _s.Graph.Vehicles;
         var (sum, squares) = (new double[Lanes * n], new double[Lanes * n]);
         var (signs, start, times, x) = (new float[Stride * n], new float[Stride * n], new float[Stride * n], new float[Stride * n]);
+        // Witnesses have units of their own: probed in units of their errors, none drowns another.
+        var unit = new float[Lanes * n];
+        for (var i = 0; i < unit.Length; i++) unit[i] = i % Lanes == 3 ? 0 : (float)(1 / Math.Sqrt(_conditional[i]));
         var random = new MersenneTwister(20261201);
         var bits = new byte[(Stride * n + 7) / 8];
-        for (var batch = 0; batch < Batches; batch++)
+        var probes = 0;
+        while (probes < LeastBatches * Sides || (probes < MostBatches * Sides && ProbeError > Ample))
         {
+            probes += Sides;
             random.NextBytes(bits);
-            for (var i = 0; i < signs.Length; i++) signs[i] = i % Lanes == 3 ? 0 : (bits[i >> 3] >> (i & 7) & 1) == 0 ? -1 : 1;
+            for (var i = 0; i < signs.Length; i++) signs[i] = (bits[i >> 3] >> (i & 7) & 1) == 0 ? -unit[Lanes * (i / Stride) + i % Lanes] : unit[Lanes * (i / Stride) + i % Lanes];
             solves.Precondition(signs, start);
             solves.Multiply(start, times);
             for (var i = 0; i < times.Length; i++) times[i] = signs[i] - times[i];
@@ -171,33 +183,33 @@ internal sealed class RoadErrors
                 sum[at] += seen;
                 squares[at] += seen * seen;
             }
+            ProbeError = 0;
+            for (var i = 0; i < sum.Length; i++)
+                if (Probed(i)) ProbeError = Math.Max(ProbeError, Math.Sqrt(Math.Max(0, squares[i] / probes - Math.Pow(sum[i] / probes, 2)) / probes));
         }
-        var probes = Batches * Sides;
         for (var i = 0; i < sum.Length; i++)
-        {
-            if (i % Lanes == 3 || _dense.Holds(_s.Component[i / Lanes])) continue;
-            var (mean, scatter) = (sum[i] / probes, Math.Sqrt(Math.Max(0, squares[i] / probes - Math.Pow(sum[i] / probes, 2)) / probes));
-            _conditional[i] = Math.Max(LeastShare * _conditional[i], _conditional[i] + mean);
-            ProbeError = Math.Max(ProbeError, scatter / _conditional[i]);
-        }
+            if (Probed(i)) _conditional[i] *= Math.Max(LeastShare, 1 + sum[i] / probes);
     }
 
-    private double Cell(int c, double[] answer)
+    private bool Probed(int i) => i % Lanes < 3 && !_dense.Holds(_s.Component[i / Lanes]);
+
+    private double Cell(int c, double[] answer, double[] blocks)
     {
         var (pivot, prior) = (_s.Pivot[c], _s.Priors[c]);
         Array.Clear(answer);
-        var (dense, conditional) = (_dense.Holds(_s.CellComponent[c]), 0.0);
+        var (dense, conditional, slow) = (_dense.Holds(_s.CellComponent[c]), 0.0, 0.0);
         for (var j = _s.Graph.CellFrom[c]; j < _s.Graph.CellFrom[c + 1]; j++)
         {
             var (v, g) = (_s.Graph.VehicleOf[j], _s.GainAt + Lanes * _s.ClassOf[_s.Graph.VehicleOf[j]]);
+            if (!dense) conditional += Across(v, j, blocks);
+            slow += Vector256.Dot(RoadSystem.Load(_s.ByCell, j) & RoadSystem.Witnesses, Vector256.LoadUnsafe(ref _slow[Lanes * v]));
             for (var lane = 0; lane < 3; lane++)
             {
                 double load = _s.ByCell[Lanes * j + lane];
                 if (load == 0) continue;
                 var at = Lanes * v + lane;
-                for (var y = 0; y < answer.Length; y++) answer[y] += load * _answers[at * answer.Length + y];
+                Add(answer, load, _answers.AsSpan(at * answer.Length, answer.Length));
                 if (lane < 2 && Array.IndexOf(_border, g + lane) is var own and >= 0) answer[own] -= load * _s.Bank[c];
-                if (!dense) conditional += load * Across(v, lane, j);
             }
         }
         if (prior.OnLevel)
@@ -206,19 +218,38 @@ internal sealed class RoadErrors
             if (Array.IndexOf(_border, _s.CrownAt + _s.CellSide[c]) is var crown and >= 0) answer[crown] += prior.Weight;
         }
         for (var y = 0; y < answer.Length; y++) answer[y] /= pivot;
-        return 1 / pivot + (dense ? _cells[c] : conditional / (pivot * pivot)) + _covariance.Of(_s.CellComponent[c], answer);
+        return 1 / pivot + (dense ? _cells[c] : (conditional + slow * slow) / (pivot * pivot)) + _covariance.Of(_s.CellComponent[c], answer);
     }
 
-    /// <summary>A vehicle's own covariance, its block scaled to the variances found, times its loads on a cell.</summary>
-    private double Across(int v, int lane, int pair)
+    private static void Add(Span<double> to, double factor, ReadOnlySpan<double> row)
     {
-        var sum = 0.0;
-        for (var other = 0; other < 3; other++)
+        var (i, factors) = (0, Vector256.Create(factor));
+        for (; i + Lanes <= to.Length; i += Lanes)
+            (Vector256.LoadUnsafe(ref to[i]) + factors * Vector256.LoadUnsafe(in row[i])).StoreUnsafe(ref to[i]);
+        for (; i < to.Length; i++) to[i] += factor * row[i];
+    }
+
+    /// <summary>Each vehicle's own covariance: the inverse of its block, scaled to the variances found less what the slow direction brings to all alike.</summary>
+    private double[] ScaledBlocks()
+    {
+        var blocks = (double[])_s.Block.Clone();
+        for (var v = 0; v < _s.Graph.Vehicles; v++)
         {
-            var (a, b) = (3 * Lanes * v + Lanes * lane + lane, 3 * Lanes * v + Lanes * other + other);
-            var scale = Math.Sqrt(_conditional[Lanes * v + lane] / _s.Block[a] * _conditional[Lanes * v + other] / _s.Block[b]);
-            sum += scale * _s.Block[3 * Lanes * v + Lanes * lane + other] * _s.ByCell[Lanes * pair + other];
+            var at = 3 * Lanes * v;
+            for (var lane = 0; lane < 3; lane++)
+                for (var other = 0; other < 3; other++)
+                    blocks[at + Lanes * lane + other] *= Math.Sqrt(Own(Lanes * v + lane) / _s.Block[at + Lanes * lane + lane] * Own(Lanes * v + other) / _s.Block[at + Lanes * other + other]);
         }
-        return sum;
+        return blocks;
+    }
+
+    private double Own(int i) => Math.Max(LeastShare * _conditional[i], _conditional[i] - _slow[i] * _slow[i]);
+
+    /// <summary>What a vehicle's own covariance makes of its loads on a cell.</summary>
+    private double Across(int v, int pair, double[] blocks)
+    {
+        var (loads, at) = (RoadSystem.Load(_s.ByCell, pair), 3 * Lanes * v);
+        var answer = Vector256.LoadUnsafe(ref blocks[at]) * loads[0] + Vector256.LoadUnsafe(ref blocks[at], Lanes) * loads[1] + Vector256.LoadUnsafe(ref blocks[at], 2 * Lanes) * loads[2];
+        return Vector256.Dot(answer, loads); // the last lane of a block is 0
     }
 }

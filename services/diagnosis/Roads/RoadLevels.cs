@@ -18,6 +18,7 @@ internal sealed class RoadLevels(RoadSystem s)
     private readonly double[] _edge = new double[2 * s.Components * (Lanes * s.Classes + 2)];       // each component's two rows against the border
     private readonly double[] _inverse = new double[3 * s.Components];
     private readonly double[] _solved = new double[2 * s.Components * (Lanes * s.Classes + 2)];
+    private readonly double[] _lean = new double[2 * s.Graph.Vehicles]; // mean bank the vehicle's torque and angle were seen on
     private Matrix<double> _borderInverse = Matrix<double>.Build.Dense(1, 1);
 
     /// <summary>One part's sums: the border's own, and for each component met its three and its two rows.</summary>
@@ -25,6 +26,8 @@ internal sealed class RoadLevels(RoadSystem s)
 
     public void Build()
     {
+        for (var v = 0; v < s.Graph.Vehicles; v++)
+            for (var lane = 0; lane < 2; lane++) _lean[2 * v + lane] = s.Tilt[Lanes * v + lane] / s.Diagonal[Lanes * v + lane];
         var parts = new Part[s.Graph.ByCell.Count];
         s.Graph.ByCell.Each((part, from, to) => parts[part] = Cells(from, to));
         var border = new double[_border * _border];
@@ -44,7 +47,9 @@ internal sealed class RoadLevels(RoadSystem s)
         for (var i = 0; i < _border; i++) border[i * (_border + 1)] += s.PriorWeight[s.GainAt + i] + (i < Lanes * s.Classes && i % Lanes < 2 ? s.GainSquare[i] : 0);
         foreach (var part in parts)
         {
-            for (var i = 0; i < border.Length; i++) border[i] += part.Border[i];
+            // A cell wrote each pair of its unknowns once, on one side or the other of the diagonal.
+            for (var i = 0; i < _border; i++)
+                for (var j = 0; j < _border; j++) border[i * _border + j] += part.Border[i * _border + j] + (i == j ? 0 : part.Border[j * _border + i]);
             foreach (var (k, own, edge) in part.Met)
             {
                 for (var i = 0; i < 3; i++) _own[3 * k + i] += own[i];
@@ -86,8 +91,7 @@ internal sealed class RoadLevels(RoadSystem s)
         }
     }
 
-    /// <summary>Mean bank the vehicle's witness was seen on.</summary>
-    private double Lean(int v, int lane) => s.Tilt[Lanes * v + lane] / s.Diagonal[Lanes * v + lane];
+    private double Lean(int v, int lane) => _lean[2 * v + lane];
 
     private Part Cells(int from, int to)
     {
@@ -129,7 +133,8 @@ internal sealed class RoadLevels(RoadSystem s)
                 var scaled = load[touched[i]] / pivot;
                 edge[touched[i]] -= scaled * shift;
                 edge[_border + touched[i]] += scaled * tie;
-                for (var j = 0; j < count; j++) part.Border[touched[i] * _border + touched[j]] -= scaled * load[touched[j]];
+                var row = part.Border.AsSpan(touched[i] * _border, _border);
+                for (var j = 0; j <= i; j++) row[touched[j]] -= scaled * load[touched[j]];
             }
         }
         return part;

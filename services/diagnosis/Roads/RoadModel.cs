@@ -30,11 +30,11 @@ public static class RoadModel
         // The class spreads are estimated once, at a rough solution, and used once.
         solve.Run(roughly: true);
         solve.Settle();
-        var rough = new RoadErrors(solve.System, denseUpTo, probes: false);
+        var rough = new RoadErrors(solve.System, denseUpTo, roughly: true);
         solve.UpdateSpreads(rough.Variances());
         solve.Run(roughly: false);
         solve.Settle();
-        return Publish(problem, solve, new RoadErrors(solve.System, denseUpTo, probes: true, rough));
+        return Publish(problem, solve, new RoadErrors(solve.System, denseUpTo));
     }
 
     /// <summary>
@@ -51,15 +51,15 @@ public static class RoadModel
         var solve = new RoadSolve(problem, start);
         solve.Run(roughly: true);
         solve.Settle();
-        return start.Forward(Publish(problem, solve, new RoadErrors(solve.System, DenseUpTo, probes: false)));
+        return start.Forward(Publish(problem, solve, new RoadErrors(solve.System, DenseUpTo)));
     }
 
     private static RoadFit Publish(RoadProblem problem, RoadSolve solve, RoadErrors errors)
     {
-        var (variance, bankVariance) = (errors.Variances(), errors.CellVariances());
+        var (variance, bankVariance, levelVariance) = (errors.Variances(), errors.CellVariances(), errors.LevelVariances());
         return new()
         {
-            Vehicles = new VehicleReading(problem, solve, variance, bankVariance, errors).All(),
+            Vehicles = new VehicleReading(problem, solve, variance, bankVariance, levelVariance).All(),
             Gains = problem.Gains.Select((g, i) => new ClassGain
             {
                 Class = g.Class,

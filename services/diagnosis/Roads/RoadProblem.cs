@@ -6,14 +6,17 @@ namespace WearWatch.Diagnosis.Roads;
 /// <summary>Where a cell's bank is drawn to: the usual crown of its side (level shared), or what an earlier fit found.</summary>
 internal readonly record struct CellPrior(double Bank, double Weight, bool OnLevel);
 
-/// <summary>Runs and vehicles sorted and numbered, witnesses in flat columns of four lanes a run: torque, angle, bank reading, none.</summary>
+/// <summary>Runs and vehicles sorted and numbered, witnesses in flat columns: torque, angle, bank reading.</summary>
 internal sealed class RoadProblem
 {
     /// <summary>With fewer steady runs than this, driven ones are taken too.</summary>
     public const int EnoughSteadyRuns = 5;
 
-    /// <summary>Lanes a run, vehicle or class takes in every column; the witnesses fill the first three.</summary>
+    /// <summary>Lanes a vehicle, pair, trip or class takes; the witnesses fill the first three.</summary>
     public const int Lanes = 4;
+
+    /// <summary>Numbers a sighting takes; read four at a time, the last belonging to the next sighting and counting for nothing.</summary>
+    public const int Witnesses = 3;
 
     private readonly RoadRow[] _rows;
     private readonly bool[] _assistLogged;
@@ -34,7 +37,7 @@ internal sealed class RoadProblem
         GainOf = Vehicles.Select(v => Array.IndexOf(Gains, (v.Class, KindOf(v)))).ToArray();
         (TakesDriven, _assistLogged) = (new bool[Vehicles.Length], new bool[Vehicles.Length]);
         TripFrom = new int[Vehicles.Length + 1];
-        (CellOfRun, TripOf, _cellNumber) = (new int[Order.Length], new int[Order.Length], new int[runs.Cells.Count]);
+        (CellOfRun, _cellNumber) = (new int[Order.Length], new int[runs.Cells.Count]);
         Array.Fill(CellOfRun, -1);
         Array.Fill(_cellNumber, -1);
         var sightingFrom = new int[Vehicles.Length + 1];
@@ -44,13 +47,18 @@ internal sealed class RoadProblem
             if (CellOfRun[i] >= 0) (place[at], cell[at++]) = (i, CellOfRun[i]);
         (ComponentOfVehicle, Components) = RoadGraph.Join(Vehicles.Length, sightingFrom, cell, _cells.Count);
         CellComponent = SortCells(cell);
-        for (var v = 0; v < Vehicles.Length; v++) Array.Sort(cell, place, sightingFrom[v], sightingFrom[v + 1] - sightingFrom[v]);
-        PlaceBack(sightingFrom, cell, place);
+        new RoadParts(sightingFrom).Each((_, from, to) =>
+        {
+            for (var v = from; v < to; v++) ByCell(cell, place, sightingFrom[v], sightingFrom[v + 1]);
+        });
         Graph = new(sightingFrom, cell, _cells.Count);
         (PlaceOf, Trip, TripSize) = (place, new int[place.Length], new float[Lanes * Trips]);
-        (Values, Variances) = (new float[Lanes * place.Length], new float[Lanes * place.Length]);
+        (Values, Variances) = (new float[Witnesses * place.Length + 1], new float[Witnesses * place.Length + 1]);
         Present = new bool[Lanes * Vehicles.Length];
-        for (var v = 0; v < Vehicles.Length; v++) Fill(v);
+        Graph.ByVehicle.Each((_, from, to) =>
+        {
+            for (var v = from; v < to; v++) Fill(v);
+        });
     }
 
     public RoadRuns Runs { get; }
@@ -65,8 +73,7 @@ internal sealed class RoadProblem
     public bool[] TakesDriven { get; }
     /// <summary>By place in the order; −1 where the run is not part of the fit.</summary>
     public int[] CellOfRun { get; }
-    /// <summary>By place in the order: one vehicle's runs of one stream.</summary>
-    public int[] TripOf { get; }
+    /// <summary>One vehicle's runs of one stream are a trip.</summary>
     public int Trips { get; private set; }
     /// <summary>First trip of each vehicle; one more than there are vehicles.</summary>
     public int[] TripFrom { get; }
@@ -112,7 +119,6 @@ internal sealed class RoadProblem
             _assistLogged[v] |= run.IncludesAssist;
             if (run.Mode == RunMode.Coast) steady++;
             if (i > RunFrom[v] && Run(i - 1).Stream != run.Stream) Trips++;
-            TripOf[i] = Trips;
         }
         if (RunFrom[v + 1] > RunFrom[v]) Trips++;
         TripFrom[v + 1] = Trips;
@@ -156,34 +162,37 @@ internal sealed class RoadProblem
         return sorted;
     }
 
-    /// <summary>The sort by cell leaves sightings of one cell in any order; this puts them in order of their runs.</summary>
-    private static void PlaceBack(int[] sightingFrom, int[] cell, int[] place)
+    /// <summary>Sorts one vehicle's sightings by cell, and those of one cell by their runs.</summary>
+    private static void ByCell(int[] cell, int[] place, int from, int to)
     {
-        for (var v = 0; v + 1 < sightingFrom.Length; v++)
-            for (int i = sightingFrom[v], from = i; i < sightingFrom[v + 1]; i++)
-                if (i + 1 == sightingFrom[v + 1] || cell[i + 1] != cell[i])
-                {
-                    Array.Sort(place, from, i + 1 - from);
-                    from = i + 1;
-                }
+        Array.Sort(cell, place, from, to - from);
+        for (var i = from; i < to; i++)
+            if (i + 1 == to || cell[i + 1] != cell[i])
+            {
+                Array.Sort(place, from, i + 1 - from);
+                from = i + 1;
+            }
     }
 
     private void Fill(int v)
     {
-        for (var i = Graph.SightingFrom[Graph.VehicleFrom[v]]; i < Graph.SightingFrom[Graph.VehicleFrom[v + 1]]; i++)
+        var (from, to) = (Graph.SightingFrom[Graph.VehicleFrom[v]], Graph.SightingFrom[Graph.VehicleFrom[v + 1]]);
+        // Streams of a vehicle stand together in the order, so that trips are counted along it.
+        var (trips, trip) = (new int[RunFrom[v + 1] - RunFrom[v]], TripFrom[v]);
+        for (var i = 1; i < trips.Length; i++) trips[i] = Run(RunFrom[v] + i).Stream == Run(RunFrom[v] + i - 1).Stream ? trips[i - 1] : trips[i - 1] + 1;
+        for (var i = from; i < to; i++)
         {
             ref readonly var run = ref Run(PlaceOf[i]);
-            Trip[i] = TripOf[PlaceOf[i]];
+            Trip[i] = trip + trips[PlaceOf[i] - RunFrom[v]];
             Set(v, i, 0, TorqueCounts(v, run) ? run.Torque : float.NaN, run.TorqueError);
             Set(v, i, 1, run.Angle, run.AngleError);
             Set(v, i, 2, run.Bank, run.BankError);
-            Set(v, i, 3, float.NaN, 0);
         }
     }
 
     private void Set(int v, int sighting, int lane, float value, float error)
     {
-        var (at, there) = (Lanes * sighting + lane, !float.IsNaN(value));
+        var (at, there) = (Witnesses * sighting + lane, !float.IsNaN(value));
         (Values[at], Variances[at]) = there ? (value, error * error) : (0, float.PositiveInfinity);
         if (!there) return;
         Present[Lanes * v + lane] = true;

@@ -1,9 +1,11 @@
+using System.Runtime.InteropServices;
 using WearWatch.Diagnosis.Statistics;
 using WearWatch.Diagnosis.Steering;
 
 namespace WearWatch.Diagnosis.Roads;
 
 /// <summary>One straight run without its names. A witness that was not measured, or not fit to use, is NaN.</summary>
+[StructLayout(LayoutKind.Sequential, Pack = 4)]
 internal struct RoadRow
 {
     public int Vehicle, Stream, Cell; // Cell is −1 without position
@@ -15,7 +17,7 @@ internal struct RoadRow
 }
 
 /// <summary>
-/// Straight runs as one table of numbers, names kept once: 64 bytes a run, so that millions can be added as they are read. Figures
+/// Straight runs as one table of numbers, names kept once: 60 bytes a run, so that millions can be added as they are read. Figures
 /// are kept to 7 digits, far finer than any run's own error.
 /// </summary>
 public sealed class RoadRuns(int capacity = 0)

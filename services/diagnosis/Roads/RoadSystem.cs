@@ -13,21 +13,25 @@ internal sealed class RoadSystem
 {
     private const int Lanes = RoadProblem.Lanes;
     private const int MostSteps = 500;
-    private static readonly Vector256<double> Witnesses = Vector256.Create(-1L, -1L, -1L, 0).AsDouble();
+    public static readonly Vector256<double> Witnesses = Vector256.Create(-1L, -1L, -1L, 0).AsDouble();
 
     private readonly float[] _byCell;
+    private readonly double[] _perPivot;
     private readonly double[] _share;  // a cell's answer to the vector at hand, and the same times its bank
     private readonly RoadLevels _levels;
+    private readonly double[][] _vectors; // of the conjugate gradients; the first, the change, is zero when the right-hand side is made
 
     public RoadSystem(RoadGraph graph, int[] classOf, int classes, int[] component, int[] cellComponent, int components, int[] cellSide)
     {
         (Graph, ClassOf, Classes, Component, CellComponent, Components, CellSide) = (graph, classOf, classes, component, cellComponent, components, cellSide);
         (Coefficients, _byCell) = (new float[Lanes * graph.Pairs], new float[Lanes * graph.Pairs]);
         (Bank, Pivot, Rest, _share, Priors) = (new double[graph.Cells], new double[graph.Cells], new double[graph.Cells], new double[2 * graph.Cells], new CellPrior[graph.Cells]);
+        _perPivot = new double[graph.Cells];
         (Diagonal, Tilt, Block) = (new double[Lanes * graph.Vehicles], new double[Lanes * graph.Vehicles], new double[3 * Lanes * graph.Vehicles]);
         (PriorWeight, Force, U) = (new double[Size], new double[Size], new double[Size]);
         Array.Fill(PriorWeight, 1);
         (Gain, GainSquare) = (new double[Lanes * classes], new double[Lanes * classes]);
+        _vectors = [new double[Size], new double[Size], new double[Size], new double[Size], new double[Size]];
         _levels = new(this);
     }
 
@@ -73,23 +77,25 @@ internal sealed class RoadSystem
     public double Level(int cell) => Priors[cell].OnLevel ? U[CrownAt + CellSide[cell]] + U[LevelAt + CellComponent[cell]] : 0;
 
     /// <summary>Takes over new coefficients, priors and present values.</summary>
-    public void Prepare()
+    /// <param name="afresh">False keeps the preconditioner of before, which serves as long as the weights hardly change.</param>
+    public void Prepare(bool afresh = true)
     {
         var taken = new double[Graph.ByCell.Count][];
         Graph.ByCell.Each((part, from, to) => taken[part] = Transpose(from, to));
         Taken = Sum(taken, Lanes);
         var squares = new double[Graph.ByVehicle.Count][];
-        Graph.ByVehicle.Each((part, from, to) => squares[part] = Blocks(from, to));
+        Graph.ByVehicle.Each((part, from, to) => squares[part] = Vehicles(from, to, afresh));
         Sum(squares, GainSquare.Length).CopyTo(GainSquare, 0);
-        _levels.Build();
+        if (afresh) _levels.Build();
     }
 
     /// <summary>Solves for the change of every unknown and of the cells, until the residual has fallen by the factor; applies it.</summary>
-    /// <returns>The change of the unknowns.</returns>
+    /// <returns>The change of the unknowns, until the next step.</returns>
     public double[] Step(double fall)
     {
-        var (change, residual, direction, times) = (new double[Size], Right(), new double[Size], new double[Size]);
-        var scaled = new double[Size];
+        var (change, residual, direction, times, scaled) = (_vectors[0], _vectors[1], _vectors[2], _vectors[3], _vectors[4]);
+        Array.Clear(change);
+        Right(residual);
         Precondition(residual, scaled);
         var energy = Dot(residual, scaled);
         var goal = energy * fall * fall;
@@ -111,7 +117,7 @@ internal sealed class RoadSystem
             energy = next;
         }
         Answer(change);
-        for (var c = 0; c < Bank.Length; c++) Bank[c] += Rest[c] / Pivot[c] - _share[2 * c];
+        for (var c = 0; c < Bank.Length; c++) Bank[c] += Rest[c] * _perPivot[c] - _share[2 * c];
         for (var i = 0; i < change.Length; i++) U[i] += change[i];
         return change;
     }
@@ -147,9 +153,10 @@ internal sealed class RoadSystem
         return Vector256.LoadUnsafe(ref block) * r[Lanes * v] + Vector256.LoadUnsafe(ref block, Lanes) * r[Lanes * v + 1] + Vector256.LoadUnsafe(ref block, 2 * Lanes) * r[Lanes * v + 2];
     }
 
-    public static Vector256<double> Load(float[] coefficients, int pair)
+    public static Vector256<double> Load(float[] coefficients, int pair) => Widen(Vector128.LoadUnsafe(ref coefficients[Lanes * pair]));
+
+    public static Vector256<double> Widen(Vector128<float> four)
     {
-        var four = Vector128.LoadUnsafe(ref coefficients[Lanes * pair]);
         return Avx.IsSupported ? Avx.ConvertToVector256Double(four) : Vector256.Create(Vector128.WidenLower(four), Vector128.WidenUpper(four));
     }
 
@@ -174,13 +181,14 @@ internal sealed class RoadSystem
             }
             var prior = Priors[c];
             Pivot[c] = Vector256.Sum(held) + prior.Weight;
+            _perPivot[c] = 1 / Pivot[c];
             Rest[c] = rest - prior.Weight * (Bank[c] - prior.Bank - Level(c));
-            taken += held / Pivot[c];
+            taken += held * _perPivot[c];
         }
         return [taken[0], taken[1], taken[2], 0];
     }
 
-    private double[] Blocks(int from, int to)
+    private double[] Vehicles(int from, int to, bool blocks)
     {
         var squares = new double[GainSquare.Length];
         for (var v = from; v < to; v++)
@@ -188,7 +196,6 @@ internal sealed class RoadSystem
             var gain = Vector256.LoadUnsafe(ref Gain[Lanes * ClassOf[v]]);
             var perGain = Vector256.ConditionalSelect(Vector256.Equals(gain, Vector256<double>.Zero), Vector256<double>.Zero, Vector256<double>.One / gain);
             var (diagonal, tilt, square) = (Vector256<double>.Zero, Vector256<double>.Zero, Vector256<double>.Zero);
-            var (a, b, c) = (Vector256<double>.Zero, Vector256<double>.Zero, Vector256<double>.Zero);
             for (var e = Graph.VehicleFrom[v]; e < Graph.VehicleFrom[v + 1]; e++)
             {
                 var (load, cell) = (Load(Coefficients, e), Graph.CellOf[e]);
@@ -196,18 +203,28 @@ internal sealed class RoadSystem
                 diagonal += weight;
                 tilt += weight * bank;
                 square += weight * (bank * bank);
-                var scaled = load / Pivot[cell];
-                a += scaled * load[0];
-                b += scaled * load[1];
-                c += scaled * load[2];
             }
             diagonal += Vector256.LoadUnsafe(ref PriorWeight[Lanes * v]);
             diagonal.StoreUnsafe(ref Diagonal[Lanes * v]);
             tilt.StoreUnsafe(ref Tilt[Lanes * v]);
             for (var lane = 0; lane < 3; lane++) squares[Lanes * ClassOf[v] + lane] += square[lane];
-            Invert(diagonal[0] - a[0], -a[1], -a[2], diagonal[1] - b[1], -b[2], diagonal[2] - c[2], 3 * Lanes * v);
+            if (blocks) Invert(v, diagonal);
         }
         return squares;
+    }
+
+    /// <summary>A vehicle's block of the reduced system, inverted.</summary>
+    private void Invert(int v, Vector256<double> diagonal)
+    {
+        var (a, b, c) = (Vector256<double>.Zero, Vector256<double>.Zero, Vector256<double>.Zero);
+        for (var e = Graph.VehicleFrom[v]; e < Graph.VehicleFrom[v + 1]; e++)
+        {
+            var scaled = Load(Coefficients, e) * _perPivot[Graph.CellOf[e]];
+            a += scaled * Coefficients[Lanes * e];
+            b += scaled * Coefficients[Lanes * e + 1];
+            c += scaled * Coefficients[Lanes * e + 2];
+        }
+        Invert(diagonal[0] - a[0], -a[1], -a[2], diagonal[1] - b[1], -b[2], diagonal[2] - c[2], 3 * Lanes * v);
     }
 
     /// <summary>Inverse of a symmetric block of three.</summary>
@@ -221,21 +238,20 @@ internal sealed class RoadSystem
         Vector256.Create(r * scale, t * scale, w * scale, 0).StoreUnsafe(ref Block[at + 2 * Lanes]);
     }
 
-    private double[] Right()
+    private void Right(double[] right)
     {
-        var (right, zero) = (new double[Size], new double[Size]);
+        Array.Clear(right);
         for (var c = 0; c < Bank.Length; c++)
         {
-            var share = Rest[c] / Pivot[c];
+            var share = Rest[c] * _perPivot[c];
             (_share[2 * c], _share[2 * c + 1]) = (share, share * Bank[c]);
             if (!Priors[c].OnLevel) continue;
             var pull = Priors[c].Weight * (Bank[c] - Priors[c].Bank - Level(c) + share);
             Force[LevelAt + CellComponent[c]] += pull;
             Force[CrownAt + CellSide[c]] += pull;
         }
-        Scatter(zero, right);
+        Scatter(_vectors[0], right);
         for (var i = 0; i < right.Length; i++) right[i] += Force[i];
-        return right;
     }
 
     /// <summary>How each cell answers a change of the unknowns, with its sign turned, into the shares.</summary>
@@ -252,7 +268,7 @@ internal sealed class RoadSystem
                 sum += Load(_byCell, j) * (Vector256.LoadUnsafe(ref x[Lanes * v]) + bank * Vector256.LoadUnsafe(ref x[GainAt + Lanes * classOf[v]]));
             }
             var level = Priors[c].OnLevel ? Priors[c].Weight * (x[LevelAt + CellComponent[c]] + x[CrownAt + CellSide[c]]) : 0;
-            var share = (Vector256.Sum(sum) - level) / Pivot[c];
+            var share = (Vector256.Sum(sum) - level) * _perPivot[c];
             (_share[2 * c], _share[2 * c + 1]) = (share, share * Bank[c]);
         }
     });

@@ -16,16 +16,20 @@ internal sealed class RoadWeighing(RoadProblem p, RoadSystem system, TripSpread 
     public double[] Between { get; private set; } = new double[Lanes];
 
     /// <summary>Squared run and trip spreads by witness.</summary>
-    public static (Vector256<double> Run, Vector256<double> Trip) Squares((double Run, double Trip)[] noise) =>
-        (Vector256.Create(noise[0].Run, noise[1].Run, noise[2].Run, 0) * Vector256.Create(noise[0].Run, noise[1].Run, noise[2].Run, 0),
-         Vector256.Create(noise[0].Trip, noise[1].Trip, noise[2].Trip, 0) * Vector256.Create(noise[0].Trip, noise[1].Trip, noise[2].Trip, 0));
+    public static (Vector128<float> Run, Vector128<float> Trip) Squares((double Run, double Trip)[] noise)
+    {
+        static float Square(double x) => (float)(x * x);
+        return (Vector128.Create(Square(noise[0].Run), Square(noise[1].Run), Square(noise[2].Run), 0), Vector128.Create(Square(noise[0].Trip), Square(noise[1].Trip), Square(noise[2].Trip), 0));
+    }
 
     /// <summary>Weights of a sighting's witnesses for their residuals: the run's and its own variance, and the trip's times its runs, so that a trip never counts for more than one draw of its own spread.</summary>
-    public static Vector256<double> Weight(Vector256<double> residual, Vector256<double> own, Vector256<double> size, Vector256<double> run, Vector256<double> trip, bool robust)
+    /// <remarks>Single precision: seven digits of a weight are plenty, and the answer at which the steps end does not depend on the rest.</remarks>
+    public static Vector256<double> Weight(Vector256<double> residual, Vector128<float> own, Vector128<float> size, Vector128<float> run, Vector128<float> trip, Vector128<float> spread, bool robust)
     {
-        var weight = Vector256<double>.One / (own + run + size * trip);
-        var bounded = Vector256.Create(RobustMean.HuberK) * Vector256.Sqrt(own + run + trip) / Vector256.Abs(residual);
-        return robust ? weight * Vector256.Min(Vector256<double>.One, bounded) : weight;
+        var variance = own + run + size * trip;
+        if (!robust) return RoadSystem.Widen(Vector128<float>.One / variance) & RoadSystem.Witnesses;
+        var away = Vector128.Abs(Vector128.Narrow(residual.GetLower(), residual.GetUpper()));
+        return RoadSystem.Widen(Vector128.Min(Vector128<float>.One, Vector128.Create((float)RobustMean.HuberK) * spread / away) / variance) & RoadSystem.Witnesses;
     }
 
     public void Pass((double Run, double Trip)[] noise, bool robust)
@@ -54,7 +58,7 @@ internal sealed class RoadWeighing(RoadProblem p, RoadSystem system, TripSpread 
         (Within, Between) = (Total(parts.Select(x => x.Within)), Total(parts.Select(x => x.Between)));
     }
 
-    private void Vehicle(int v, Vector256<double> run, Vector256<double> trip, bool robust, double[] gains, Vector256<double>[] sums, Vector256<double>[] squares)
+    private void Vehicle(int v, Vector128<float> run, Vector128<float> trip, bool robust, double[] gains, Vector256<double>[] sums, Vector256<double>[] squares)
     {
         var (at, first) = (Lanes * system.ClassOf[v], p.TripFrom[v]);
         var (gain, mine) = (Vector256.LoadUnsafe(ref system.Gain[at]), Vector256.LoadUnsafe(ref system.U[Lanes * v]));
@@ -65,13 +69,15 @@ internal sealed class RoadWeighing(RoadProblem p, RoadSystem system, TripSpread 
             var (predicted, weights, pull) = (mine + gain * bank, Vector256<double>.Zero, Vector256<double>.Zero);
             for (var i = p.Graph.SightingFrom[e]; i < p.Graph.SightingFrom[e + 1]; i++)
             {
-                var (own, t) = (RoadSystem.Load(p.Variances, i), p.Trip[i]);
-                var residual = RoadSystem.Load(p.Values, i) - predicted;
-                var weight = Weight(residual, own, spread.Size(t), run, trip, robust);
+                var (own, t) = (Vector128.LoadUnsafe(ref p.Variances[RoadProblem.Witnesses * i]), p.Trip[i]);
+                var deviation = Vector128.Sqrt(own + run + trip);
+                var residual = RoadSystem.Widen(Vector128.LoadUnsafe(ref p.Values[RoadProblem.Witnesses * i])) - predicted;
+                var weight = Weight(residual, own, Vector128.LoadUnsafe(ref p.TripSize[Lanes * t]), run, trip, deviation, robust);
                 weights += weight;
                 pull += weight * residual;
-                var bound = Vector256.Create(TripSpread.Cut) * Vector256.Sqrt(own + run + trip);
-                var cut = Vector256.Min(Vector256.Max(residual, -bound), bound) & Vector256.LessThan(own, Vector256.Create(double.PositiveInfinity));
+                // A silent witness has an infinite deviation, and its residual counts for nothing.
+                var bound = RoadSystem.Widen(deviation) * TripSpread.Cut;
+                var cut = Vector256.Min(Vector256.Max(residual, -bound), bound) & Vector256.LessThan(bound, Vector256.Create(double.PositiveInfinity));
                 sums[t - first] += cut;
                 squares[t - first] += cut * cut;
             }
@@ -81,7 +87,7 @@ internal sealed class RoadWeighing(RoadProblem p, RoadSystem system, TripSpread 
             force += pull;
             tilted += pull * bank;
         }
-        force.StoreUnsafe(ref system.Force[Lanes * v]);
+        (force & RoadSystem.Witnesses).StoreUnsafe(ref system.Force[Lanes * v]);
         (Vector256.LoadUnsafe(ref gains[at]) + tilted).StoreUnsafe(ref gains[at]);
     }
 

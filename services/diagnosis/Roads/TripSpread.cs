@@ -28,7 +28,7 @@ internal sealed class TripSpread
         var own = new double[Lanes * problem.Trips];
         for (var i = 0; i < problem.Trip.Length; i++)
             for (var lane = 0; lane < 3; lane++)
-                if (float.IsFinite(problem.Variances[Lanes * i + lane])) own[Lanes * problem.Trip[i] + lane] += problem.Variances[Lanes * i + lane];
+                if (problem.Variances[RoadProblem.Witnesses * i + lane] is var variance && float.IsFinite(variance)) own[Lanes * problem.Trip[i] + lane] += variance;
         for (var v = 0; v < problem.Vehicles.Length; v++) for (var lane = 0; lane < 3; lane++) Count(v, lane, own);
     }
 

@@ -5,7 +5,7 @@ using WearWatch.Diagnosis.Steering;
 namespace WearWatch.Diagnosis.Roads;
 
 /// <summary>Reads each vehicle's figures off the solved fit.</summary>
-internal sealed class VehicleReading(RoadProblem problem, RoadSolve solve, double[] variance, double[] bankVariance, RoadErrors errors)
+internal sealed class VehicleReading(RoadProblem problem, RoadSolve solve, double[] variance, double[] bankVariance, double[] levelVariance)
 {
     public const int EvidenceKept = 5;
     private const int LeastModeRuns = 3;
@@ -40,7 +40,7 @@ internal sealed class VehicleReading(RoadProblem problem, RoadSolve solve, doubl
             BrakePullNm = pull is null ? null : Extra(v, RunMode.Brake),
             DrivePullNm = pull is null || problem.TakesDriven[v] ? null : Extra(v, RunMode.Drive),
             BankReadingBias = reads ? new(_system.U[Lanes * v + 2], Math.Sqrt(variance[Lanes * v + 2])) : null,
-            RoadLevelError = to > from ? Math.Sqrt(errors.LevelVariance(problem.ComponentOfVehicle[v], (int)problem.Vehicles[v].TrafficSide)) : null,
+            RoadLevelError = to > from ? Math.Sqrt(levelVariance[2 * problem.ComponentOfVehicle[v] + (int)problem.Vehicles[v].TrafficSide]) : null,
             Runs = to - from,
             Seconds = seconds,
             TorqueIncludesAssist = problem.Vehicles[v].Torque == TorqueKind.Total,
@@ -59,18 +59,32 @@ internal sealed class VehicleReading(RoadProblem problem, RoadSolve solve, doubl
         var (pull, angle) = (solve.PullSpread[problem.GainOf[v]], solve.OffCentreSpread[problem.GainOf[v]]);
         var unit = Vector256.Create(pull * pull, angle * angle, RoadPriors.CellWidth * RoadPriors.CellWidth, 0);
         var (gain, mine) = (Vector256.LoadUnsafe(ref _system.Gain[Lanes * problem.GainOf[v]]), Vector256.LoadUnsafe(ref _system.U[Lanes * v]));
-        var (weights, places) = (new double[to - from], new int[to - from]);
+        var weights = new double[to - from];
         for (var e = graph.VehicleFrom[v]; e < graph.VehicleFrom[v + 1]; e++)
             for (var i = graph.SightingFrom[e]; i < graph.SightingFrom[e + 1]; i++)
             {
-                var residual = RoadSystem.Load(problem.Values, i) - mine - gain * _system.Bank[graph.CellOf[e]];
-                var weight = RoadWeighing.Weight(residual, RoadSystem.Load(problem.Variances, i), RoadSystem.Load(problem.TripSize, problem.Trip[i]), run, trip, robust: true);
-                (weights[i - from], places[i - from]) = (-Vector256.Sum(weight * unit), problem.PlaceOf[i]);
+                var own = Vector128.LoadUnsafe(ref problem.Variances[RoadProblem.Witnesses * i]);
+                var residual = RoadSystem.Widen(Vector128.LoadUnsafe(ref problem.Values[RoadProblem.Witnesses * i])) - mine - gain * _system.Bank[graph.CellOf[e]];
+                var weight = RoadWeighing.Weight(residual, own, Vector128.LoadUnsafe(ref problem.TripSize[Lanes * problem.Trip[i]]), run, trip, Vector128.Sqrt(own + run + trip), robust: true);
+                weights[i - from] = Vector256.Sum(weight * unit);
             }
-        Array.Sort(places, weights); // so that equal weights keep the order of their runs
-        var ranked = Enumerable.Range(0, places.Length).ToArray();
-        Array.Sort(ranked, (a, b) => weights[a] != weights[b] ? weights[a].CompareTo(weights[b]) : a.CompareTo(b));
-        return ranked.Select(i => Name(places[i])).Distinct().Take(EvidenceKept).ToArray();
+        return Heaviest(weights, from);
+    }
+
+    /// <summary>Of equal weights the earlier run comes first, and a run that was cut in two is named once.</summary>
+    private string[] Heaviest(double[] weights, int from)
+    {
+        var names = new List<string>(EvidenceKept);
+        while (names.Count < EvidenceKept)
+        {
+            var best = -1;
+            for (var i = 0; i < weights.Length; i++)
+                if (weights[i] >= 0 && (best < 0 || weights[i] > weights[best] || (weights[i] == weights[best] && problem.PlaceOf[from + i] < problem.PlaceOf[from + best]))) best = i;
+            if (best < 0) break;
+            weights[best] = -1;
+            if (Name(problem.PlaceOf[from + best]) is var name && !names.Contains(name)) names.Add(name);
+        }
+        return [.. names];
     }
 
     private string Name(int place)
@@ -96,7 +110,7 @@ internal sealed class VehicleReading(RoadProblem problem, RoadSolve solve, doubl
             ref readonly var run = ref problem.Run(i);
             if (run.Mode != mode || !problem.TorqueCounts(v, run)) continue;
             var (bank, bankError) = BankUnder(v, i);
-            rows.Add((problem.TripOf[i], run.Torque - gain * bank, (double)run.TorqueError * run.TorqueError + noise * noise + gain * gain * bankError));
+            rows.Add((run.Stream, run.Torque - gain * bank, (double)run.TorqueError * run.TorqueError + noise * noise + gain * gain * bankError));
         }
         if (rows.Count < LeastModeRuns) return null;
         var sizes = rows.CountBy(r => r.Trip).ToDictionary();

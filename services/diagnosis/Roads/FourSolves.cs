@@ -31,7 +31,6 @@ internal sealed class FourSolves
     /// <summary>The slow direction of each component, and the reduced system's value on it; 0 where there is none.</summary>
     public float[] Slow { get; }
     public double[] SlowWeight { get; }
-    public int Multiplications { get; private set; }
 
     /// <summary>Adds to x the solution for what right holds; right is used up.</summary>
     public void Solve(float[] right, float[] x, double fall, int most)
@@ -64,7 +63,6 @@ internal sealed class FourSolves
 
     public void Multiply(float[] x, float[] product)
     {
-        Multiplications++;
         var graph = _s.Graph;
         graph.ByCell.Each((_, from, to) =>
         {

@@ -48,7 +48,6 @@ internal sealed class RoadErrors
         _covariance = new(system, _border, _columns, _answers);
     }
 
-    public int Multiplications { get; private set; }
     /// <summary>Largest standard error of a probed variance, over the variance, as the probes' own scatter tells.</summary>
     public double ProbeError { get; private set; }
 
@@ -98,7 +97,6 @@ internal sealed class RoadErrors
         var (x, column) = (new double[_s.Size], new double[_s.Size]);
         for (var i = _s.LevelAt; i < _s.Size; i++) x[i] = ones(i) ? 1 : 0;
         _s.Multiply(x, column);
-        Multiplications++;
         return column;
     }
 
@@ -113,7 +111,6 @@ internal sealed class RoadErrors
             _conditional[i] += _slow[i] * _slow[i];
         }
         if (probes) Probe(solves);
-        Multiplications += solves.Multiplications;
     }
 
     /// <summary>First guess of the slow direction, all figures of a component moved by their gains, made better by one inverse iteration.</summary>

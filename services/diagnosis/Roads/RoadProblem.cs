@@ -21,6 +21,7 @@ internal sealed class RoadProblem
     private readonly RoadRow[] _rows;
     private readonly bool[] _assistLogged;
     private readonly int[] _cellNumber; // by the table's name
+    private int[] _cellOfRun = [];      // by place in the order, −1 where the run is not part of the fit; only while numbering
     private readonly List<(int Vehicle, int Name)> _cells = [];
 
     /// <param name="runs">All runs, or a day's new ones.</param>
@@ -37,14 +38,14 @@ internal sealed class RoadProblem
         GainOf = Vehicles.Select(v => Array.IndexOf(Gains, (v.Class, KindOf(v)))).ToArray();
         (TakesDriven, _assistLogged) = (new bool[Vehicles.Length], new bool[Vehicles.Length]);
         TripFrom = new int[Vehicles.Length + 1];
-        (CellOfRun, _cellNumber) = (new int[Order.Length], new int[runs.Cells.Count]);
-        Array.Fill(CellOfRun, -1);
+        (_cellOfRun, _cellNumber) = (new int[Order.Length], new int[runs.Cells.Count]);
+        Array.Fill(_cellOfRun, -1);
         Array.Fill(_cellNumber, -1);
         var sightingFrom = new int[Vehicles.Length + 1];
         for (var v = 0; v < Vehicles.Length; v++) sightingFrom[v + 1] = sightingFrom[v] + Place(v, earlier is not null && earlier(Vehicles[v].VehicleId));
         var (place, cell) = (new int[sightingFrom[^1]], new int[sightingFrom[^1]]);
         for (int at = 0, i = 0; i < Order.Length; i++)
-            if (CellOfRun[i] >= 0) (place[at], cell[at++]) = (i, CellOfRun[i]);
+            if (_cellOfRun[i] >= 0) (place[at], cell[at++]) = (i, _cellOfRun[i]);
         (ComponentOfVehicle, Components) = RoadGraph.Join(Vehicles.Length, sightingFrom, cell, _cells.Count);
         CellComponent = SortCells(cell);
         new RoadParts(sightingFrom).Each((_, from, to) =>
@@ -55,6 +56,7 @@ internal sealed class RoadProblem
         (PlaceOf, Trip, TripSize) = (place, new int[place.Length], new float[Lanes * Trips]);
         (Values, Variances) = (new float[Witnesses * place.Length + 1], new float[Witnesses * place.Length + 1]);
         Present = new bool[Lanes * Vehicles.Length];
+        _cellOfRun = [];
         Graph.ByVehicle.Each((_, from, to) =>
         {
             for (var v = from; v < to; v++) Fill(v);
@@ -71,8 +73,6 @@ internal sealed class RoadProblem
     public int[] GainOf { get; }
     /// <summary>Too few steady runs, so that its driven runs count as well.</summary>
     public bool[] TakesDriven { get; }
-    /// <summary>By place in the order; −1 where the run is not part of the fit.</summary>
-    public int[] CellOfRun { get; }
     /// <summary>One vehicle's runs of one stream are a trip.</summary>
     public int Trips { get; private set; }
     /// <summary>First trip of each vehicle; one more than there are vehicles.</summary>
@@ -99,8 +99,18 @@ internal sealed class RoadProblem
     public int SideOf(int cell) => (int)Vehicles[_cells[cell].Vehicle].TrafficSide;
     /// <summary>Null where the cell has no position.</summary>
     public string? CellName(int cell) => _cells[cell].Name < 0 ? null : Runs.Cells[_cells[cell].Name];
-    /// <summary>Number of the named cell the run lies in, if any run of the fit does.</summary>
-    public int CellUnder(int place) => CellOfRun[place] >= 0 ? CellOfRun[place] : Run(place).Cell is var name and >= 0 ? _cellNumber[name] : -1;
+
+    /// <summary>Cell under each of a vehicle's runs: its own in the fit, or else the named one, if any run of the fit lies there; −1 where none does.</summary>
+    public int[] CellsUnder(int vehicle)
+    {
+        var from = RunFrom[vehicle];
+        var cells = new int[RunFrom[vehicle + 1] - from];
+        for (var i = 0; i < cells.Length; i++) cells[i] = Run(from + i).Cell is var name and >= 0 ? _cellNumber[name] : -1;
+        for (var e = Graph.VehicleFrom[vehicle]; e < Graph.VehicleFrom[vehicle + 1]; e++)
+            for (var i = Graph.SightingFrom[e]; i < Graph.SightingFrom[e + 1]; i++) cells[PlaceOf[i] - from] = Graph.CellOf[e];
+        return cells;
+    }
+
 
     /// <summary>Whether the run's torque is of the vehicle's kind: with assist logged in some runs, only those count.</summary>
     public bool TorqueCounts(int vehicle, in RoadRow run) =>
@@ -130,8 +140,8 @@ internal sealed class RoadProblem
             var reads = !float.IsNaN(run.Bank);
             if (!reads && float.IsNaN(run.Angle) && !TorqueCounts(v, run)) continue;
             // A run without position has a bank of its own when it reads one; else the vehicle's runs share one road.
-            if (run.Cell >= 0) CellOfRun[i] = _cellNumber[run.Cell] is var known and >= 0 ? known : _cellNumber[run.Cell] = NewCell(v, run.Cell);
-            else CellOfRun[i] = reads ? NewCell(v, -1) : usual >= 0 ? usual : usual = NewCell(v, -1);
+            if (run.Cell >= 0) _cellOfRun[i] = _cellNumber[run.Cell] is var known and >= 0 ? known : _cellNumber[run.Cell] = NewCell(v, run.Cell);
+            else _cellOfRun[i] = reads ? NewCell(v, -1) : usual >= 0 ? usual : usual = NewCell(v, -1);
             placed++;
         }
         return placed;
@@ -157,7 +167,7 @@ internal sealed class RoadProblem
             (sorted[number[c]], _cells[number[c]]) = (component[c], owner[c]);
         }
         for (var i = 0; i < cell.Length; i++) cell[i] = number[cell[i]];
-        for (var i = 0; i < CellOfRun.Length; i++) if (CellOfRun[i] >= 0) CellOfRun[i] = number[CellOfRun[i]];
+        for (var i = 0; i < _cellOfRun.Length; i++) if (_cellOfRun[i] >= 0) _cellOfRun[i] = number[_cellOfRun[i]];
         for (var n = 0; n < _cellNumber.Length; n++) if (_cellNumber[n] >= 0) _cellNumber[n] = number[_cellNumber[n]];
         return sorted;
     }

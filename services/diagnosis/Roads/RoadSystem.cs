@@ -72,7 +72,6 @@ internal sealed class RoadSystem
     public double[] Block { get; }
     /// <summary>Observations' worth of each witness that the cells themselves take up.</summary>
     public double[] Taken { get; private set; } = new double[Lanes];
-    public int Multiplications { get; private set; }
 
     public double Level(int cell) => Priors[cell].OnLevel ? U[CrownAt + CellSide[cell]] + U[LevelAt + CellComponent[cell]] : 0;
 
@@ -125,7 +124,6 @@ internal sealed class RoadSystem
     /// <summary>The reduced system times a vector, without forming it.</summary>
     public void Multiply(double[] x, double[] product)
     {
-        Multiplications++;
         Answer(x);
         for (var i = LevelAt; i < Size; i++) product[i] = PriorWeight[i] * x[i];
         for (var c = 0; c < Bank.Length; c++)

@@ -96,7 +96,7 @@ internal sealed class VehicleReading(RoadProblem problem, RoadSolve solve, doubl
     /// <summary>Mean torque of one mode less that of steady running, each with its road's share removed. The shared level of the road cancels.</summary>
     private Estimate? Extra(int v, RunMode mode)
     {
-        var special = Mean(v, mode);
+        var special = Mean(v, mode); // first, since few vehicles have enough of it
         return special is null ? null : special - Mean(v, RunMode.Coast);
     }
 
@@ -104,12 +104,13 @@ internal sealed class VehicleReading(RoadProblem problem, RoadSolve solve, doubl
     {
         var (noise, trip) = solve.Noise[(int)Witness.Torque];
         var gain = _system.U[_system.GainAt + Lanes * problem.GainOf[v]];
-        var rows = new List<(int Trip, double Value, double Variance)>();
+        var (rows, cells) = (new List<(int Trip, double Value, double Variance)>(), Array.Empty<int>());
         for (var i = problem.RunFrom[v]; i < problem.RunFrom[v + 1]; i++)
         {
             ref readonly var run = ref problem.Run(i);
             if (run.Mode != mode || !problem.TorqueCounts(v, run)) continue;
-            var (bank, bankError) = BankUnder(v, i);
+            if (rows.Count == 0) cells = problem.CellsUnder(v);
+            var (bank, bankError) = BankUnder(v, i, cells[i - problem.RunFrom[v]]);
             rows.Add((run.Stream, run.Torque - gain * bank, (double)run.TorqueError * run.TorqueError + noise * noise + gain * gain * bankError));
         }
         if (rows.Count < LeastModeRuns) return null;
@@ -127,9 +128,8 @@ internal sealed class VehicleReading(RoadProblem problem, RoadSolve solve, doubl
     }
 
     /// <summary>Sine of the bank under a run and its variance, from the cell, the run's own reading, or the usual crown.</summary>
-    private (double Bank, double Variance) BankUnder(int v, int place)
+    private (double Bank, double Variance) BankUnder(int v, int place, int cell)
     {
-        var cell = problem.CellUnder(place);
         if (cell >= 0) return (_system.Bank[cell], bankVariance[cell]);
         ref readonly var run = ref problem.Run(place);
         if (problem.Present[Lanes * v + 2] && !float.IsNaN(run.Bank))

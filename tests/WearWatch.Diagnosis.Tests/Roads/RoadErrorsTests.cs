@@ -11,10 +11,16 @@ public class RoadErrorsTests
         [
             .. f.Vehicles.SelectMany(v => new[] { v.SteeringPullNm, v.OffCentreDeg, v.BankReadingBias }),
             .. f.Gains.SelectMany(g => new[] { g.TorqueNmPerSine, g.AngleDegPerSine }),
-            .. f.Crowns.Select(c => (Estimate?)c.Bank), .. f.Cells.Select(c => (Estimate?)c.Bank),
+            .. f.Crowns.Select(c => (Estimate?)c.Bank),
         ];
-        return All(exact).Zip(All(probed)).Where(x => x.First is not null).Select(x => (x.First!.Value.StandardError, x.Second!.Value.StandardError));
+        return Pairs(All(exact), All(probed));
     }
+
+    private static IEnumerable<(double Exact, double Probed)> CellErrors(RoadFit exact, RoadFit probed) =>
+        Pairs(exact.Cells.Select(c => (Estimate?)c.Bank), probed.Cells.Select(c => (Estimate?)c.Bank));
+
+    private static IEnumerable<(double Exact, double Probed)> Pairs(IEnumerable<Estimate?> exact, IEnumerable<Estimate?> probed) =>
+        exact.Zip(probed).Where(x => x.First is not null).Select(x => (x.First!.Value.StandardError, x.Second!.Value.StandardError));
 
     /// <summary>Fleets on shared roads, of depots that few runs join, and of convoys on few cells, with and without every witness.</summary>
     public static TheoryData<int, int, int, bool> Fleets => new() { { 60, 150, 1, true }, { 60, 120, 4, true }, { 40, 12, 1, true }, { 50, 100, 1, false } };
@@ -25,8 +31,10 @@ public class RoadErrorsTests
     {
         var fleet = new RoadFleet(7) { Vehicles = vehicles, Cells = cells, Depots = depots, Acceleration = acceleration }.Drive();
         var runs = RoadRuns.Of(fleet.Runs);
-        var errors = Errors(RoadModel.Fit(runs, fleet.Fleet), RoadModel.Fit(runs, fleet.Fleet, denseUpTo: 0)).ToArray();
-        Assert.All(errors, e => Assert.InRange(e.Probed / e.Exact, 0.9, 1.1));
+        var (exact, probed) = (RoadModel.Fit(runs, fleet.Fleet), RoadModel.Fit(runs, fleet.Fleet, denseUpTo: 0));
+        Assert.All(Errors(exact, probed), e => Assert.InRange(e.Probed / e.Exact, 0.9, 1.1));
+        // What a cell's vehicles share beyond the slow direction is left out, so that its error is a little small where few runs join the depots.
+        Assert.All(CellErrors(exact, probed), e => Assert.InRange(e.Probed / e.Exact, 0.9, 1.1));
     }
 
     [Fact]
@@ -46,10 +54,12 @@ public class RoadErrorsTests
     [Fact]
     public void Standard_errors_match_a_bootstrap_on_a_small_graph()
     {
+        // Mean bank of a network about the usual: the country's own departure and the network's.
+        var level = Math.Sqrt(RoadPriors.CrownError * RoadPriors.CrownError + RoadPriors.NetworkError * RoadPriors.NetworkError);
         var (pull, angle, pullError, angleError) = (new List<double>(), new List<double>(), new List<double>(), new List<double>());
         for (var world = 0; world < 150; world++)
         {
-            var fleet = new RoadFleet(1000 + world) { Vehicles = 10, Cells = 25, RunsPerTrip = 8 }.Drive();
+            var fleet = new RoadFleet(1000 + world) { Vehicles = 10, Cells = 25, RunsPerTrip = 8, LevelSd = level }.Drive();
             foreach (var v in RoadModel.Fit(fleet.Runs, fleet.Fleet).Vehicles)
             {
                 pull.Add(v.SteeringPullNm!.Value.Value - fleet.Truth[v.VehicleId].Pull);

@@ -20,6 +20,8 @@ internal sealed class RoadFleet
     public int Depots { get; init; } = 1;
     public bool Position { get; init; } = true;
     public bool Acceleration { get; init; } = true;
+    /// <summary>One standard deviation of the roads' mean bank, sine, from world to world.</summary>
+    public double LevelSd { get; init; } = 0.005;
     /// <summary>+1, or −1 for the mirror image of the whole fleet and its roads.</summary>
     public double Hand { get; init; } = 1;
 
@@ -31,7 +33,7 @@ internal sealed class RoadFleet
 
     public RoadFleet Drive()
     {
-        var level = 0.02 + 0.005 * Normal();
+        var level = 0.02 + LevelSd * Normal();
         var banks = Enumerable.Range(0, Apart ? Vehicles * Cells : Cells).Select(_ => level + 0.01 * Normal()).ToArray();
         for (var v = 0; v < Vehicles; v++) Drive(v, banks);
         return this;

@@ -10,7 +10,7 @@ namespace WearWatch.Benchmarks;
 internal static class RoadsBenchmark
 {
     private const int Vehicles = 20_000, RunsEach = 100, Cells = 200_000;
-    private const ulong HeapLimitMb = 465;
+    private const ulong HeapLimitMb = 480;
     private const int TouchedByDay = 500; // vehicles with new runs in the warm update, 20 runs each
 
     public static IReadOnlyDictionary<string, object> Run()

@@ -39,6 +39,9 @@ public sealed record ClassGain
     public Estimate? TorqueNmPerSine { get; init; }
     /// <summary>deg of steering wheel per sine of bank.</summary>
     public Estimate? AngleDegPerSine { get; init; }
+    /// <summary>One standard deviation of the class's steering pulls, N·m, and off-centre angles, deg, as found.</summary>
+    public double PullSpreadNm { get; init; }
+    public double OffCentreSpreadDeg { get; init; }
 }
 
 /// <summary>
@@ -56,7 +59,7 @@ public sealed record WitnessSpread(Witness Witness, double RunSd, double TripSd)
 /// <summary>Fleet-wide snapshot: vehicles, gains, crowns and cells from the same solve. A function of the runs and vehicles alone.</summary>
 public sealed record RoadFit
 {
-    public const string MethodVersion = "road-1";
+    public const string MethodVersion = "road-2";
 
     public string Method { get; init; } = MethodVersion;
     public required IReadOnlyList<SteeringFigures> Vehicles { get; init; }
@@ -68,6 +71,11 @@ public sealed record RoadFit
     public required int Components { get; init; }
     public required int Iterations { get; init; }
     public required bool Converged { get; init; }
+    /// <summary>
+    /// An earlier fit brought forward by new runs alone: gains, crowns, spreads and untouched vehicles stand as they were. The next full
+    /// fit replaces it.
+    /// </summary>
+    public bool Provisional { get; init; }
 
     public SteeringFigures? Of(string vehicleId) => Vehicles.FirstOrDefault(v => v.VehicleId == vehicleId);
 }

@@ -3,160 +3,209 @@ using WearWatch.Diagnosis.Steering;
 
 namespace WearWatch.Diagnosis.Roads;
 
-/// <summary>One witness of one run. Trip is counted per witness.</summary>
-internal readonly record struct Observation(Witness Witness, int Vehicle, int Run, int Cell, int Trip, int Gain, double Value, double Variance);
+/// <summary>Where a cell's bank is drawn to: the usual crown of its side (level shared), or what an earlier fit found.</summary>
+internal readonly record struct CellPrior(double Bank, double Weight, bool OnLevel);
 
-/// <summary>Runs and vehicles sorted and numbered: which unknown stands where. The order things came in leaves no trace.</summary>
+/// <summary>Runs and vehicles sorted and numbered, witnesses in flat columns: torque, angle, bank reading.</summary>
 internal sealed class RoadProblem
 {
     /// <summary>With fewer steady runs than this, driven ones are taken too.</summary>
     public const int EnoughSteadyRuns = 5;
 
-    private readonly Dictionary<string, int> _cellOf = new(StringComparer.Ordinal);
-    private readonly Dictionary<(Witness, string), int> _tripOf = [];
-    private readonly List<Observation> _observations = [];
-    private readonly List<int> _sizeOfTrip = [];
-    private readonly bool[] _assistLogged;
-    private readonly List<(int Side, int Vehicle, string? Name)> _cells = [];
+    /// <summary>Lanes a vehicle, pair, trip or class takes; the witnesses fill the first three.</summary>
+    public const int Lanes = 4;
 
-    public RoadProblem(IReadOnlyList<StraightRun> runs, IReadOnlyList<RoadVehicle> vehicles)
+    /// <summary>Numbers a sighting takes; read four at a time, the last belonging to the next sighting and counting for nothing.</summary>
+    public const int Witnesses = 3;
+
+    private readonly RoadRow[] _rows;
+    private readonly bool[] _assistLogged;
+    private readonly int[] _cellNumber; // by the table's name
+    private int[] _cellOfRun = [];      // by place in the order, −1 where the run is not part of the fit; only while numbering
+    private readonly List<(int Vehicle, int Name)> _cells = [];
+
+    /// <param name="runs">All runs, or a day's new ones.</param>
+    /// <param name="vehicles">Runs of others are left out.</param>
+    /// <param name="earlier">Whether an earlier fit already knows the vehicle's steady runs, so that driven ones are not wanted.</param>
+    public RoadProblem(RoadRuns runs, IReadOnlyList<RoadVehicle> vehicles, Func<string, bool>? earlier = null)
     {
+        (Runs, _rows) = (runs, runs.Table);
         Vehicles = vehicles.OrderBy(v => v.VehicleId, StringComparer.Ordinal).DistinctBy(v => v.VehicleId).ToArray();
-        var index = Vehicles.Select((v, i) => (v.VehicleId, i)).ToDictionary(x => x.VehicleId, x => x.i, StringComparer.Ordinal);
-        Runs = runs.Where(r => index.ContainsKey(r.VehicleId))
-            .OrderBy(r => r.VehicleId, StringComparer.Ordinal).ThenBy(r => r.StreamId, StringComparer.Ordinal).ThenBy(r => r.Start)
-            .ThenBy(r => r.Sequence).ThenBy(r => r.Mode).ThenBy(r => r.Seconds).ThenBy(r => r.RoadCell, StringComparer.Ordinal).ThenBy(r => r.TorqueNm?.Value).ToArray();
-        RunsOf = Enumerable.Range(0, Vehicles.Length).Select(_ => new List<int>()).ToArray();
-        for (var i = 0; i < Runs.Length; i++) RunsOf[index[Runs[i].VehicleId]].Add(i);
-        Gains = Vehicles.Select(v => (v.Class, v.Torque == TorqueKind.TorsionBar ? TorqueKind.TorsionBar : TorqueKind.Total)).Distinct().Order().ToArray();
-        TakesDriven = new bool[Vehicles.Length];
-        _assistLogged = new bool[Vehicles.Length];
-        CellOfRun = new int[Runs.Length];
-        Array.Fill(CellOfRun, -1);
-        for (var v = 0; v < Vehicles.Length; v++) Observe(v);
-        (ComponentOfVehicle, Components) = Join();
-        Number();
+        var index = new Dictionary<string, int>(Vehicles.Length, StringComparer.Ordinal);
+        for (var v = 0; v < Vehicles.Length; v++) index[Vehicles[v].VehicleId] = v;
+        (Order, RunFrom) = new RunOrder(runs).By(runs.Vehicles.Select(id => index.GetValueOrDefault(id, -1)).ToArray(), Vehicles.Length);
+        Gains = Vehicles.Select(v => (v.Class, KindOf(v))).Distinct().Order().ToArray();
+        GainOf = Vehicles.Select(v => Array.IndexOf(Gains, (v.Class, KindOf(v)))).ToArray();
+        (TakesDriven, _assistLogged) = (new bool[Vehicles.Length], new bool[Vehicles.Length]);
+        TripFrom = new int[Vehicles.Length + 1];
+        (_cellOfRun, _cellNumber) = (new int[Order.Length], new int[runs.Cells.Count]);
+        Array.Fill(_cellOfRun, -1);
+        Array.Fill(_cellNumber, -1);
+        var sightingFrom = new int[Vehicles.Length + 1];
+        for (var v = 0; v < Vehicles.Length; v++) sightingFrom[v + 1] = sightingFrom[v] + Place(v, earlier is not null && earlier(Vehicles[v].VehicleId));
+        var (place, cell) = (new int[sightingFrom[^1]], new int[sightingFrom[^1]]);
+        for (int at = 0, i = 0; i < Order.Length; i++)
+            if (_cellOfRun[i] >= 0) (place[at], cell[at++]) = (i, _cellOfRun[i]);
+        (ComponentOfVehicle, Components) = RoadGraph.Join(Vehicles.Length, sightingFrom, cell, _cells.Count);
+        CellComponent = SortCells(cell);
+        new RoadParts(sightingFrom).Each((_, from, to) =>
+        {
+            for (var v = from; v < to; v++) ByCell(cell, place, sightingFrom[v], sightingFrom[v + 1]);
+        });
+        Graph = new(sightingFrom, cell, _cells.Count);
+        (PlaceOf, Trip, TripSize) = (place, new int[place.Length], new float[Lanes * Trips]);
+        (Values, Variances) = (new float[Witnesses * place.Length + 1], new float[Witnesses * place.Length + 1]);
+        Present = new bool[Lanes * Vehicles.Length];
+        _cellOfRun = [];
+        Graph.ByVehicle.Each((_, from, to) =>
+        {
+            for (var v = from; v < to; v++) Fill(v);
+        });
     }
 
+    public RoadRuns Runs { get; }
     public RoadVehicle[] Vehicles { get; }
-    public StraightRun[] Runs { get; }
-    public List<int>[] RunsOf { get; }
+    /// <summary>The table's rows in order, and where each vehicle's start.</summary>
+    public int[] Order { get; }
+    public int[] RunFrom { get; }
     /// <summary>Class and kind of torque that share gains.</summary>
     public (VehicleClass Class, TorqueKind Torque)[] Gains { get; }
-    public IReadOnlyList<Observation> Observations => _observations;
-    public IReadOnlyList<(int Side, int Vehicle, string? Name)> CellList => _cells;
-    public IReadOnlyList<int> SizeOfTrip => _sizeOfTrip;
+    public int[] GainOf { get; }
     /// <summary>Too few steady runs, so that its driven runs count as well.</summary>
     public bool[] TakesDriven { get; }
-    /// <summary>−1 where the run is not part of the fit.</summary>
-    public int[] CellOfRun { get; }
+    /// <summary>One vehicle's runs of one stream are a trip.</summary>
+    public int Trips { get; private set; }
+    /// <summary>First trip of each vehicle; one more than there are vehicles.</summary>
+    public int[] TripFrom { get; }
     public int[] ComponentOfVehicle { get; }
     public int Components { get; }
+    public int[] CellComponent { get; }
+    public RoadGraph Graph { get; }
+    /// <summary>Place in the order of each sighting of the graph.</summary>
+    public int[] PlaceOf { get; }
+    /// <summary>Trip of each sighting.</summary>
+    public int[] Trip { get; }
+    /// <summary>What the witnesses of each sighting say: N·m, deg, sine; 0 where silent.</summary>
+    public float[] Values { get; }
+    /// <summary>Squared standard errors of the values; infinite where silent.</summary>
+    public float[] Variances { get; }
+    /// <summary>Runs of each trip, per witness.</summary>
+    public float[] TripSize { get; }
+    /// <summary>Whether any run of the vehicle has the witness.</summary>
+    public bool[] Present { get; }
+    public int Cells => _cells.Count;
 
-    public int[] Pull { get; private set; } = [];
-    public int[] OffCentre { get; private set; } = [];
-    public int[] Bias { get; private set; } = [];
-    public int[] TorqueGain { get; private set; } = [];
-    public int[] AngleGain { get; private set; } = [];
-    public int[] Crown { get; private set; } = [];
-    public int[] Component { get; private set; } = [];
-    public int Unknowns { get; private set; }
+    public ref readonly RoadRow Run(int place) => ref _rows[Order[place]];
+    public int SideOf(int cell) => (int)Vehicles[_cells[cell].Vehicle].TrafficSide;
+    /// <summary>Null where the cell has no position.</summary>
+    public string? CellName(int cell) => _cells[cell].Name < 0 ? null : Runs.Cells[_cells[cell].Name];
 
-    public int GainOf(RoadVehicle v) => Array.IndexOf(Gains, (v.Class, v.Torque == TorqueKind.TorsionBar ? TorqueKind.TorsionBar : TorqueKind.Total));
+    /// <summary>Cell under each of a vehicle's runs: its own in the fit, or else the named one, if any run of the fit lies there; −1 where none does.</summary>
+    public int[] CellsUnder(int vehicle)
+    {
+        var from = RunFrom[vehicle];
+        var cells = new int[RunFrom[vehicle + 1] - from];
+        for (var i = 0; i < cells.Length; i++) cells[i] = Run(from + i).Cell is var name and >= 0 ? _cellNumber[name] : -1;
+        for (var e = Graph.VehicleFrom[vehicle]; e < Graph.VehicleFrom[vehicle + 1]; e++)
+            for (var i = Graph.SightingFrom[e]; i < Graph.SightingFrom[e + 1]; i++) cells[PlaceOf[i] - from] = Graph.CellOf[e];
+        return cells;
+    }
 
-    /// <summary>Named cell's number, if any run of the fit lies in it.</summary>
-    public int CellNamed(string? name) => name is not null && _cellOf.TryGetValue(name, out var cell) ? cell : -1;
 
     /// <summary>Whether the run's torque is of the vehicle's kind: with assist logged in some runs, only those count.</summary>
-    public bool TorqueCounts(int vehicle, StraightRun run) =>
-        Vehicles[vehicle].TorqueUsable && Finite(run.TorqueNm) && (run.TorqueIncludesAssist || !_assistLogged[vehicle]);
+    public bool TorqueCounts(int vehicle, in RoadRow run) =>
+        Vehicles[vehicle].TorqueUsable && !float.IsNaN(run.Torque) && (run.IncludesAssist || !_assistLogged[vehicle]);
 
-    private void Observe(int v)
+    private static TorqueKind KindOf(RoadVehicle v) => v.Torque == TorqueKind.TorsionBar ? TorqueKind.TorsionBar : TorqueKind.Total;
+
+    /// <summary>Gives each run of the vehicle that is part of the fit its cell, in order of first touch, and its trip.</summary>
+    private int Place(int v, bool seenBefore)
     {
-        _assistLogged[v] = RunsOf[v].Any(i => Runs[i].TorqueIncludesAssist);
-        TakesDriven[v] = RunsOf[v].Count(i => Runs[i].Mode == RunMode.Coast) < EnoughSteadyRuns;
-        foreach (var i in RunsOf[v])
+        _assistLogged[v] = seenBefore && Vehicles[v].Torque == TorqueKind.Total;
+        var (steady, placed, usual) = (0, 0, -1);
+        for (var i = RunFrom[v]; i < RunFrom[v + 1]; i++)
         {
-            var run = Runs[i];
+            ref readonly var run = ref Run(i);
+            _assistLogged[v] |= run.IncludesAssist;
+            if (run.Mode == RunMode.Coast) steady++;
+            if (i > RunFrom[v] && Run(i - 1).Stream != run.Stream) Trips++;
+        }
+        if (RunFrom[v + 1] > RunFrom[v]) Trips++;
+        TripFrom[v + 1] = Trips;
+        TakesDriven[v] = steady < EnoughSteadyRuns && !seenBefore;
+        for (var i = RunFrom[v]; i < RunFrom[v + 1]; i++)
+        {
+            ref readonly var run = ref Run(i);
             if (run.Mode == RunMode.Brake || (run.Mode == RunMode.Drive && !TakesDriven[v])) continue;
-            var torque = TorqueCounts(v, run);
-            var (angle, bank) = (Finite(run.AngleDeg), Finite(run.BankReading));
-            if (!torque && !angle && !bank) continue;
-            CellOfRun[i] = CellFor(v, run, bank);
-            if (torque) Add(Witness.Torque, v, i, run.TorqueNm!.Value);
-            if (angle) Add(Witness.Angle, v, i, run.AngleDeg!.Value);
-            if (bank) Add(Witness.BankReading, v, i, run.BankReading!.Value);
+            var reads = !float.IsNaN(run.Bank);
+            if (!reads && float.IsNaN(run.Angle) && !TorqueCounts(v, run)) continue;
+            // A run without position has a bank of its own when it reads one; else the vehicle's runs share one road.
+            if (run.Cell >= 0) _cellOfRun[i] = _cellNumber[run.Cell] is var known and >= 0 ? known : _cellNumber[run.Cell] = NewCell(v, run.Cell);
+            else _cellOfRun[i] = reads ? NewCell(v, -1) : usual >= 0 ? usual : usual = NewCell(v, -1);
+            placed++;
         }
+        return placed;
     }
 
-    private void Add(Witness witness, int v, int run, Statistics.Estimate e)
+    private int NewCell(int v, int name)
     {
-        var key = (witness, $"{Vehicles[v].VehicleId}\n{Runs[run].StreamId}");
-        if (!_tripOf.TryGetValue(key, out var trip))
-        {
-            _tripOf[key] = trip = _sizeOfTrip.Count;
-            _sizeOfTrip.Add(0);
-        }
-        _sizeOfTrip[trip]++;
-        _observations.Add(new(witness, v, run, CellOfRun[run], trip, GainOf(Vehicles[v]), e.Value, e.StandardError * e.StandardError));
-    }
-
-    /// <summary>A run without position has a bank of its own when it reads one; else the vehicle's runs share one road.</summary>
-    private int CellFor(int v, StraightRun run, bool bank)
-    {
-        if (run.RoadCell is null && bank) return NewCell(v, null);
-        var key = run.RoadCell ?? $"\nusual road of {Vehicles[v].VehicleId}";
-        if (!_cellOf.TryGetValue(key, out var cell)) _cellOf[key] = cell = NewCell(v, run.RoadCell);
-        return cell;
-    }
-
-    private int NewCell(int v, string? name)
-    {
-        _cells.Add(((int)Vehicles[v].TrafficSide, v, name));
+        _cells.Add((v, name));
         return _cells.Count - 1;
     }
 
-    /// <summary>Groups of vehicles joined by shared cells (union-find with the lowest vehicle as root).</summary>
-    private (int[] ComponentOfVehicle, int Components) Join()
+    /// <summary>Renumbers cells so that each component's stand together.</summary>
+    private int[] SortCells(int[] cell)
     {
-        var root = Enumerable.Range(0, Vehicles.Length).ToArray();
-        int Find(int v)
+        var component = _cells.Select(c => ComponentOfVehicle[c.Vehicle]).ToArray();
+        var from = new int[Components + 1];
+        foreach (var k in component) from[k + 1]++;
+        for (var k = 0; k < Components; k++) from[k + 1] += from[k];
+        var (number, sorted, owner) = (new int[component.Length], new int[component.Length], _cells.ToArray());
+        for (var c = 0; c < component.Length; c++)
         {
-            while (root[v] != v) v = root[v] = root[root[v]];
-            return v;
+            number[c] = from[component[c]]++;
+            (sorted[number[c]], _cells[number[c]]) = (component[c], owner[c]);
         }
-        foreach (var o in _observations)
-        {
-            var (a, b) = (Find(o.Vehicle), Find(_cells[o.Cell].Vehicle));
-            root[Math.Max(a, b)] = Math.Min(a, b);
-        }
-        var number = new Dictionary<int, int>();
-        var component = new int[Vehicles.Length];
-        for (var v = 0; v < component.Length; v++)
-        {
-            var r = Find(v);
-            if (!number.TryGetValue(r, out component[v])) number[r] = component[v] = number.Count;
-        }
-        return (component, number.Count);
+        for (var i = 0; i < cell.Length; i++) cell[i] = number[cell[i]];
+        for (var i = 0; i < _cellOfRun.Length; i++) if (_cellOfRun[i] >= 0) _cellOfRun[i] = number[_cellOfRun[i]];
+        for (var n = 0; n < _cellNumber.Length; n++) if (_cellNumber[n] >= 0) _cellNumber[n] = number[_cellNumber[n]];
+        return sorted;
     }
 
-    private void Number()
+    /// <summary>Sorts one vehicle's sightings by cell, and those of one cell by their runs.</summary>
+    private static void ByCell(int[] cell, int[] place, int from, int to)
     {
-        var next = 0;
-        int[] Give(int count, Func<int, bool> present) => Enumerable.Range(0, count).Select(i => present(i) ? next++ : -1).ToArray();
-        var seen = _observations.Select(o => (o.Witness, o.Vehicle)).ToHashSet();
-        var gains = _observations.Select(o => (o.Witness, o.Gain)).ToHashSet();
-        var sides = _cells.Select(c => c.Side).ToHashSet();
-        var components = _observations.Select(o => ComponentOfVehicle[o.Vehicle]).ToHashSet();
-        Pull = Give(Vehicles.Length, v => seen.Contains((Witness.Torque, v)));
-        OffCentre = Give(Vehicles.Length, v => seen.Contains((Witness.Angle, v)));
-        Bias = Give(Vehicles.Length, v => seen.Contains((Witness.BankReading, v)));
-        TorqueGain = Give(Gains.Length, g => gains.Contains((Witness.Torque, g)));
-        AngleGain = Give(Gains.Length, g => gains.Contains((Witness.Angle, g)));
-        Crown = Give(2, sides.Contains);
-        Component = Give(Components, components.Contains);
-        Unknowns = next;
+        Array.Sort(cell, place, from, to - from);
+        for (var i = from; i < to; i++)
+            if (i + 1 == to || cell[i + 1] != cell[i])
+            {
+                Array.Sort(place, from, i + 1 - from);
+                from = i + 1;
+            }
     }
 
-    private static bool Finite(Statistics.Estimate? e) => e is { } x && double.IsFinite(x.Value) && double.IsFinite(x.StandardError) && x.StandardError >= 0;
+    private void Fill(int v)
+    {
+        var (from, to) = (Graph.SightingFrom[Graph.VehicleFrom[v]], Graph.SightingFrom[Graph.VehicleFrom[v + 1]]);
+        // Streams of a vehicle stand together in the order, so that trips are counted along it.
+        var (trips, trip) = (new int[RunFrom[v + 1] - RunFrom[v]], TripFrom[v]);
+        for (var i = 1; i < trips.Length; i++) trips[i] = Run(RunFrom[v] + i).Stream == Run(RunFrom[v] + i - 1).Stream ? trips[i - 1] : trips[i - 1] + 1;
+        for (var i = from; i < to; i++)
+        {
+            ref readonly var run = ref Run(PlaceOf[i]);
+            Trip[i] = trip + trips[PlaceOf[i] - RunFrom[v]];
+            Set(v, i, 0, TorqueCounts(v, run) ? run.Torque : float.NaN, run.TorqueError);
+            Set(v, i, 1, run.Angle, run.AngleError);
+            Set(v, i, 2, run.Bank, run.BankError);
+        }
+    }
+
+    private void Set(int v, int sighting, int lane, float value, float error)
+    {
+        var (at, there) = (Witnesses * sighting + lane, !float.IsNaN(value));
+        (Values[at], Variances[at]) = there ? (value, error * error) : (0, float.PositiveInfinity);
+        if (!there) return;
+        Present[Lanes * v + lane] = true;
+        TripSize[Lanes * Trip[sighting] + lane]++;
+    }
 }

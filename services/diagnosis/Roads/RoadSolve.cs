@@ -6,207 +6,173 @@ namespace WearWatch.Diagnosis.Roads;
 
 /// <summary>
 /// The fit's numbers on their way: Gauss–Newton on the product of gain and bank, Huber weights (Huber 1964) on every observation
-/// and on every vehicle's departure from its class, variances beyond the runs' own errors re-estimated in each step.
+/// and on every vehicle's departure from its class, variances beyond the runs' own errors re-estimated in each step. Each step is
+/// solved only as far as the weights deserve; the next one starts where it ended.
 /// </summary>
 internal sealed class RoadSolve
 {
+    private const int Lanes = RoadProblem.Lanes;
     private const int MostIterations = 300;
-    private const double Settled = 1e-7;
+    private const double Settled = 5e-5, Roughly = 2e-2; // of the prior standard deviations
+    private const double Fall = 0.03;
+    private const int Renewed = 6; // steps a preconditioner serves once the weights hardly change
 
     private readonly RoadProblem _p;
-    private readonly double[] _weight;
-    private readonly double[] _prior;
+    private readonly RoadWeighing _weighing;
+    private readonly TripSpread _spread;
+    private readonly RoadEarlier? _earlier;
     private readonly double[] _scale;
     private readonly double[] _centre;
-    private readonly int[] _byCell;
-    private CellSystem _system;
+    private readonly bool[] _held; // by an earlier fit: neither robust nor taken out again
 
-    public RoadSolve(RoadProblem problem)
+    public RoadSolve(RoadProblem problem, RoadEarlier? earlier = null)
     {
-        _p = problem;
-        U = new double[problem.Unknowns];
-        Bank = problem.CellList.Select(c => RoadPriors.SignedCrown((TrafficSide)c.Side)).ToArray();
-        _weight = Enumerable.Repeat(1.0, problem.Observations.Count).ToArray();
-        _prior = Enumerable.Repeat(1.0, problem.Unknowns).ToArray();
-        _scale = Enumerable.Repeat(1.0, problem.Unknowns).ToArray();
+        (_p, _earlier) = (problem, earlier);
+        var sides = Enumerable.Range(0, problem.Cells).Select(problem.SideOf).ToArray();
+        System = new(problem.Graph, problem.GainOf, problem.Gains.Length, problem.ComponentOfVehicle, problem.CellComponent, problem.Components, sides);
+        _spread = new(problem);
+        _weighing = new(problem, System, _spread);
+        (_scale, _centre, _held) = (new double[System.Size], new double[System.Size], new bool[System.Size]);
         PullSpread = problem.Gains.Select(g => RoadPriors.PullSpread(g.Class)).ToArray();
         OffCentreSpread = problem.Gains.Select(_ => RoadPriors.OffCentreSpread).ToArray();
-        Start();
-        _centre = Enumerable.Range(0, problem.Unknowns).Select(Centre).ToArray();
-        _byCell = Enumerable.Range(0, problem.Observations.Count).OrderBy(k => problem.Observations[k].Cell).ToArray();
-        _system = new(0, 0, []);
+        Array.Fill(_scale, 1);
+        Roads();
+        Scale();
+        earlier?.Hold(problem, this, _centre, _scale, _held);
+        _centre.CopyTo(System.U, 0);
     }
 
-    public double[] U { get; private set; }
-    public double[] Bank { get; private set; }
+    public RoadSystem System { get; }
     public double[] PullSpread { get; }
     public double[] OffCentreSpread { get; }
     public (double Run, double Trip)[] Noise { get; } = [RoadPriors.Noise(Witness.Torque), RoadPriors.Noise(Witness.Angle), RoadPriors.Noise(Witness.BankReading)];
     public int Iterations { get; private set; }
     public bool Converged { get; private set; }
 
-    public double[] Variances() => _system.GlobalVariances();
-    public double[] BankVariances() => _system.CellVariances();
-
-    /// <summary>Variance an observation is weighed by: its own, the run's, and the trip's times the trip's runs, so that a trip never counts for more than one draw of its own spread.</summary>
-    public double VarianceOf(in Observation o)
-    {
-        var (run, trip) = Noise[(int)o.Witness];
-        return o.Variance + run * run + _p.SizeOfTrip[o.Trip] * trip * trip;
-    }
-
-    /// <summary>One standard deviation of a single observation about the vehicle and its road.</summary>
-    public double SpreadOf(in Observation o)
-    {
-        var (run, trip) = Noise[(int)o.Witness];
-        return Math.Sqrt(o.Variance + run * run + trip * trip);
-    }
-
-    public double WeightOf(int observation) => _weight[observation] / VarianceOf(_p.Observations[observation]);
-
-    public void Run()
+    /// <summary>Solves until nothing moves by more than 1/20 000 of its prior, hundreds of times less than its error; or roughly, by a fiftieth.</summary>
+    public void Run(bool roughly)
     {
         Converged = false;
-        for (var iteration = 0; iteration < MostIterations && !Converged; iteration++, Iterations++)
+        for (var iteration = 0; iteration < MostIterations && !Converged; iteration++)
         {
-            if (Iterations > 0) Reweigh();
-            _system = new(_p.Unknowns, Bank.Length, Rows());
-            var next = _system.Solve(U);
-            var change = 0.0;
-            for (var i = 0; i < next.Length; i++) change = Math.Max(change, Math.Abs(next[i] - U[i]) / _scale[i]);
-            (U, Bank) = (next, _system.Cells(next));
-            Converged = change < Settled && iteration > 0;
+            Weigh();
+            System.Prepare(afresh: Iterations < 2 || Iterations == 3 || iteration % Renewed == 0);
+            var moved = Spreads();
+            var change = System.Step(Fall);
+            for (var i = 0; i < change.Length; i++) moved = Math.Max(moved, Math.Abs(change[i]) / _scale[i]);
+            Converged = moved < (roughly ? Roughly : Settled) && iteration > 0;
+            Iterations++;
         }
+    }
+
+    /// <summary>Takes the system as it stands at the solution, for its errors.</summary>
+    public void Settle()
+    {
+        Weigh();
+        System.Prepare();
     }
 
     /// <summary>
     /// A vehicle's figure as the others leave it: its own pull towards the class is taken out again, so that it is not shrunk, while
-    /// the class still holds the level that all share.
+    /// the class still holds the level that all share. What an earlier fit found stays in.
     /// </summary>
     /// <returns>Null where the vehicle's own runs say nothing.</returns>
-    public Estimate? Unshrunk(int unknown, double variance)
+    public Estimate? Unshrunk(int vehicle, Witness witness, double variance)
     {
-        if (unknown < 0) return null;
-        var own = _prior[unknown] / (_scale[unknown] * _scale[unknown]);
+        var unknown = Lanes * vehicle + (int)witness;
+        if (!_p.Present[unknown]) return null;
+        if (_held[unknown]) return new(System.U[unknown], Math.Sqrt(variance));
+        var own = System.PriorWeight[unknown];
         var left = 1 / variance - own;
-        return left > 1e-6 * own ? new(U[unknown] / variance / left, Math.Sqrt(1 / left)) : null;
+        return left > 1e-6 * own ? new(System.U[unknown] / variance / left, Math.Sqrt(1 / left)) : null;
     }
 
     /// <summary>Spread of a class: the median size of its vehicles' figures less their errors, drawn to the prior by four vehicles' worth.</summary>
-    public void UpdateSpreads()
+    public void UpdateSpreads(double[] variance)
     {
-        var variance = Variances();
         for (var g = 0; g < _p.Gains.Length; g++)
         {
-            PullSpread[g] = Spread(_p.Pull, g, variance, RoadPriors.PullSpread(_p.Gains[g].Class));
-            OffCentreSpread[g] = Spread(_p.OffCentre, g, variance, RoadPriors.OffCentreSpread);
+            PullSpread[g] = Spread(Witness.Torque, g, variance, RoadPriors.PullSpread(_p.Gains[g].Class));
+            OffCentreSpread[g] = Spread(Witness.Angle, g, variance, RoadPriors.OffCentreSpread);
         }
         Scale();
     }
 
-    private double Spread(int[] unknowns, int gain, double[] variance, double prior)
+    private double Spread(Witness witness, int gain, double[] variance, double prior)
     {
-        var figures = Enumerable.Range(0, unknowns.Length)
-            .Where(v => unknowns[v] >= 0 && !_p.Vehicles[v].FoundInOrder && _p.GainOf(_p.Vehicles[v]) == gain)
-            .Select(v => Unshrunk(unknowns[v], variance[unknowns[v]])).OfType<Estimate>().ToArray();
-        if (figures.Length == 0) return prior;
+        var figures = new List<Estimate>();
+        for (var v = 0; v < _p.Vehicles.Length; v++)
+            if (_p.GainOf[v] == gain && !_p.Vehicles[v].FoundInOrder && Unshrunk(v, witness, variance[Lanes * v + (int)witness]) is { } figure) figures.Add(figure);
+        if (figures.Count == 0) return prior;
         var size = 1.4826 * RobustMean.Median(figures.Select(e => Math.Abs(e.Value)).Order().ToArray());
         var error = RobustMean.Median(figures.Select(e => e.StandardError).Order().ToArray());
         var found = Math.Max(0, size * size - error * error);
-        return Math.Sqrt((RoadPriors.PriorCount * prior * prior + figures.Length * found) / (RoadPriors.PriorCount + figures.Length));
+        return Math.Sqrt((RoadPriors.PriorCount * prior * prior + figures.Count * found) / (RoadPriors.PriorCount + figures.Count));
     }
 
-    private void Start()
+    /// <summary>Every cell starts at the usual crown of its side and is drawn to its component's level.</summary>
+    private void Roads()
     {
-        for (var g = 0; g < _p.Gains.Length; g++)
+        for (var c = 0; c < _p.Cells; c++)
         {
-            if (_p.TorqueGain[g] >= 0) U[_p.TorqueGain[g]] = RoadPriors.TorqueGain(_p.Gains[g].Class, _p.Gains[g].Torque);
-            if (_p.AngleGain[g] >= 0) U[_p.AngleGain[g]] = RoadPriors.AngleGain(_p.Gains[g].Class);
+            System.Bank[c] = RoadPriors.SignedCrown((TrafficSide)System.CellSide[c]);
+            System.Priors[c] = new(0, 1 / (RoadPriors.CellWidth * RoadPriors.CellWidth), OnLevel: true);
         }
-        for (var s = 0; s < 2; s++) if (_p.Crown[s] >= 0) U[_p.Crown[s]] = RoadPriors.SignedCrown((TrafficSide)s);
-        Scale();
     }
 
-    /// <summary>Prior standard deviation of each unknown, by which change is measured too.</summary>
+    /// <summary>Prior mean and standard deviation of each unknown; change is measured by the latter too.</summary>
     private void Scale()
     {
         for (var v = 0; v < _p.Vehicles.Length; v++)
         {
-            var (g, anchored) = (_p.GainOf(_p.Vehicles[v]), _p.Vehicles[v].FoundInOrder);
-            if (_p.Pull[v] >= 0) _scale[_p.Pull[v]] = anchored ? RoadPriors.AnchoredPull : PullSpread[g];
-            if (_p.OffCentre[v] >= 0) _scale[_p.OffCentre[v]] = anchored ? RoadPriors.AnchoredOffCentre : OffCentreSpread[g];
-            if (_p.Bias[v] >= 0) _scale[_p.Bias[v]] = RoadPriors.AccelerometerBias;
+            var (g, anchored) = (_p.GainOf[v], _p.Vehicles[v].FoundInOrder);
+            _scale[Lanes * v] = anchored ? RoadPriors.AnchoredPull : PullSpread[g];
+            _scale[Lanes * v + 1] = anchored ? RoadPriors.AnchoredOffCentre : OffCentreSpread[g];
+            _scale[Lanes * v + 2] = RoadPriors.AccelerometerBias;
         }
+        for (var k = 0; k < _p.Components; k++) _scale[System.LevelAt + k] = RoadPriors.NetworkError;
         for (var g = 0; g < _p.Gains.Length; g++)
         {
-            if (_p.TorqueGain[g] >= 0) _scale[_p.TorqueGain[g]] = RoadPriors.GainSpread * RoadPriors.TorqueGain(_p.Gains[g].Class, _p.Gains[g].Torque);
-            if (_p.AngleGain[g] >= 0) _scale[_p.AngleGain[g]] = RoadPriors.GainSpread * RoadPriors.AngleGain(_p.Gains[g].Class);
+            var at = System.GainAt + Lanes * g;
+            (_centre[at], _centre[at + 1]) = (RoadPriors.TorqueGain(_p.Gains[g].Class, _p.Gains[g].Torque), RoadPriors.AngleGain(_p.Gains[g].Class));
+            (_scale[at], _scale[at + 1]) = (RoadPriors.GainSpread * _centre[at], RoadPriors.GainSpread * _centre[at + 1]);
         }
-        foreach (var c in _p.Crown) if (c >= 0) _scale[c] = RoadPriors.CrownError;
-        foreach (var c in _p.Component) if (c >= 0) _scale[c] = RoadPriors.NetworkError;
+        for (var side = 0; side < 2; side++)
+            (_centre[System.CrownAt + side], _scale[System.CrownAt + side]) = (RoadPriors.SignedCrown((TrafficSide)side), RoadPriors.CrownError);
     }
 
-    /// <summary>Priors of the unknowns first, then each cell's prior followed by its observations.</summary>
-    private CellRow[] Rows()
+    /// <summary>Observations and priors weighed about the present values; the first time all alike, being far from any answer.</summary>
+    private void Weigh()
     {
-        var rows = new CellRow[_p.Unknowns + Bank.Length + _p.Observations.Count];
-        var at = 0;
-        for (var i = 0; i < _p.Unknowns; i++) rows[at++] = new(-1, 0, i, 1, -1, 0, -1, 0, _centre[i], _prior[i] / (_scale[i] * _scale[i]));
-        var next = 0;
-        for (var c = 0; c < Bank.Length; c++)
-        {
-            var (side, vehicle, _) = _p.CellList[c];
-            rows[at++] = new(c, 1, _p.Crown[side], -1, _p.Component[_p.ComponentOfVehicle[vehicle]], -1, -1, 0, 0, 1 / (RoadPriors.CellWidth * RoadPriors.CellWidth));
-            for (; next < _byCell.Length && _p.Observations[_byCell[next]].Cell == c; next++)
-                rows[at++] = Row(_p.Observations[_byCell[next]], WeightOf(_byCell[next]));
-        }
-        return rows;
-    }
-
-    private double Centre(int unknown)
-    {
-        for (var s = 0; s < 2; s++) if (_p.Crown[s] == unknown) return RoadPriors.SignedCrown((TrafficSide)s);
         for (var g = 0; g < _p.Gains.Length; g++)
         {
-            if (_p.TorqueGain[g] == unknown) return RoadPriors.TorqueGain(_p.Gains[g].Class, _p.Gains[g].Torque);
-            if (_p.AngleGain[g] == unknown) return RoadPriors.AngleGain(_p.Gains[g].Class);
+            var at = System.GainAt + Lanes * g;
+            (System.Gain[Lanes * g], System.Gain[Lanes * g + 1], System.Gain[Lanes * g + 2]) = (System.U[at], System.U[at + 1], 1 + SteeringEquations.RollGain);
         }
-        return 0;
-    }
-
-    /// <summary>The observation, the product gain × bank taken linear about the present values.</summary>
-    private CellRow Row(in Observation o, double weight)
-    {
-        if (o.Witness == Witness.BankReading)
-            return new(o.Cell, 1 + SteeringEquations.RollGain, _p.Bias[o.Vehicle], 1, -1, 0, -1, 0, o.Value, weight);
-        var (own, gain) = o.Witness == Witness.Torque ? (_p.Pull[o.Vehicle], _p.TorqueGain[o.Gain]) : (_p.OffCentre[o.Vehicle], _p.AngleGain[o.Gain]);
-        var (g, b) = (U[gain], Bank[o.Cell]);
-        return new(o.Cell, g, own, 1, gain, b, -1, 0, o.Value + g * b, weight);
-    }
-
-    private double Residual(in Observation o) => o.Witness switch
-    {
-        Witness.BankReading => o.Value - U[_p.Bias[o.Vehicle]] - (1 + SteeringEquations.RollGain) * Bank[o.Cell],
-        Witness.Torque => o.Value - U[_p.Pull[o.Vehicle]] - U[_p.TorqueGain[o.Gain]] * Bank[o.Cell],
-        _ => o.Value - U[_p.OffCentre[o.Vehicle]] - U[_p.AngleGain[o.Gain]] * Bank[o.Cell],
-    };
-
-    private void Reweigh()
-    {
-        var residuals = new double[_p.Observations.Count];
-        for (var k = 0; k < residuals.Length; k++) residuals[k] = Residual(_p.Observations[k]);
-        (double, double)[] noise = [.. Enum.GetValues<Witness>().Select(w => TripSpread.Of(w, _p, residuals, this))];
-        noise.CopyTo(Noise, 0);
-        for (var k = 0; k < residuals.Length; k++)
+        Array.Clear(System.Force);
+        _weighing.Pass(Noise, robust: Iterations > 0 || _earlier is not null);
+        for (var i = 0; i < System.Size; i++)
         {
-            _weight[k] = Huber(residuals[k] / SpreadOf(_p.Observations[k]));
-        }
-        for (var v = 0; v < _p.Vehicles.Length; v++)
-        {
-            if (_p.Pull[v] is var i and >= 0) _prior[i] = Huber(U[i] / _scale[i]);
-            if (_p.OffCentre[v] is var j and >= 0) _prior[j] = Huber(U[j] / _scale[j]);
+            var away = (_centre[i] - System.U[i]) / _scale[i];
+            var robust = i < System.LevelAt && i % Lanes < 2 && !_held[i];
+            System.PriorWeight[i] = (robust ? Math.Min(1, RobustMean.HuberK / Math.Abs(away)) : 1) / (_scale[i] * _scale[i]);
+            System.Force[i] += System.PriorWeight[i] * (_centre[i] - System.U[i]);
         }
     }
 
-    private static double Huber(double standardised) => Math.Min(1, RobustMean.HuberK / Math.Max(Math.Abs(standardised), 1e-12));
+    /// <summary>Spreads for the next step from this step's residuals.</summary>
+    /// <returns>Largest relative change.</returns>
+    private double Spreads()
+    {
+        if (Iterations == 0 || _earlier is not null) return 0;
+        var moved = 0.0;
+        for (var w = 0; w < Noise.Length; w++)
+        {
+            var next = _spread.Of((Witness)w, _weighing.Within[w], _weighing.Between[w], System.Taken[w]);
+            // A trip's spread counts only as far as it adds to the run's.
+            moved = Math.Max(moved, (Math.Abs(next.Run - Noise[w].Run) + Math.Abs(next.Trip - Noise[w].Trip)) / (Noise[w].Run + Noise[w].Trip));
+            Noise[w] = next;
+        }
+        return moved;
+    }
 }

@@ -23,6 +23,10 @@ public sealed record SteeringFigures
     public Estimate? BrakePullNm { get; init; }
     /// <summary>Extra steering pull under drive over coasting, N·m.</summary>
     public Estimate? DrivePullNm { get; init; }
+    /// <summary>Bias of the bank reading, sine: the lateral accelerometer's zero over g.</summary>
+    public Estimate? BankReadingBias { get; init; }
+    /// <summary>Standard error of the mean bank of the vehicle's road network, sine; it moves all vehicles of that network alike.</summary>
+    public double? RoadLevelError { get; init; }
     public required int Runs { get; init; }
     /// <summary>Straight driving in all, s.</summary>
     public required double Seconds { get; init; }

@@ -1,3 +1,5 @@
+using System.Runtime.Intrinsics;
+
 namespace WearWatch.Diagnosis.Roads;
 
 /// <summary>
@@ -5,65 +7,85 @@ namespace WearWatch.Diagnosis.Roads;
 /// the sensor's zero at key-on). Moments of the residuals, cut at 2.5 of their present standard deviations so that gross errors do not
 /// blow the spread up, each drawn to its prior by four observations' worth.
 /// </summary>
-internal static class TripSpread
+internal sealed class TripSpread
 {
-    private const double Cut = 2.5;
+    public const double Cut = 2.5;
 
     /// <summary>Share of a normal variance left by the cut: 2Φ(k) − 1 − 2kφ(k) + 2k²(1 − Φ(k)) at k = 2.5.</summary>
-    private const double LeftByCut = 0.97757;
+    public const double LeftByCut = 0.97757;
 
-    public static (double Run, double Trip) Of(Witness witness, RoadProblem p, double[] residuals, RoadSolve solve)
+    private const int Lanes = RoadProblem.Lanes;
+
+    // By witness. Of all trips: observations, trips, own variances. Of vehicles with several trips: trips less one, and what the runs' own
+    // spread brings to the squares between trips, as a factor of the run variance and as a sum.
+    private readonly double[] _all = new double[Lanes], _freedom = new double[Lanes], _own = new double[Lanes];
+    private readonly double[] _degrees = new double[Lanes], _perRun = new double[Lanes], _perOwn = new double[Lanes];
+    private readonly RoadProblem _p;
+
+    public TripSpread(RoadProblem problem)
     {
-        var (priorRun, priorTrip) = RoadPriors.Noise(witness);
-        var byTrip = new (int Vehicle, int N, double Sum, double Squares, double Own)[p.SizeOfTrip.Count];
-        var used = new double[p.CellList.Count];
-        var precision = new double[p.CellList.Count];
-        for (var k = 0; k < residuals.Length; k++)
+        _p = problem;
+        var own = new double[Lanes * problem.Trips];
+        for (var i = 0; i < problem.Trip.Length; i++)
+            for (var lane = 0; lane < 3; lane++)
+                if (problem.Variances[RoadProblem.Witnesses * i + lane] is var variance && float.IsFinite(variance)) own[Lanes * problem.Trip[i] + lane] += variance;
+        for (var v = 0; v < problem.Vehicles.Length; v++) for (var lane = 0; lane < 3; lane++) Count(v, lane, own);
+    }
+
+    /// <summary>Squares within trips and between the trips' means of one vehicle, all witnesses at once.</summary>
+    public (Vector256<double> Within, Vector256<double> Between) Squares(int v, ReadOnlySpan<Vector256<double>> sums, ReadOnlySpan<Vector256<double>> squares)
+    {
+        var (within, means, of, count) = (Vector256<double>.Zero, Vector256<double>.Zero, Vector256<double>.Zero, Vector256<double>.Zero);
+        for (var t = 0; t < sums.Length; t++)
         {
-            var o = p.Observations[k];
-            var load = CellLoad(o.Witness, o.Gain, p, solve);
-            var weighed = load * load * solve.WeightOf(k);
-            precision[o.Cell] += weighed;
-            if (o.Witness != witness) continue;
-            used[o.Cell] += weighed;
-            var t = byTrip[o.Trip];
-            var bound = Cut * solve.SpreadOf(o);
-            var cut = Math.Clamp(residuals[k], -bound, bound) / Math.Sqrt(LeftByCut);
-            byTrip[o.Trip] = (o.Vehicle, t.N + 1, t.Sum + cut, t.Squares + cut * cut, t.Own + o.Variance);
+            var n = Size(_p.TripFrom[v] + t);
+            var some = Vector256.GreaterThan(n, Vector256<double>.Zero);
+            var mean = sums[t] / Vector256.Max(n, Vector256<double>.One);
+            within += squares[t] - sums[t] * mean;
+            means += mean;
+            of += mean * mean;
+            count += Vector256<double>.One & some;
         }
-        var trips = byTrip.Where(t => t.N > 0).ToArray(); // trips are counted per witness
-        if (trips.Length == 0) return (priorRun, priorTrip);
-        var taken = 0.0; // residuals that the cells themselves took up
-        for (var c = 0; c < used.Length; c++) taken += used[c] / (precision[c] + 1 / (RoadPriors.CellWidth * RoadPriors.CellWidth));
-        var all = trips.Sum(t => t.N);
-        var kept = Math.Max(0.1, 1 - taken / all);
-        var (within, freedom, own) = (0.0, 0.0, 0.0);
-        foreach (var t in trips)
+        return (within, of - means * means / Vector256.Max(count, Vector256<double>.One));
+    }
+
+    /// <summary>Runs of a trip, by witness.</summary>
+    public Vector256<double> Size(int trip) => RoadSystem.Load(_p.TripSize, trip);
+
+    /// <param name="witness">Which witness.</param>
+    /// <param name="within">Squares within trips.</param>
+    /// <param name="between">Squares between trips' means about their vehicle's.</param>
+    /// <param name="taken">Observations' worth that the cells took up.</param>
+    public (double Run, double Trip) Of(Witness witness, double within, double between, double taken)
+    {
+        var (lane, (priorRun, priorTrip)) = ((int)witness, RoadPriors.Noise(witness));
+        if (_all[lane] == 0) return (priorRun, priorTrip);
+        var freedom = _freedom[lane] * Math.Max(0.1, 1 - taken / _all[lane]);
+        var run = Shrink(freedom > 0 ? within / freedom - _own[lane] / _all[lane] : 0, freedom, priorRun);
+        var excess = between - _perRun[lane] * run * run - _perOwn[lane];
+        return (run, Shrink(_degrees[lane] > 0 ? excess / _degrees[lane] : 0, _degrees[lane], priorTrip));
+    }
+
+    private void Count(int v, int lane, double[] own)
+    {
+        var (trips, perRun, perOwn) = (0, 0.0, 0.0);
+        for (var t = _p.TripFrom[v]; t < _p.TripFrom[v + 1]; t++)
         {
-            within += t.Squares - t.Sum * t.Sum / t.N;
-            freedom += (t.N - 1) * kept;
-            own += t.Own;
+            var n = (double)_p.TripSize[Lanes * t + lane];
+            if (n == 0) continue;
+            trips++;
+            _all[lane] += n;
+            _freedom[lane] += n - 1;
+            _own[lane] += own[Lanes * t + lane];
+            perRun += 1 / n;
+            perOwn += own[Lanes * t + lane] / (n * n);
         }
-        var run = Shrink(freedom > 0 ? within / freedom - own / all : 0, freedom, priorRun);
-        var (between, degrees) = (0.0, 0.0);
-        foreach (var vehicle in trips.GroupBy(t => t.Vehicle).Where(g => g.Count() > 1))
-        {
-            var means = vehicle.Select(t => (Mean: t.Sum / t.N, Error: (run * run + t.Own / t.N) / t.N)).ToArray();
-            var centre = means.Average(m => m.Mean);
-            between += means.Sum(m => (m.Mean - centre) * (m.Mean - centre)) - means.Sum(m => m.Error) * (means.Length - 1) / means.Length;
-            degrees += means.Length - 1;
-        }
-        var trip = Shrink(degrees > 0 ? between / degrees : 0, degrees, priorTrip);
-        return (run, trip);
+        if (trips < 2) return;
+        _degrees[lane] += trips - 1;
+        _perRun[lane] += perRun * (trips - 1) / trips;
+        _perOwn[lane] += perOwn * (trips - 1) / trips;
     }
 
     private static double Shrink(double variance, double freedom, double prior) =>
         Math.Sqrt((RoadPriors.PriorCount * prior * prior + freedom * Math.Max(0, variance)) / (RoadPriors.PriorCount + freedom));
-
-    private static double CellLoad(Witness witness, int gain, RoadProblem p, RoadSolve solve) => witness switch
-    {
-        Witness.BankReading => 1 + Steering.SteeringEquations.RollGain,
-        Witness.Torque => solve.U[p.TorqueGain[gain]],
-        _ => solve.U[p.AngleGain[gain]],
-    };
 }

@@ -1,69 +1,120 @@
+using System.Runtime.Intrinsics;
 using WearWatch.Diagnosis.Statistics;
 using WearWatch.Diagnosis.Steering;
 
 namespace WearWatch.Diagnosis.Roads;
 
 /// <summary>Reads each vehicle's figures off the solved fit.</summary>
-internal sealed class VehicleReading(RoadProblem problem, RoadSolve solve, double[] variance, double[] bankVariance)
+internal sealed class VehicleReading(RoadProblem problem, RoadSolve solve, double[] variance, double[] bankVariance, double[] levelVariance)
 {
+    public const int EvidenceKept = 5;
     private const int LeastModeRuns = 3;
-    private const int EvidenceKept = 5;
+    private const int Lanes = RoadProblem.Lanes;
+
+    private readonly RoadSystem _system = solve.System;
 
     public IReadOnlyList<SteeringFigures> All()
     {
-        var weights = new Dictionary<int, double>();
-        for (var k = 0; k < problem.Observations.Count; k++)
+        var companions = new int[problem.Components];
+        foreach (var k in problem.ComponentOfVehicle) companions[k]++;
+        var all = new SteeringFigures[problem.Vehicles.Length];
+        problem.Graph.ByVehicle.Each((_, from, to) =>
         {
-            var o = problem.Observations[k];
-            // Weights of different witnesses are made comparable by the spread of their class.
-            var unit = o.Witness switch { Witness.Torque => solve.PullSpread[o.Gain], Witness.Angle => solve.OffCentreSpread[o.Gain], _ => RoadPriors.CellWidth };
-            weights[o.Run] = weights.GetValueOrDefault(o.Run) + unit * unit * solve.WeightOf(k);
-        }
-        var companions = problem.ComponentOfVehicle.GroupBy(c => c).ToDictionary(g => g.Key, g => g.Count());
-        return Enumerable.Range(0, problem.Vehicles.Length).Select(v => Of(v, weights, companions[problem.ComponentOfVehicle[v]] > 1)).ToArray();
+            for (var v = from; v < to; v++) all[v] = Of(v, companions[problem.ComponentOfVehicle[v]] > 1);
+        });
+        return all;
     }
 
-    private SteeringFigures Of(int v, Dictionary<int, double> weights, bool shared)
+    private SteeringFigures Of(int v, bool shared)
     {
-        var runs = problem.RunsOf[v];
-        var pull = problem.Pull[v] < 0 ? null : solve.Unshrunk(problem.Pull[v], variance[problem.Pull[v]]);
+        var (from, to) = (problem.RunFrom[v], problem.RunFrom[v + 1]);
+        var seconds = 0.0;
+        for (var i = from; i < to; i++) seconds += problem.Run(i).Seconds;
+        var pull = solve.Unshrunk(v, Witness.Torque, variance[Lanes * v]);
+        var reads = problem.Present[Lanes * v + (int)Witness.BankReading];
         var figures = new SteeringFigures
         {
             VehicleId = problem.Vehicles[v].VehicleId,
             SteeringPullNm = pull,
-            OffCentreDeg = problem.OffCentre[v] < 0 ? null : solve.Unshrunk(problem.OffCentre[v], variance[problem.OffCentre[v]]),
+            OffCentreDeg = solve.Unshrunk(v, Witness.Angle, variance[Lanes * v + 1]),
             BrakePullNm = pull is null ? null : Extra(v, RunMode.Brake),
             DrivePullNm = pull is null || problem.TakesDriven[v] ? null : Extra(v, RunMode.Drive),
-            Runs = runs.Count,
-            Seconds = runs.Sum(i => problem.Runs[i].Seconds),
+            BankReadingBias = reads ? new(_system.U[Lanes * v + 2], Math.Sqrt(variance[Lanes * v + 2])) : null,
+            RoadLevelError = to > from ? Math.Sqrt(levelVariance[2 * problem.ComponentOfVehicle[v] + (int)problem.Vehicles[v].TrafficSide]) : null,
+            Runs = to - from,
+            Seconds = seconds,
             TorqueIncludesAssist = problem.Vehicles[v].Torque == TorqueKind.Total,
-            RoadShare = shared ? RoadShare.SharedCells : problem.Bias[v] >= 0 ? RoadShare.OwnBankReading : RoadShare.UsualCrown,
-            EvidenceRuns = runs.Where(weights.ContainsKey).OrderByDescending(i => weights[i]).ThenBy(i => i)
-                .Select(i => $"{problem.Runs[i].StreamId}/{problem.Runs[i].Sequence}").Distinct().Take(EvidenceKept).ToArray(),
+            RoadShare = shared ? RoadShare.SharedCells : reads ? RoadShare.OwnBankReading : RoadShare.UsualCrown,
+            EvidenceRuns = Evidence(v),
         };
         return figures with { NotPossible = NotPossible(v, figures).ToArray() };
+    }
+
+    /// <summary>Runs that carry most weight; those of different witnesses are made comparable by the spread of their class.</summary>
+    private string[] Evidence(int v)
+    {
+        var graph = problem.Graph;
+        var (from, to) = (graph.SightingFrom[graph.VehicleFrom[v]], graph.SightingFrom[graph.VehicleFrom[v + 1]]);
+        var (run, trip) = RoadWeighing.Squares(solve.Noise);
+        var (pull, angle) = (solve.PullSpread[problem.GainOf[v]], solve.OffCentreSpread[problem.GainOf[v]]);
+        var unit = Vector256.Create(pull * pull, angle * angle, RoadPriors.CellWidth * RoadPriors.CellWidth, 0);
+        var (gain, mine) = (Vector256.LoadUnsafe(ref _system.Gain[Lanes * problem.GainOf[v]]), Vector256.LoadUnsafe(ref _system.U[Lanes * v]));
+        var weights = new double[to - from];
+        for (var e = graph.VehicleFrom[v]; e < graph.VehicleFrom[v + 1]; e++)
+            for (var i = graph.SightingFrom[e]; i < graph.SightingFrom[e + 1]; i++)
+            {
+                var own = Vector128.LoadUnsafe(ref problem.Variances[RoadProblem.Witnesses * i]);
+                var residual = RoadSystem.Widen(Vector128.LoadUnsafe(ref problem.Values[RoadProblem.Witnesses * i])) - mine - gain * _system.Bank[graph.CellOf[e]];
+                var weight = RoadWeighing.Weight(residual, own, Vector128.LoadUnsafe(ref problem.TripSize[Lanes * problem.Trip[i]]), run, trip, Vector128.Sqrt(own + run + trip), robust: true);
+                weights[i - from] = Vector256.Sum(weight * unit);
+            }
+        return Heaviest(weights, from);
+    }
+
+    /// <summary>Of equal weights the earlier run comes first, and a run that was cut in two is named once.</summary>
+    private string[] Heaviest(double[] weights, int from)
+    {
+        var names = new List<string>(EvidenceKept);
+        while (names.Count < EvidenceKept)
+        {
+            var best = -1;
+            for (var i = 0; i < weights.Length; i++)
+                if (weights[i] >= 0 && (best < 0 || weights[i] > weights[best] || (weights[i] == weights[best] && problem.PlaceOf[from + i] < problem.PlaceOf[from + best]))) best = i;
+            if (best < 0) break;
+            weights[best] = -1;
+            if (Name(problem.PlaceOf[from + best]) is var name && !names.Contains(name)) names.Add(name);
+        }
+        return [.. names];
+    }
+
+    private string Name(int place)
+    {
+        ref readonly var run = ref problem.Run(place);
+        return $"{problem.Runs.Streams[run.Stream]}/{run.Sequence}";
     }
 
     /// <summary>Mean torque of one mode less that of steady running, each with its road's share removed. The shared level of the road cancels.</summary>
     private Estimate? Extra(int v, RunMode mode)
     {
-        var special = Mean(v, problem.RunsOf[v].Where(i => problem.Runs[i].Mode == mode));
-        var steady = Mean(v, problem.RunsOf[v].Where(i => problem.Runs[i].Mode == RunMode.Coast));
-        return special - steady;
+        var special = Mean(v, mode); // first, since few vehicles have enough of it
+        return special is null ? null : special - Mean(v, RunMode.Coast);
     }
 
-    private Estimate? Mean(int v, IEnumerable<int> runs)
+    private Estimate? Mean(int v, RunMode mode)
     {
         var (noise, trip) = solve.Noise[(int)Witness.Torque];
-        var gain = solve.U[problem.TorqueGain[problem.GainOf(problem.Vehicles[v])]];
-        var rows = runs.Where(i => problem.TorqueCounts(v, problem.Runs[i])).Select(i =>
+        var gain = _system.U[_system.GainAt + Lanes * problem.GainOf[v]];
+        var (rows, cells) = (new List<(int Trip, double Value, double Variance)>(), Array.Empty<int>());
+        for (var i = problem.RunFrom[v]; i < problem.RunFrom[v + 1]; i++)
         {
-            var (bank, bankError) = BankUnder(v, i);
-            var e = problem.Runs[i].TorqueNm!.Value;
-            return (Trip: problem.Runs[i].StreamId, Value: e.Value - gain * bank, Variance: e.StandardError * e.StandardError + noise * noise + gain * gain * bankError);
-        }).ToArray();
-        if (rows.Length < LeastModeRuns) return null;
-        var sizes = rows.GroupBy(r => r.Trip).ToDictionary(g => g.Key, g => g.Count());
+            ref readonly var run = ref problem.Run(i);
+            if (run.Mode != mode || !problem.TorqueCounts(v, run)) continue;
+            if (rows.Count == 0) cells = problem.CellsUnder(v);
+            var (bank, bankError) = BankUnder(v, i, cells[i - problem.RunFrom[v]]);
+            rows.Add((run.Stream, run.Torque - gain * bank, (double)run.TorqueError * run.TorqueError + noise * noise + gain * gain * bankError));
+        }
+        if (rows.Count < LeastModeRuns) return null;
+        var sizes = rows.CountBy(r => r.Trip).ToDictionary();
         var centre = RobustMean.Huber(rows.Select(r => r.Value).ToArray());
         var (weights, sum) = (0.0, 0.0);
         foreach (var r in rows)
@@ -77,15 +128,14 @@ internal sealed class VehicleReading(RoadProblem problem, RoadSolve solve, doubl
     }
 
     /// <summary>Sine of the bank under a run and its variance, from the cell, the run's own reading, or the usual crown.</summary>
-    private (double Bank, double Variance) BankUnder(int v, int run)
+    private (double Bank, double Variance) BankUnder(int v, int place, int cell)
     {
-        var cell = problem.CellOfRun[run] >= 0 ? problem.CellOfRun[run] : problem.CellNamed(problem.Runs[run].RoadCell);
-        if (cell >= 0) return (solve.Bank[cell], bankVariance[cell]);
-        if (problem.Bias[v] >= 0 && problem.Runs[run].BankReading is { } reading)
-            return ((reading.Value - solve.U[problem.Bias[v]]) / (1 + SteeringEquations.RollGain),
-                reading.StandardError * reading.StandardError + Math.Pow(solve.Noise[(int)Witness.BankReading].Run, 2));
-        var component = problem.Component[problem.ComponentOfVehicle[v]];
-        return (solve.U[problem.Crown[(int)problem.Vehicles[v].TrafficSide]] + (component < 0 ? 0 : solve.U[component]), RoadPriors.CellWidth * RoadPriors.CellWidth);
+        if (cell >= 0) return (_system.Bank[cell], bankVariance[cell]);
+        ref readonly var run = ref problem.Run(place);
+        if (problem.Present[Lanes * v + 2] && !float.IsNaN(run.Bank))
+            return ((run.Bank - _system.U[Lanes * v + 2]) / (1 + SteeringEquations.RollGain), (double)run.BankError * run.BankError + Math.Pow(solve.Noise[(int)Witness.BankReading].Run, 2));
+        var usual = _system.U[_system.CrownAt + (int)problem.Vehicles[v].TrafficSide] + _system.U[_system.LevelAt + problem.ComponentOfVehicle[v]];
+        return (usual, RoadPriors.CellWidth * RoadPriors.CellWidth);
     }
 
     private IEnumerable<string> NotPossible(int v, SteeringFigures f)

@@ -16,8 +16,12 @@ internal sealed class RoadFleet
     public int RunsPerTrip { get; init; } = 12;
     /// <summary>Each vehicle on cells of its own.</summary>
     public bool Apart { get; init; }
+    /// <summary>Above 1, the cells are split among so many depots, and one run in ten is on cells that all share.</summary>
+    public int Depots { get; init; } = 1;
     public bool Position { get; init; } = true;
     public bool Acceleration { get; init; } = true;
+    /// <summary>One standard deviation of the roads' mean bank, sine, from world to world.</summary>
+    public double LevelSd { get; init; } = 0.005;
     /// <summary>+1, or −1 for the mirror image of the whole fleet and its roads.</summary>
     public double Hand { get; init; } = 1;
 
@@ -29,7 +33,7 @@ internal sealed class RoadFleet
 
     public RoadFleet Drive()
     {
-        var level = 0.02 + 0.005 * Normal();
+        var level = 0.02 + LevelSd * Normal();
         var banks = Enumerable.Range(0, Apart ? Vehicles * Cells : Cells).Select(_ => level + 0.01 * Normal()).ToArray();
         for (var v = 0; v < Vehicles; v++) Drive(v, banks);
         return this;
@@ -45,7 +49,7 @@ internal sealed class RoadFleet
             var (windTorque, windAngle, load) = (0.12 * Normal(), 0.3 * Normal(), 0.001 * Normal());
             for (var k = 0; k < RunsPerTrip; k++)
             {
-                var cell = _random.Next(Cells) + (Apart ? v * Cells : 0);
+                var cell = Depots > 1 ? DepotCell(v) : _random.Next(Cells) + (Apart ? v * Cells : 0);
                 var b = banks[cell];
                 Runs.Add(new()
                 {
@@ -64,6 +68,12 @@ internal sealed class RoadFleet
                 });
             }
         }
+    }
+
+    private int DepotCell(int v)
+    {
+        var each = Cells / (Depots + 1);
+        return _random.NextDouble() < 0.1 ? _random.Next(each) : each * (1 + v % Depots) + _random.Next(each);
     }
 
     /// <summary>A value with its stated error and with more beyond it that the run cannot know of.</summary>

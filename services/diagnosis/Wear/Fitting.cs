@@ -16,6 +16,8 @@ internal sealed record FittingPoint
     public Estimate? Shoulder { get; init; }
     /// <summary>0 to 1: how far the survey is believed as it stands.</summary>
     public double Weight { get; init; } = 1;
+    /// <summary>True for the start of a tyre fitted new: its depth is the nominal one, and the first of its wear was not like the rest.</summary>
+    public bool New { get; init; }
     public TreadShape? Shape { get; init; }
     /// <summary>The readings behind it, after the explanation.</summary>
     public TyreReadings? Readings { get; init; }

@@ -12,6 +12,9 @@ public sealed record NoiseFigures
     /// <summary>Correlation of neighbouring residuals of a wear line, 0 to 0.6: they come in runs of one sign.</summary>
     public double ResidualCorrelation { get; init; } = 0.1;
 
+    /// <summary>How the first wear differs from the later.</summary>
+    public RunIn RunIn { get; init; } = new();
+
     /// <summary>Widening of a slope's error for that correlation: √((1+ρ)/(1−ρ)), the AR(1) factor.</summary>
     public double SlopeFactor(int count) => count > 2 ? Math.Sqrt((1 + ResidualCorrelation) / (1 - ResidualCorrelation)) : 1;
 }
@@ -75,15 +78,20 @@ internal sealed record FittingLines(CorrelatedLine? Mean, CorrelatedLine? Edge, 
     public static FittingLines Fit(IReadOnlyList<FittingPoint> points, NoiseFigures noise, Func<int, (Estimate Bias, int Reader)> bias, double rateMmPer1000Km)
     {
         var readings = new List<LineReading>(points.Count);
+        var kept = new LinePoint[points.Count];
+        for (var i = 0; i < kept.Length; i++) kept[i] = LinePoint.Of(points[i], points[i].Survey < 0 ? -1 : bias(points[i].Survey).Reader, -1);
+        var fittedNew = kept.Length > 0 && points[0].New;
+        var loss = fittedNew ? RunIn.MiddleLoss(kept) : 0;
         return new(Line(TreadFigure.Mean), Line(TreadFigure.Edge), Line(TreadFigure.Shoulder));
 
         CorrelatedLine? Line(TreadFigure figure)
         {
             readings.Clear();
-            foreach (var p in points)
+            for (var i = 0; i < kept.Length; i++)
             {
-                var (b, reader) = p.Survey < 0 ? (new Estimate(0, 0), -1) : bias(p.Survey);
-                if (Reading(LinePoint.Of(p, reader, -1), figure, noise, b, rateMmPer1000Km) is { } reading) readings.Add(reading);
+                var b = points[i].Survey < 0 ? new Estimate(0, 0) : bias(points[i].Survey).Bias;
+                var p = fittedNew ? noise.RunIn.OnLine(kept[i], kept[0].Mean.Value, loss) : kept[i];
+                if (Reading(p, figure, noise, b, rateMmPer1000Km) is { } reading) readings.Add(reading);
             }
             return CorrelatedLine.Fit(readings);
         }

@@ -53,6 +53,8 @@ internal sealed class FleetTyre
     public required int Fall { get; init; }
     /// <summary>Feather at its last survey that took it, mm.</summary>
     public required Estimate? Feather { get; init; }
+    /// <summary>The first point is the start of a tyre fitted new.</summary>
+    public required bool FittedNew { get; init; }
     /// <summary>In order of distance.</summary>
     public required LinePoint[] Points { get; init; }
 
@@ -78,8 +80,12 @@ internal sealed class FleetTyre
         Span<LineReading> readings = room ? stackalloc LineReading[Points.Length] : new LineReading[Points.Length];
         Span<double> standardised = room ? stackalloc double[Points.Length] : new double[Points.Length];
         var count = 0;
-        foreach (ref readonly var p in Points.AsSpan())
+        var loss = FittedNew ? RunIn.MiddleLoss(Points) : 0;
+        foreach (ref readonly var raw in Points.AsSpan())
+        {
+            var p = FittedNew ? noise.RunIn.OnLine(raw, Points[0].Mean.Value, loss) : raw;
             if (FittingLines.Reading(p, figure, noise, figure == TreadFigure.Mean ? readers.Bias(p) : default, rate) is { } reading) readings[count++] = reading;
+        }
         var fit = LineSolver.Fit(readings[..count], standardised, before is { } b ? (b.Slope.Value, b.AtLast.Value) : null);
         if (fit is not null && figure != TreadFigure.Mean) neighbours.Add(standardised[..count]);
         return new(fit, count);

@@ -97,6 +97,7 @@ internal sealed class FleetWearFit
                 Dual = fitting.Position.Dual,
                 Fall = NormalWear.FallSign(fitting.Position, history.Tread.Depot.TrafficSide),
                 Feather = fitting.Points.LastOrDefault(p => p.Shape?.FeatherMm is not null)?.Shape!.FeatherMm,
+                FittedNew = points[0].New,
                 Points = kept,
             });
         }
@@ -119,6 +120,7 @@ internal sealed class FleetWearFit
             Noise = FleetNoise.Of(_tyres, neighbours.Aggregate((a, b) => a + b), _fleet.Noise),
             FittingsWithRate = _tyres.Count(t => t.Mean.Fit is not null),
         };
+        _fleet = _fleet with { Noise = _fleet.Noise with { RunIn = RunIn.Of(_tyres, _fleet.Noise, readers, Rate) } };
         _fleet = _fleet with { Normals = Normals() };
         normals = _fleet.Normals.ToDictionary(n => (n.Class, n.Role, n.Dual), n => n.RateMmPer1000Km);
         var (technicians, gauges) = ReaderBiases.Fit(_blocks, t => new(Rate(t), Rate(t) * OwnRateShare), _fleet.Noise.MeanScale, _technicians, _gauges);

@@ -38,6 +38,8 @@ internal sealed class HistoryReader
     private readonly IReadOnlyList<WeighedExplanation>[] _weighed;
     private readonly Dictionary<(int Survey, int Position), double> _misread = [];
     private readonly List<WeighedExplanation>[] _odd;
+    /// <summary>Recorded beginnings whose tyre the readings do not bear out.</summary>
+    private readonly HashSet<(int Position, int Survey)> _notThatTyre = [];
     private readonly List<(Position Position, int Survey, double Probability)> _inferredCuts = [];
     private readonly Dictionary<int, ExplanationSet> _sets = [];
     // Restated whenever an explanation, a weight or a beginning changes: evidence of each fitting, and place of each survey in it.
@@ -287,7 +289,7 @@ internal sealed class HistoryReader
     private FittingPoint? Start(int p, int fitting)
     {
         var cut = _cuts.At(p)[fitting];
-        if (cut.Record is not { } r || cut.Km is not { } km) return null;
+        if (cut.Record is not { } r || cut.Km is not { } km || _notThatTyre.Contains((p, cut.Survey))) return null;
         return r.Event switch
         {
             FittingEvent.Fitted when _cuts.NewDepth(p, fitting) is { } n && r.RetreadCount >= 0 => NewTyre(p, fitting, n, km),
@@ -301,7 +303,7 @@ internal sealed class HistoryReader
     /// <summary>A fitting record gives the depth when new; the first survey shows whether the tyre was new.</summary>
     private FittingPoint? NewTyre(int p, int fitting, double newDepth, double km)
     {
-        var start = new FittingPoint { Survey = -1, Km = km, Mean = new(newDepth, TreadShape.NewDepthSdMm), Edge = new(0, 0.15), Shoulder = new(0, 0.3) };
+        var start = new FittingPoint { Survey = -1, New = true, Km = km, Mean = new(newDepth, TreadShape.NewDepthSdMm), Edge = new(0, 0.15), Shoulder = new(0, 0.3) };
         for (var s = _cuts.At(p)[fitting].Survey; s < _surveys.Count && _cuts.Of(p, s) == fitting; s++)
         {
             if (Shape(s, p) is not { } first) continue;
@@ -367,7 +369,9 @@ internal sealed class HistoryReader
 
     private Action Changed(int p, int survey, double gain) => () =>
     {
-        _cuts.Add(_positions[p], new FittingCuts.Cut(survey, null, null));
+        // Where a fitting was recorded it stands, but the tyre is not the one the record tells of: it starts at nothing known.
+        if (_cuts.At(p)[_cuts.Of(p, survey)] is { Record: not null } cut && cut.Survey == survey) _notThatTyre.Add((p, survey));
+        else _cuts.Add(_positions[p], new FittingCuts.Cut(survey, null, null));
         _inferredCuts.Add((_positions[p], survey, Probability(gain)));
     };
 

@@ -28,7 +28,7 @@ internal sealed class InferredEvents(
                 Position = position,
                 Event = kind,
                 FromPosition = from,
-                After = surveys[Math.Max(0, survey - 1)].Survey.At,
+                After = surveys[before?.Survey ?? Math.Max(0, survey - 1)].Survey.At,
                 Before = surveys[survey].Survey.At,
                 Probability = probability,
                 Sentence = kind switch

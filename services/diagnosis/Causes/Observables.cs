@@ -50,7 +50,7 @@ public static class Observables
     {
         for (var i = 0; i < model.Positions.Count; i++)
         {
-            if (!history.Places.TryGetValue(model.Positions[i], out var place)) continue;
+            if (history.At(model.Positions[i]) is not { } place) continue;
             var (normal, wear) = (place.NormalRateMmPer1000Km, place.ByOnset[onset]);
             var vehicle = Math.Sqrt(Math.Pow(Math.Max(Sensitivities.LogRateVehicle, place.BetweenLogSd), 2) + Math.Pow(place.NormalLogRateSd, 2));
             var axle = model.Figures.Vehicle.AxleAt(model.Positions[i].Axle) is { Lifting: true } ? Sensitivities.LogRateLifting : Sensitivities.LogRateAxle;

@@ -74,7 +74,7 @@ public sealed class SingleReadings
             var damper = at && story!.Quantity == Quantity.Damper;
             sum += at && story!.Quantity == Quantity.Pressure ? Pressure(tyre, magnitude) : _pressureInOrder[i];
             sum += (damper ? Round(tyre, magnitude) : _roundInOrder[i]) + Cupped(tyre, damper, slip);
-            var (before, after) = _model.Figures.Wear?.Places.GetValueOrDefault(tyre.Position)?.ByOnset[onset] is { } dated ? (dated.Before, dated.After)
+            var (before, after) = _model.Figures.Wear?.At(tyre.Position)?.ByOnset[onset] is { } dated ? (dated.Before, dated.After)
                 : (new Rubs(), new(tyre.RubsCatchingOutward, tyre.RubsCatchingInward, tyre.RubsCatchingNeither));
             straight += Felt(after, slip, sd) + Felt(before, seen.SlipBefore[i].Mean, seen.SlipBefore[i].Sd);
             swapped += Felt(after.Exchanged, slip, sd) + Felt(before.Exchanged, seen.SlipBefore[i].Mean, seen.SlipBefore[i].Sd);

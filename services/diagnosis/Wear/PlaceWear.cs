@@ -47,6 +47,7 @@ public sealed record PlaceWear
 /// <summary>One place's normal wear and its evidence for every onset, in the order of <see cref="Onsets.DaysAgo"/>.</summary>
 public sealed record PlaceHistory
 {
+    public required Facts.Position Position { get; init; }
     /// <summary>Normal rate, mm per 1000 km, and the standard error of its logarithm.</summary>
     public required double NormalRateMmPer1000Km { get; init; }
     public required double NormalLogRateSd { get; init; }
@@ -63,7 +64,10 @@ public sealed record VehicleWearHistory
     /// <summary>Inverse covariance of the surveys' shared errors of depth, mm⁻²; row by row.</summary>
     public required double[] SharedPrecision { get; init; }
     public required int Surveys { get; init; }
-    public required IReadOnlyDictionary<Facts.Position, PlaceHistory> Places { get; init; }
+    /// <summary>Front to rear, left before right; only places that were read.</summary>
+    public required IReadOnlyList<PlaceHistory> Places { get; init; }
+
+    public PlaceHistory? At(Facts.Position position) => Places.FirstOrDefault(p => p.Position == position);
 }
 
 /// <summary>Hand rubs: how many caught moving outward (toe-in), inward (toe-out), neither.</summary>

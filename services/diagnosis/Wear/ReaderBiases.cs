@@ -14,7 +14,8 @@ public sealed record ReaderBias(string Reader, Estimate BiasMm, double AgainstOt
 
 /// <summary>
 /// Crossed random effects of technicians and gauges on the depths of the whole fleet, against each fitting's own line
-/// (intercept free, rate shrunk to the fleet's). Only differences between readers can show; what all share stays in the depths.
+/// (intercept free, rate shrunk to the fleet's). Only differences between readers can show; what all share stays in the depths: a
+/// new depth that all readings fall short of tells as well of run-in, so starts of new tyres are left out.
 /// </summary>
 /// <remarks>
 /// Ridge form of the mixed model: N. M. Laird and J. H. Ware, Biometrics 38 (1982) 963. The covariance of a fitting is a diagonal
@@ -113,19 +114,22 @@ internal sealed class ReaderBiases
 
     private double Precision(in LinePoint p) => p.MeanPrecision / _scale;
 
-    private static double Centre(FleetTyre tyre)
+    private static ReadOnlySpan<LinePoint> Points(FleetTyre tyre) => tyre.Points.AsSpan(tyre.FittedNew ? 1 : 0);
+
+    private static double Centre(ReadOnlySpan<LinePoint> points)
     {
         double sum = 0;
-        foreach (ref readonly var p in tyre.Points.AsSpan()) sum += p.X;
-        return sum / tyre.Points.Length;
+        foreach (ref readonly var p in points) sum += p.X;
+        return sum / points.Length;
     }
 
     [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private void AddInformation(FleetTyre tyre, Columns columns, double[] information, int[] counts)
     {
-        if (tyre.Points.Length < 2) return;
-        var (x0, rate) = (Centre(tyre), _rateMmPer1000Km(tyre));
-        foreach (ref readonly var p in tyre.Points.AsSpan())
+        var points = Points(tyre);
+        if (points.Length < 2) return;
+        var (x0, rate) = (Centre(points), _rateMmPer1000Km(tyre));
+        foreach (ref readonly var p in points)
         {
             var w = Precision(p);
             var (t, g) = columns.Add(p, w, w * (p.X - x0));
@@ -151,10 +155,10 @@ internal sealed class ReaderBiases
     [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private void AddRight(FleetTyre tyre, Columns columns, double[] beta, bool robust, double[] right)
     {
-        var points = tyre.Points;
+        var points = Points(tyre);
         var n = points.Length;
         if (n < 2) return;
-        var (x0, rate) = (Centre(tyre), _rateMmPer1000Km(tyre));
+        var (x0, rate) = (Centre(points), _rateMmPer1000Km(tyre));
         Span<double> y = n <= 64 ? stackalloc double[n] : new double[n];
         for (var i = 0; i < n; i++) y[i] = points[i].Mean.Value + rate.Value * (points[i].X - x0);
         if (robust) HoldIn(points, beta, y);
@@ -177,7 +181,7 @@ internal sealed class ReaderBiases
 
     /// <summary>Huber's pseudo-values: residuals from the fitting's median beyond <see cref="HoldSds"/> are pulled in.</summary>
     [MethodImpl(MethodImplOptions.AggressiveOptimization)]
-    private void HoldIn(LinePoint[] points, double[] beta, Span<double> y)
+    private void HoldIn(ReadOnlySpan<LinePoint> points, double[] beta, Span<double> y)
     {
         var n = y.Length;
         Span<double> rest = n <= 64 ? stackalloc double[n] : new double[n];

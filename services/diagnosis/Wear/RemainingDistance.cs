@@ -10,11 +10,11 @@ internal static class RemainingDistance
     private const int Nodes = 15;
 
     /// <summary>
-    /// Standard deviation of the share by which the rate ahead differs from the rate measured, with the vehicle's condition as it
-    /// is: months differ by some 6 % either way, which half a year of surveys does not average out, and a tread slows a little as
-    /// it wears (both from memory).
+    /// Standard deviations of the share by which the rate ahead differs from the rate measured, the vehicle's condition as it is:
+    /// season and weather, which half a year of surveys does not average out, and the slowing of a tread over the rest of its
+    /// life, which is not assumed but may be (both from memory; the fleet's own slow-down is admitted on evidence only).
     /// </summary>
-    private const double AheadShareSd = 0.05;
+    private const double SeasonShareSd = 0.045, SlowDownShareSd = 0.05;
 
     /// <summary>Quantiles of the standard normal law at the middles of equal shares, brought to unit variance.</summary>
     private static readonly double[] s_nodes = StandardNodes();
@@ -36,7 +36,7 @@ internal static class RemainingDistance
         var logSd = Math.Sqrt(Math.Log(1 + Math.Pow(rateMmPer1000Km.StandardError / rateMmPer1000Km.Value, 2)));
         var logMean = Math.Log(rateMmPer1000Km.Value) - logSd * logSd / 2;
         // Of a fast rate ahead only the measured part was there in the past.
-        var aheadSd = Math.Sqrt(logSd * logSd + AheadShareSd * AheadShareSd);
+        var aheadSd = Math.Sqrt(logSd * logSd + SeasonShareSd * SeasonShareSd + SlowDownShareSd * SlowDownShareSd);
         var rates = s_nodes.Select(z => (Ahead: Math.Exp(logMean + aheadSd * z), Past: Math.Exp(logMean + logSd * logSd / aheadSd * z))).ToArray();
         var sd = Math.Max(depthMm.StandardError, 1e-6);
         double Reached(double km) => rates.Average(r => 0.5 * SpecialFunctions.Erfc(-((limitMm + (r.Ahead * km + (r.Past - rateMmPer1000Km.Value) * broughtForwardKm) / 1000 - depthMm.Value) / sd) / Constants.Sqrt2));

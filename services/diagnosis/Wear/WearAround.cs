@@ -34,11 +34,11 @@ internal sealed class WearAround
 
     public VehicleWearHistory? Read()
     {
-        var places = _history.Fittings.GroupBy(f => f.Position).Where(g => g.Any(f => f.Points.Count > 0)).OrderBy(g => g.Key).ToDictionary(g => g.Key, g => Place([.. g]));
-        return places.Count == 0 ? null : new VehicleWearHistory
+        PlaceHistory[] places = [.. _history.Fittings.GroupBy(f => f.Position).Where(g => g.Any(f => f.Points.Count > 0)).OrderBy(g => g.Key).Select(g => Place([.. g]))];
+        return places.Length == 0 ? null : new VehicleWearHistory
         {
             Surveys = _history.Surveys.Count,
-            SharedPrecision = SharedPrecision(places.Values.Average(p => p.NormalRateMmPer1000Km)),
+            SharedPrecision = SharedPrecision(places.Average(p => p.NormalRateMmPer1000Km)),
             Places = places,
         };
     }
@@ -64,6 +64,7 @@ internal sealed class WearAround
         }
         return new PlaceHistory
         {
+            Position = position,
             NormalRateMmPer1000Km = rate,
             NormalLogRateSd = normal.LogRate.StandardError,
             BetweenLogSd = normal.LogRateBetweenSd,

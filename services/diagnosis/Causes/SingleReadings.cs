@@ -77,7 +77,7 @@ public sealed class SingleReadings
             var (before, after) = _model.Figures.Wear?.At(tyre.Position)?.ByOnset[onset] is { } dated ? (dated.Before, dated.After)
                 : (new Rubs(), new(tyre.RubsCatchingOutward, tyre.RubsCatchingInward, tyre.RubsCatchingNeither));
             straight += Felt(after, slip, sd) + Felt(before, seen.SlipBefore[i].Mean, seen.SlipBefore[i].Sd);
-            swapped += Felt(after.Exchanged, slip, sd) + Felt(before.Exchanged, seen.SlipBefore[i].Mean, seen.SlipBefore[i].Sd);
+            swapped += Felt(after.Exchanged(), slip, sd) + Felt(before.Exchanged(), seen.SlipBefore[i].Mean, seen.SlipBefore[i].Sd);
         }
         return sum + straight + Math.Log(1 - RubSwapped + RubSwapped * Math.Exp(swapped - straight));
     }

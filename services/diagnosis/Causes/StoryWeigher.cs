@@ -11,8 +11,8 @@ public sealed class StoryWeigher
     private const double WorthTrying = -1.5;
 
     /// <summary>Log likelihood below the story's best at which an onset and a magnitude no longer matter, and how many are weighed in full.</summary>
-    private const double FarBelow = 6;
-    private const int MostRefined = 16;
+    private const double FarBelow = 10;
+    private const int MostRefined = 60;
 
     /// <summary>SD of a tyre's slip over RMS service slip that a scan takes for it.</summary>
     private const double ScannedSlipSd = 0.3;

@@ -76,5 +76,5 @@ public readonly record struct Rubs(int Outward, int Inward, int Neither)
     public int Count => Outward + Inward + Neither;
 
     /// <summary>As noted by one who takes outward for inward.</summary>
-    public Rubs Exchanged => new(Inward, Outward, Neither);
+    public Rubs Exchanged() => new(Inward, Outward, Neither);
 }

@@ -3,41 +3,55 @@ using WearWatch.Diagnosis.Wear;
 namespace WearWatch.Diagnosis.Causes;
 
 /// <summary>What the joint law of observables says at one state.</summary>
-/// <param name="LogLikelihood">Natural logarithm, over the readings taken as good.</param>
-/// <param name="Worst">The row that the others predict worst; −1 where there is none.</param>
-/// <param name="WorstLogOdds">Log odds that it is wild rather than good.</param>
+/// <param name="LogLikelihood">Natural logarithm, over the readings taken as good and those taken as wild.</param>
 /// <param name="Mean">Posterior mean of each shared unknown, in its prior SDs: the states first, then the sensitivities.</param>
 /// <param name="Variance">Posterior variance of the same.</param>
-public readonly record struct JointFit(double LogLikelihood, int Worst, double WorstLogOdds, double[] Mean, double[] Variance);
+public readonly record struct JointFit(double LogLikelihood, double[] Mean, double[] Variance);
 
 /// <summary>
 /// Law of all observables at one state that holds since one onset (before it the vehicle was sound), with every other
-/// quantity (in order) and every sensitivity as Gaussian unknowns of low rank, linearised at that state. One instance per
-/// vehicle and onset; not safe for concurrent use.
+/// quantity (in order) and every sensitivity as Gaussian unknowns, linearised at that state. One instance per vehicle and
+/// onset; not safe for concurrent use.
 /// </summary>
 /// <remarks>
-/// Covariance D + J·Jᵀ by the matrix inversion lemma: cost n·p² + p³ for n observables and p unknowns.
-/// Which reading may be wild is told by comparing it with its prediction from all others (leave-one-out of a Gaussian).
+/// Normal equations (P + JᵀKJ)u = Jᵀh of n places and p unknowns. A state moves the predictions of a few places only, so those
+/// of a sound vehicle are kept and only what the state reaches is replaced: cost p³/6 for the factor and little else.
+/// Which reading may be wild is told by comparing it with where all together put it.
 /// </remarks>
 public sealed class JointGaussian
 {
+    private const int MostWild = 3;
+
+    /// <summary>Log odds of a reading being wild below which none is worth taking as wild.</summary>
+    private const double WorthTrying = -1.5;
+
+    /// <summary>SD of a wild slope about a sound tyre's, share of the normal rate.</summary>
+    private const double WildSlopeSd = 2;
+
+    private static readonly double LogGood = Math.Log(1 - Sensitivities.WildShare), LogWildShare = Math.Log(Sensitivities.WildShare);
+
     private readonly VehicleModel _model;
     private readonly IReadOnlyList<Observable> _single;
     private readonly WearObservable[] _wear;
     private readonly IReadOnlyList<WearObservable>[] _anyOnset;
     private readonly double[] _sharedPrecision; // of the surveys' shared errors
-    private readonly int _surveys, _firstAxle, _firstSurvey;
+    private readonly int _surveys, _firstAxle, _firstSurvey, _unknowns;
     private readonly TyreResponse _now, _sound;
-    private readonly double[] _priorSd;
-    private readonly double[] _a; // one row of the Jacobian
-    private readonly Place[] _place; // per place: as filled at the state
-    private readonly double[] _upper, _inverse; // U of P + AᵀA = UᵀU and U⁻¹, row by row; P the precision of the unknowns before
-    private readonly bool[] _wild; // singles first, then places
-    private readonly int[] _columns; // nonzero columns of one row
-    private readonly (int[] Columns, double[] Values)[] _sparse;
-    private readonly double[] _residual;
-    private readonly double[] _forward, _b, _mean, _variance;
+    private readonly double[] _ordinarySd;
     private readonly double _shareOfPresent; // of the weeks that the steering figures stand for, the part since the onset
+    private readonly Sound?[] _sounds = new Sound?[3]; // by gain
+
+    // The system being worked on: information and its product with the best values, before the unknowns' own precision.
+    private readonly double[] _data, _dataB;
+    private readonly double[] _upper, _inverse; // U of P + data = UᵀU and U⁻¹, row by row
+    private readonly double[] _b, _forward, _mean, _variance, _row;
+    private readonly int[] _columns;
+    private readonly Place[] _moved; // places as the state has them; only those it reaches are filled
+    private readonly Row[] _rows; // single readings as the state has them
+    private readonly bool[] _reached;
+    private readonly List<int> _wild = [];
+    private Sound _at = null!;
+    private double _log;
 
     /// <summary>A place at a state: its evidence with what the place keeps unexplained integrated out, about the prediction.</summary>
     private sealed class Place(int size, int unknowns)
@@ -49,6 +63,28 @@ public sealed class JointGaussian
         public double[] After { get; } = new double[unknowns];
     }
 
+    /// <summary>A single reading at a state, whitened.</summary>
+    private sealed class Row(int unknowns)
+    {
+        public double[] Jacobian { get; } = new double[unknowns];
+        public double Residual { get; set; }
+    }
+
+    /// <summary>Everything of a sound vehicle at one gain: the places' part of the system, and what is wild there.</summary>
+    private sealed class Sound
+    {
+        public required double Gain { get; init; }
+        public required Place[] Places { get; init; }
+        public required double[] Data { get; init; }
+        public required double[] DataB { get; init; }
+        public required double Log { get; init; }
+        public double[] LogWild { get; set; } = [];
+        public double[] Variance { get; set; } = [];
+        public double[] Mean { get; set; } = [];
+        /// <summary>Readings taken as wild one after the other.</summary>
+        public int[] Wild { get; set; } = [];
+    }
+
     /// <param name="model">The vehicle.</param>
     /// <param name="wear">Its wear around every onset.</param>
     /// <param name="onset">Index into <see cref="Onsets.DaysAgo"/>: since when the state holds.</param>
@@ -58,117 +94,169 @@ public sealed class JointGaussian
         _wear = [.. wear[onset]];
         (_surveys, _sharedPrecision) = model.Figures.Wear is { } history ? (history.Surveys, history.SharedPrecision) : (0, []);
         (_now, _sound) = (new(model), new(model));
-        _priorSd = [.. model.Dimensions.Select(d => d.PriorSd)];
+        _ordinarySd = [.. model.Dimensions.Select(d => d.PriorSd)];
         _firstAxle = States + (int)Shared.Count;
         _firstSurvey = _firstAxle + model.Positions.Max(x => x.Axle);
-        var (n, p) = (_single.Count, _firstSurvey + _surveys);
-        (_a, _upper, _inverse, _forward, _wild) = (new double[p], new double[p * p], new double[p * p], new double[p], new bool[n + _wear.Length]);
-        (_residual, _b, _mean, _variance) = (new double[n], new double[p], new double[p], new double[p]);
-        _place = [.. _wear.Select(w => new Place(w.Evidence.Size, _firstSurvey))];
-        _columns = new int[p];
-        _sparse = [.. Enumerable.Range(0, n).Select(_ => (Array.Empty<int>(), Array.Empty<double>()))];
+        _unknowns = _firstSurvey + _surveys;
+        var p = _unknowns;
+        (_data, _dataB, _upper, _inverse) = (new double[p * p], new double[p], new double[p * p], new double[p * p]);
+        (_b, _forward, _mean, _variance, _row, _columns) = (new double[p], new double[p], new double[p], new double[p], new double[p], new int[p]);
+        _moved = [.. _wear.Select(w => new Place(w.Evidence.Size, _firstSurvey))];
+        _rows = [.. _single.Select(_ => new Row(_firstSurvey))];
+        _reached = new bool[model.Positions.Count];
         _shareOfPresent = Math.Min(1, Onsets.DaysAgo[onset] / Roads.SteeringFigures.PresentDays);
-        HoldGain(0);
     }
 
     public int States => _model.Dimensions.Count;
+
+    /// <summary>Gains of all edges that are weighed, in prior SDs, with the logarithm of their share: three-point Gauss–Hermite rule (Abramowitz &amp; Stegun 25.10, rescaled).</summary>
+    public static IReadOnlyList<(double Node, double LogWeight)> Gains { get; } =
+        [(-Math.Sqrt(3), Math.Log(1 / 6.0)), (0, Math.Log(2 / 3.0)), (Math.Sqrt(3), Math.Log(1 / 6.0))];
+
+    /// <summary>Index of the middle gain.</summary>
+    public const int MiddleGain = 1;
 
     /// <summary>Posterior mean and SD of the slip scale's logarithm after <see cref="At"/>: above zero, slip wears more than the class's prior says.</summary>
     public (double Mean, double Sd) LogSlipScale() =>
         (Math.Log(_now.SlipScale) + TyreResponse.Difference * _mean[States], TyreResponse.Difference * Math.Sqrt(_variance[States]));
 
-    /// <summary>Holds the gain common to all edges at so many prior SDs.</summary>
-    public void HoldGain(double standardDeviations)
-    {
-        _now.HoldGain(standardDeviations);
-        _sound.HoldGain(standardDeviations);
-        Span<double> nothing = stackalloc double[States];
-        nothing.Clear();
-        _sound.Look(nothing);
-    }
-
-    /// <summary>Evaluates at a state; the priors of the story's own dimensions are replaced by <paramref name="priorSd"/>.</summary>
+    /// <summary>Weighs a state at a gain, once for every choice of wild readings along the worst ones.</summary>
     /// <param name="state">Departures from target since the onset, one per dimension.</param>
-    /// <param name="priorSd">SD of what each dimension may depart further; null for the ordinary ones.</param>
-    /// <returns>No reading is taken as wild yet. Arrays in the result are reused by the next call.</returns>
-    public JointFit At(ReadOnlySpan<double> state, ReadOnlySpan<double> priorSd = default)
+    /// <param name="priorSd">SD of what each dimension may depart further.</param>
+    /// <param name="gain">Index into <see cref="Gains"/>.</param>
+    /// <param name="each">Called with every fit, which it must not keep.</param>
+    public void At(ReadOnlySpan<double> state, ReadOnlySpan<double> priorSd, int gain, Action<JointFit> each)
     {
-        Fill(state, priorSd.IsEmpty ? _priorSd : priorSd);
-        return Solve();
-    }
-
-    /// <summary>Log likelihood alone, no reading taken as wild: a fraction of the work of <see cref="At"/>.</summary>
-    public double Scan(ReadOnlySpan<double> state, ReadOnlySpan<double> priorSd)
-    {
-        Fill(state, priorSd);
-        var p = _b.Length;
-        var (log, quad) = Normal(p);
-        log -= 0.5 * Factor(p);
-        for (var k = 0; k < p; k++)
+        Assemble(state, gain);
+        _wild.Clear();
+        while (true)
         {
-            var f = _b[k] / _upper[k * p + k];
-            quad -= f * f;
-            if (f != 0) Subtract(_b.AsSpan(k + 1, p - k - 1), _upper.AsSpan(k * p + k + 1, p - k - 1), f);
+            var log = Solve(priorSd, inFull: true);
+            each(new(log, _mean, _variance));
+            if (_wild.Count == MostWild) return;
+            var (worst, odds) = Worst(priorSd);
+            if (odds < WorthTrying) return;
+            Drop(worst);
         }
-        return log - 0.5 * quad;
     }
 
-    /// <summary>The same state with one more reading taken as wild: it no longer informs anything.</summary>
-    public JointFit Without(int row)
+    /// <summary>
+    /// The same at the middle gain with the readings wild that are so on a sound vehicle, and with its variances: a fraction
+    /// of the work.
+    /// </summary>
+    public void Near(ReadOnlySpan<double> state, ReadOnlySpan<double> priorSd, Action<JointFit> each)
     {
-        _wild[row] = true;
-        return Solve();
+        Assemble(state, MiddleGain);
+        _wild.Clear();
+        for (var next = 0; ; next++)
+        {
+            var log = Solve(priorSd, inFull: false);
+            each(new(log, _mean, _at.Variance));
+            if (next == _at.Wild.Length) return;
+            Drop(_at.Wild[next]);
+        }
     }
 
-    /// <summary>Log density of a reading taken as wild, with the share of such readings.</summary>
-    public double LogWild(int row) => Math.Log(Sensitivities.WildShare) + (row < _single.Count ? LogNormal(_single[row].Value, _single[row].WildSd * _single[row].WildSd) : LogWildPlace(row - _single.Count));
-
-    /// <summary>Slip that shapes a tyre's tread since the onset, after the last <see cref="At"/>: mean and SD, over RMS service slip.</summary>
-    public (double Mean, double Sd) ShapeSlip(int tyre, ReadOnlySpan<double> priorSd) => _now.ShapeSlip(tyre, priorSd, _mean, _variance);
+    /// <summary>Slip that shapes a tyre's tread since the onset, at the state last weighed: mean and SD, over RMS service slip.</summary>
+    public (double Mean, double Sd) ShapeSlip(int tyre, ReadOnlySpan<double> priorSd, in JointFit fit) => _now.ShapeSlip(tyre, priorSd, fit.Mean, fit.Variance);
 
     /// <summary>The same before the onset.</summary>
-    public (double Mean, double Sd) ShapeSlipBefore(int tyre, ReadOnlySpan<double> priorSd) => _sound.ShapeSlip(tyre, priorSd, _mean, _variance);
+    public (double Mean, double Sd) ShapeSlipBefore(int tyre, ReadOnlySpan<double> priorSd, in JointFit fit) => _sound.ShapeSlip(tyre, priorSd, fit.Mean, fit.Variance);
 
-    /// <summary>Slip from the state alone, after <see cref="Scan"/>.</summary>
-    public double ShapeSlip(int tyre) => _now.ShapeSlip(tyre);
-
-    /// <summary>Steering torque (N·m) or wheel angle (deg) after the last <see cref="At"/>: mean and SD.</summary>
-    public (double Mean, double Sd) Steering(ReadOnlySpan<double> map, ReadOnlySpan<double> state, ReadOnlySpan<double> priorSd)
+    /// <summary>Steering torque (N·m) or wheel angle (deg) at the state last weighed: mean and SD.</summary>
+    public (double Mean, double Sd) Steering(ReadOnlySpan<double> map, ReadOnlySpan<double> state, ReadOnlySpan<double> priorSd, in JointFit fit)
     {
         double mean = 0, variance = 0;
         for (var d = 0; d < States; d++)
         {
-            mean += map[d] * (state[d] + priorSd[d] * _mean[d]);
-            variance += map[d] * map[d] * priorSd[d] * priorSd[d] * _variance[d];
+            mean += map[d] * (state[d] + priorSd[d] * fit.Mean[d]);
+            variance += map[d] * map[d] * priorSd[d] * priorSd[d] * fit.Variance[d];
         }
         return (mean, Math.Sqrt(variance));
     }
 
-    private void Fill(ReadOnlySpan<double> state, ReadOnlySpan<double> sd)
+    private Sound Prepared(int gain)
     {
-        Array.Clear(_wild);
+        if (_sounds[gain] is { } ready) return ready;
+        Span<double> nothing = stackalloc double[States];
+        nothing.Clear();
+        Hold(Gains[gain].Node, nothing);
+        _now.Look(nothing);
+        Place[] places = [.. _wear.Select(w => new Place(w.Evidence.Size, _firstSurvey))];
+        for (var w = 0; w < places.Length; w++) FillPlace(_wear[w], places[w]);
+        Array.Clear(_data);
+        Array.Clear(_dataB);
+        double log = 0;
+        foreach (var place in places) log += AddPlace(place, 1);
+        var sound = new Sound { Gain = Gains[gain].Node, Places = places, Data = [.. _data], DataB = [.. _dataB], Log = log };
+        _sounds[gain] = sound;
+        Assemble(nothing, gain);
+        _wild.Clear();
+        Solve(_ordinarySd, inFull: true);
+        // What a wild reading is worth hangs on the rest of the vehicle by the surveys' shared errors alone.
+        sound.LogWild = [.. _single.Select(s => LogWildShare + LogNormal(s.Value, s.WildSd * s.WildSd)), .. Enumerable.Range(0, _wear.Length).Select(w => LogWildShare + LogWildPlace(w))];
+        (sound.Mean, sound.Variance) = ([.. _mean], [.. _variance]);
+        At(nothing, _ordinarySd, gain, _ => { });
+        sound.Wild = [.. _wild];
+        return sound;
+    }
+
+    private void Hold(double gain, ReadOnlySpan<double> nothing)
+    {
+        _now.HoldGain(gain);
+        _sound.HoldGain(gain);
+        _sound.Look(nothing);
+    }
+
+    /// <summary>The system at a state: a sound vehicle's, with what the state reaches put in its place.</summary>
+    private void Assemble(ReadOnlySpan<double> state, int gain)
+    {
+        var at = Prepared(gain);
+        _at = at;
+        if (_now.Gain != at.Gain)
+        {
+            Span<double> nothing = stackalloc double[States];
+            nothing.Clear();
+            Hold(at.Gain, nothing);
+        }
         _now.Look(state);
+        at.Data.CopyTo(_data, 0);
+        at.DataB.CopyTo(_dataB, 0);
+        _log = at.Log;
+        for (var i = 0; i < _reached.Length; i++) _reached[i] = _now.Reached(i, state);
+        for (var w = 0; w < _wear.Length; w++)
+        {
+            if (!_reached[_wear[w].Tyre]) continue;
+            _log -= AddPlace(at.Places[w], -1);
+            FillPlace(_wear[w], _moved[w]);
+            _log += AddPlace(_moved[w], 1);
+        }
         for (var r = 0; r < _single.Count; r++)
         {
-            var row = _single[r];
-            Array.Clear(_a);
-            var predicted = row.Tyre < 0 ? FillSteering(row.Kind, state, sd) : _now.Fill(row.Kind, row.Tyre, 0, 0, sd, _a).Predicted;
-            var white = 1 / Math.Sqrt(row.Variance);
-            Compress(r, white);
-            _residual[r] = (row.Value - predicted) * white;
+            FillRow(_single[r], _rows[r], state);
+            _log += AddRow(r, 1);
         }
-        for (var w = 0; w < _wear.Length; w++) FillPlace(_wear[w], _place[w], sd);
+    }
+
+    private Place PlaceNow(int w) => _reached[_wear[w].Tyre] ? _moved[w] : _at.Places[w];
+
+    /// <summary>Takes a reading as wild: it no longer informs anything.</summary>
+    private void Drop(int row)
+    {
+        _wild.Add(row);
+        _log -= row < _single.Count ? AddRow(row, -1) : AddPlace(PlaceNow(row - _single.Count), -1);
+        _log += _at.LogWild[row];
     }
 
     /// <summary>
     /// Both slopes of a place: a sound vehicle's before the onset, the state's after it. What the place keeps unexplained, in
     /// proportion to its wear in both, is integrated out at once: it takes from the evidence along that one direction.
     /// </summary>
-    private void FillPlace(in WearObservable wear, Place place, ReadOnlySpan<double> sd)
+    private void FillPlace(in WearObservable wear, Place place)
     {
         var (evidence, size) = (wear.Evidence, wear.Evidence.Size);
-        var (after, worn) = _now.Fill(wear.Kind, wear.Tyre, wear.NormalEdge, wear.VehicleSd, sd, place.After);
-        var (before, soundly) = evidence.K[0] > 0 ? _sound.Fill(wear.Kind, wear.Tyre, wear.NormalEdge, wear.VehicleSd, sd, place.Before) : (0, 0);
+        var (after, worn) = _now.Fill(wear.Kind, wear.Tyre, wear.NormalEdge, wear.VehicleSd, _ordinarySd, place.After);
+        var (before, soundly) = evidence.K[0] > 0 ? _sound.Fill(wear.Kind, wear.Tyre, wear.NormalEdge, wear.VehicleSd, _ordinarySd, place.Before) : (0, 0);
         var axle = _firstAxle + _model.Positions[wear.Tyre].Axle - 1;
         var ofAxle = wear.AxleSd * (wear.Kind == ObservableKind.Rate ? 1 : wear.NormalEdge);
         (place.After[axle], place.Before[axle]) = (ofAxle * worn, ofAxle * soundly);
@@ -197,137 +285,125 @@ public sealed class JointGaussian
         }
     }
 
-    /// <summary>
-    /// A place that tells of something else (another wheel's readings, a cupped tread): its slopes lie anywhere about a sound
-    /// one's and may have changed at any onset, the surveys' shared errors are as the rest of the vehicle has them.
-    /// </summary>
-    private double LogWildPlace(int w)
+    private void FillRow(in Observable single, Row row, ReadOnlySpan<double> state)
     {
-        var usual = _wear[w].Kind == ObservableKind.Rate ? 1 : _wear[w].NormalEdge;
-        Span<double> logs = stackalloc double[_anyOnset.Length];
-        for (var o = 0; o < logs.Length; o++) logs[o] = Math.Log(logs.Length > 1 ? Onsets.Shares[o] : 1) + LogWildSlopes(_anyOnset[o][w].Evidence, usual);
-        var top = double.NegativeInfinity;
-        foreach (var log in logs) top = Math.Max(top, log);
-        double sum = 0;
-        foreach (var log in logs) sum += Math.Exp(log - top);
-        return top + Math.Log(sum);
+        Array.Clear(row.Jacobian);
+        var predicted = single.Tyre < 0 ? FillSteering(single.Kind, state, row.Jacobian) : _now.Fill(single.Kind, single.Tyre, 0, 0, _ordinarySd, row.Jacobian).Predicted;
+        var white = 1 / Math.Sqrt(single.Variance);
+        row.Residual = (single.Value - predicted) * white;
+        for (var k = 0; k < row.Jacobian.Length; k++) row.Jacobian[k] *= white;
     }
 
-    private double LogWildSlopes(SlopeEvidence evidence, double usual)
-    {
-        var (k, h, size) = (evidence.K, evidence.H, evidence.Size);
-        var (hb, ha, log) = (h[0] - usual * (k[0] + k[1]), h[1] - usual * (k[1] + k[size + 1]), usual * (h[0] + h[1] - 0.5 * usual * (k[0] + 2 * k[1] + k[size + 1])));
-        for (var s = 2; s < size; s++)
-        {
-            var c = _mean[_firstSurvey + s - 2];
-            hb -= c * k[s];
-            ha -= c * k[size + s];
-            log += c * (h[s] - usual * (k[s] + k[size + s]));
-            for (var t = 2; t < size; t++) log -= 0.5 * c * _mean[_firstSurvey + t - 2] * k[s * size + t];
-        }
-        // ½ gᵀ(K + I/W²)⁻¹g − ½ ln|I + W²K| for the two slopes.
-        var wide = WildSlopeSd * WildSlopeSd;
-        var (bb, ba, aa) = (1 + wide * k[0], wide * k[1], 1 + wide * k[size + 1]);
-        var determinant = bb * aa - ba * ba;
-        return log + 0.5 * wide * (aa * hb * hb - 2 * ba * hb * ha + bb * ha * ha) / determinant - 0.5 * Math.Log(determinant);
-    }
-
-    private double FillSteering(ObservableKind kind, ReadOnlySpan<double> state, ReadOnlySpan<double> sd)
+    private double FillSteering(ObservableKind kind, ReadOnlySpan<double> state, Span<double> row)
     {
         var map = kind == ObservableKind.SteeringPull ? _model.Torque : _model.WheelAngle;
         double predicted = 0, gained = 0;
         for (var d = 0; d < States; d++)
         {
-            predicted += map[d] * state[d] * _shareOfPresent;
+            var there = map[d] * state[d] * _shareOfPresent;
+            predicted += there;
             // The sensor's own zero is not scaled by the steering ratio.
-            if (_model.Dimensions[d].Quantity != Facts.Quantity.SensorZeroOrFrontToeSplit) gained += map[d] * state[d] * _shareOfPresent;
-            _a[d] = map[d] * sd[d];
+            if (_model.Dimensions[d].Quantity != Facts.Quantity.SensorZeroOrFrontToeSplit) gained += there;
+            row[d] = map[d] * _ordinarySd[d];
         }
         if (kind == ObservableKind.SteeringPull)
-            _a[_now.At(Shared.TorqueGain)] = gained * Math.Sqrt(Sq(Sensitivities.TorqueGainSpread) + Sq(_model.AssistSpread));
+            row[_now.At(Shared.TorqueGain)] = gained * Math.Sqrt(Sq(Sensitivities.TorqueGainSpread) + Sq(_model.AssistSpread));
         else
-            _a[_now.At(Shared.Ratio)] = gained * (_model.Figures.Vehicle.SteeringRatio is null ? Sensitivities.RatioSpreadClass : Sensitivities.RatioSpreadKnown);
+            row[_now.At(Shared.Ratio)] = gained * (_model.Figures.Vehicle.SteeringRatio is null ? Sensitivities.RatioSpreadClass : Sensitivities.RatioSpreadKnown);
         return predicted;
     }
 
     private static double Sq(double x) => x * x;
 
-    /// <summary>Whitens a row of the Jacobian and keeps its nonzero columns: a tyre hears of few states.</summary>
-    private void Compress(int r, double white)
+    /// <summary>Adds a single reading to the system, or takes it off; returns what of its log likelihood needs no solving.</summary>
+    private double AddRow(int r, int sign)
     {
-        var count = 0;
-        for (var k = 0; k < _a.Length; k++)
-            if (_a[k] != 0) _columns[count++] = k;
-        var (columns, values) = _sparse[r];
-        if (columns.Length != count) _sparse[r] = (columns, values) = (new int[count], new double[count]);
-        for (var c = 0; c < count; c++) (columns[c], values[c]) = (_columns[c], _a[_columns[c]] * white);
-    }
-
-    private JointFit Solve()
-    {
-        var p = _b.Length;
-        var (log, quad) = Normal(p);
-        log -= 0.5 * Factor(p);
-        Invert(p);
-        Posterior(p);
-        for (var j = 0; j < p; j++) quad -= _b[j] * _mean[j];
-        var (worst, odds) = Worst(p);
-        return new(log - 0.5 * quad, worst, odds, _mean, _variance);
-    }
-
-    /// <summary>Normal equations of what is taken as good: P + AᵀA above the diagonal, Aᵀr, and what of the log density needs no solving.</summary>
-    private (double Log, double Square) Normal(int p)
-    {
-        Array.Clear(_upper);
-        Array.Clear(_b);
-        for (var j = 0; j < _firstSurvey; j++) _upper[j * p + j] = 1;
-        for (var s = 0; s < _surveys; s++)
-            for (var t = s; t < _surveys; t++) _upper[(_firstSurvey + s) * p + _firstSurvey + t] = _sharedPrecision[s * _surveys + t];
-        double log = 0, quad = 0;
-        for (var r = 0; r < _single.Count; r++)
+        var (row, residual) = (_rows[r].Jacobian, _rows[r].Residual);
+        for (var c = 0; c < row.Length; c++)
         {
-            if (_wild[r]) continue;
-            quad += _residual[r] * _residual[r];
-            log += LogGood - 0.5 * Math.Log(2 * Math.PI * _single[r].Variance);
-            var (columns, values) = _sparse[r];
-            for (var c = 0; c < columns.Length; c++)
-            {
-                _b[columns[c]] += values[c] * _residual[r];
-                var row = _upper.AsSpan(columns[c] * p, p);
-                for (var e = c; e < columns.Length; e++) row[columns[e]] += values[c] * values[e];
-            }
+            if (row[c] == 0) continue;
+            var weight = sign * row[c];
+            _dataB[c] += weight * residual;
+            var into = _data.AsSpan(c * _unknowns, _unknowns);
+            for (var e = c; e < row.Length; e++) into[e] += weight * row[e];
         }
-        for (var w = 0; w < _wear.Length; w++)
-            if (!_wild[_single.Count + w])
-            {
-                log += LogGood + _place[w].Log;
-                AddPlace(_place[w], p);
-            }
-        return (log, quad);
+        return LogGood - 0.5 * (Math.Log(2 * Math.PI * _single[r].Variance) + residual * residual);
     }
 
-    /// <summary>A place in the unknowns: slopes through the two rows of its Jacobian, shared errors as they are.</summary>
-    private void AddPlace(Place place, int p)
+    /// <summary>A place in the unknowns, or taken off: slopes through the two rows of its Jacobian, shared errors as they are.</summary>
+    private double AddPlace(Place place, int sign)
     {
-        var (size, k) = (place.H.Length, place.K);
+        var (size, k, p) = (place.H.Length, place.K, _unknowns);
         var count = 0;
         for (var c = 0; c < _firstSurvey; c++)
             if (place.Before[c] != 0 || place.After[c] != 0) _columns[count++] = c;
         for (var x = 0; x < count; x++)
         {
-            var (before, after) = (place.Before[_columns[x]], place.After[_columns[x]]);
-            var row = _upper.AsSpan(_columns[x] * p, p);
-            _b[_columns[x]] += before * place.H[0] + after * place.H[1];
+            var (before, after) = (sign * place.Before[_columns[x]], sign * place.After[_columns[x]]);
+            var row = _data.AsSpan(_columns[x] * p, p);
+            _dataB[_columns[x]] += before * place.H[0] + after * place.H[1];
             var (kb, ka) = (k[0] * before + k[1] * after, k[1] * before + k[size + 1] * after);
             for (var y = x; y < count; y++) row[_columns[y]] += kb * place.Before[_columns[y]] + ka * place.After[_columns[y]];
             for (var s = 2; s < size; s++) row[_firstSurvey + s - 2] += before * k[s] + after * k[size + s];
         }
         for (var s = 2; s < size; s++)
         {
-            _b[_firstSurvey + s - 2] += place.H[s];
-            var row = _upper.AsSpan((_firstSurvey + s - 2) * p + _firstSurvey, size - 2);
-            for (var t = s; t < size; t++) row[t - 2] += k[s * size + t];
+            _dataB[_firstSurvey + s - 2] += sign * place.H[s];
+            var row = _data.AsSpan((_firstSurvey + s - 2) * p + _firstSurvey, size - 2);
+            for (var t = s; t < size; t++) row[t - 2] += sign * k[s * size + t];
         }
+        return LogGood + place.Log;
+    }
+
+    /// <summary>Solves for the unknowns; the columns of dimensions whose latitude differs from the ordinary are scaled to it.</summary>
+    private double Solve(ReadOnlySpan<double> priorSd, bool inFull)
+    {
+        var p = _unknowns;
+        _data.CopyTo(_upper, 0);
+        _dataB.CopyTo(_b, 0);
+        for (var d = 0; d < States; d++)
+        {
+            if (priorSd[d] == _ordinarySd[d]) continue;
+            var factor = priorSd[d] / _ordinarySd[d];
+            _b[d] *= factor;
+            for (var k = 0; k < d; k++) _upper[k * p + d] *= factor;
+            _upper[d * p + d] *= factor;
+            for (var k = d; k < p; k++) _upper[d * p + k] *= factor;
+        }
+        for (var j = 0; j < _firstSurvey; j++) _upper[j * p + j] += 1;
+        for (var s = 0; s < _surveys; s++)
+            for (var t = s; t < _surveys; t++) _upper[(_firstSurvey + s) * p + _firstSurvey + t] += _sharedPrecision[s * _surveys + t];
+        var log = _log - 0.5 * Factor(p);
+        if (inFull)
+        {
+            Invert(p);
+            Posterior(p);
+            double explained = 0;
+            for (var j = 0; j < p; j++) explained += _b[j] * _mean[j];
+            return log + 0.5 * explained;
+        }
+        return log + 0.5 * Substitute(p);
+    }
+
+    /// <summary>Means by forward and backward substitution; returns bᵀ(UᵀU)⁻¹b.</summary>
+    private double Substitute(int p)
+    {
+        double square = 0;
+        for (var k = 0; k < p; k++)
+        {
+            var f = _b[k] / _upper[k * p + k];
+            _b[k] = f;
+            square += f * f;
+            if (f != 0) Subtract(_b.AsSpan(k + 1, p - k - 1), _upper.AsSpan(k * p + k + 1, p - k - 1), f);
+        }
+        for (var k = p - 1; k >= 0; k--)
+        {
+            var left = _b[k];
+            var row = _upper.AsSpan(k * p, p);
+            for (var j = k + 1; j < p; j++) left -= row[j] * _mean[j];
+            _mean[k] = left / row[k];
+        }
+        return square;
     }
 
     /// <summary>Cholesky factor in place, by rows, passing over zeros: tyres of different axles meet only in the last columns. Returns the log determinant.</summary>
@@ -393,45 +469,51 @@ public sealed class JointGaussian
     }
 
     /// <summary>The reading, or the place's wear, that the rest predicts worst.</summary>
-    private (int Row, double LogOdds) Worst(int p)
+    private (int Row, double LogOdds) Worst(ReadOnlySpan<double> priorSd)
     {
         var (worst, worstOdds) = (-1, double.NegativeInfinity);
-        for (var r = 0; r < _wild.Length; r++)
+        for (var r = 0; r < _single.Count + _wear.Length; r++)
         {
-            if (_wild[r]) continue;
-            var odds = r < _single.Count ? SingleOdds(r, p) : PlaceOdds(r - _single.Count);
+            if (_wild.Contains(r)) continue;
+            var odds = _at.LogWild[r] - LogGood - (r < _single.Count ? SingleFits(r, priorSd) : PlaceFits(r - _single.Count, priorSd));
             if (odds > worstOdds) (worst, worstOdds) = (r, odds);
         }
         return (worst, worstOdds);
     }
 
-    private double SingleOdds(int r, int p)
+    /// <summary>Log density of a reading given all others (leave-one-out of a Gaussian).</summary>
+    private double SingleFits(int r, ReadOnlySpan<double> priorSd)
     {
         double reach = 0, fitted = 0;
-        var (columns, values) = _sparse[r];
-        for (var c = 0; c < columns.Length; c++) fitted += values[c] * _mean[columns[c]];
-        var left = _residual[r] - fitted;
-        if (left * left < 1) return double.NegativeInfinity; // a reading that fits this well is not wild
-        Array.Clear(_a);
-        for (var c = 0; c < columns.Length; c++) _a[columns[c]] = values[c];
-        Forward(p, _a);
+        Array.Clear(_row);
+        for (var c = 0; c < _firstSurvey; c++)
+        {
+            var value = _rows[r].Jacobian[c];
+            if (value == 0) continue;
+            if (c < States) value *= priorSd[c] / _ordinarySd[c];
+            _row[c] = value;
+            fitted += value * _mean[c];
+        }
+        var left = _rows[r].Residual - fitted;
+        if (left * left < 1) return double.PositiveInfinity; // a reading that fits this well is not wild
+        Forward(_unknowns, _row);
         foreach (var f in _forward) reach += f * f;
-        var variance = _single[r].Variance / Math.Max(1e-9, 1 - reach); // of this reading given the others
-        var departure = left / Math.Sqrt(_single[r].Variance) * variance;
-        return LogWild(r) - LogGood - LogNormal(departure, variance);
+        var variance = _single[r].Variance / Math.Max(1e-9, 1 - reach);
+        return LogNormal(left / Math.Sqrt(_single[r].Variance) * variance, variance);
     }
 
-    /// <summary>Against how well the place fits where all together put it; a place that pulls hard looks better than it is.</summary>
-    private double PlaceOdds(int w)
+    /// <summary>Log likelihood of a place where all together put it; one that pulls hard looks better than it is.</summary>
+    private double PlaceFits(int w, ReadOnlySpan<double> priorSd)
     {
-        var place = _place[w];
+        var place = PlaceNow(w);
         var size = place.H.Length;
         Span<double> step = stackalloc double[size];
         step.Clear();
         for (var c = 0; c < _firstSurvey; c++)
         {
-            step[0] += place.Before[c] * _mean[c];
-            step[1] += place.After[c] * _mean[c];
+            var mean = c < States ? _mean[c] * priorSd[c] / _ordinarySd[c] : _mean[c];
+            step[0] += place.Before[c] * mean;
+            step[1] += place.After[c] * mean;
         }
         for (var s = 2; s < size; s++) step[s] = _mean[_firstSurvey + s - 2];
         var log = place.Log;
@@ -440,13 +522,37 @@ public sealed class JointGaussian
             log += place.H[i] * step[i];
             for (var j = 0; j < size; j++) log -= 0.5 * step[i] * place.K[i * size + j] * step[j];
         }
-        return LogWild(_single.Count + w) - LogGood - log;
+        return log;
     }
 
-    private static readonly double LogGood = Math.Log(1 - Sensitivities.WildShare);
+    /// <summary>
+    /// A place that tells of something else (another wheel's readings, a cupped tread): its slopes lie anywhere about a sound
+    /// one's and may have changed at any onset, the surveys' shared errors are as the rest of the vehicle has them.
+    /// </summary>
+    private double LogWildPlace(int w)
+    {
+        var usual = _wear[w].Kind == ObservableKind.Rate ? 1 : _wear[w].NormalEdge;
+        return StoryFit.LogSum([.. _anyOnset.Select((wear, o) => (_anyOnset.Length > 1 ? Math.Log(Onsets.Shares[o]) : 0) + LogWildSlopes(wear[w].Evidence, usual))]);
+    }
 
-    /// <summary>SD of a wild slope about a sound tyre's, share of the normal rate.</summary>
-    private const double WildSlopeSd = 2;
+    private double LogWildSlopes(SlopeEvidence evidence, double usual)
+    {
+        var (k, h, size) = (evidence.K, evidence.H, evidence.Size);
+        var (hb, ha, log) = (h[0] - usual * (k[0] + k[1]), h[1] - usual * (k[1] + k[size + 1]), usual * (h[0] + h[1] - 0.5 * usual * (k[0] + 2 * k[1] + k[size + 1])));
+        for (var s = 2; s < size; s++)
+        {
+            var c = _mean[_firstSurvey + s - 2];
+            hb -= c * k[s];
+            ha -= c * k[size + s];
+            log += c * (h[s] - usual * (k[s] + k[size + s]));
+            for (var t = 2; t < size; t++) log -= 0.5 * c * _mean[_firstSurvey + t - 2] * k[s * size + t];
+        }
+        // ½ gᵀ(K + I/W²)⁻¹g − ½ ln|I + W²K| for the two slopes.
+        var wide = WildSlopeSd * WildSlopeSd;
+        var (bb, ba, aa) = (1 + wide * k[0], wide * k[1], 1 + wide * k[size + 1]);
+        var determinant = bb * aa - ba * ba;
+        return log + 0.5 * wide * (aa * hb * hb - 2 * ba * hb * ha + bb * ha * ha) / determinant - 0.5 * Math.Log(determinant);
+    }
 
     private static double LogNormal(double departure, double variance) => -0.5 * (departure * departure / variance + Math.Log(2 * Math.PI * variance));
 }

@@ -74,6 +74,9 @@ public static class Sensitivities
     /// </summary>
     public static double CrownSlipDeg(VehicleClass kind) => 0.02 * (kind is VehicleClass.Car or VehicleClass.Van ? 6.1 : 8.7);
 
+    /// <summary>Spread of that slip from route to route, share of it: some run on one-plane and multi-lane roads, some on crowned ones alone (from memory).</summary>
+    public const double CrownSlipSpread = 0.3;
+
     /// <summary>SD of one-way turning slip over RMS service slip: unknown, and per unit of (2·left share − 1) when the route tells it (from memory).</summary>
     public const double DutySd = 0.18, DutyPerShare = 0.8;
 

@@ -76,23 +76,36 @@ public static class Stories
     }
 
     /// <summary>
-    /// Ways in which an angle comes about. Total toe goes out at both wheels, or at one of them: a bent arm on the left, on
-    /// the right. One wheel toed in by m turns its axle by m/2, which moves the steering wheel (Gillespie 1992; ISO 8855 signs).
+    /// Ways in which an angle comes about. Total toe goes out at both wheels, or at one of them: a bent arm or spindle on the
+    /// left, on the right. One wheel toed in by m turns its axle by m/2, which moves the steering wheel, or sets the axle askew
+    /// in its group (Gillespie 1992; ISO 8855 signs). A pair of axles is askew by the one or by the other.
     /// </summary>
     private static IEnumerable<IReadOnlyList<(int State, double Weight)>> Ways(VehicleModel model, int d)
     {
         yield return [(d, 1)];
         var dimension = model.Dimensions[d];
-        var (state, weight) = dimension.Quantity switch
+        var turned = dimension.Quantity switch
         {
-            Quantity.FrontTotalToe => (model.IndexOf(Quantity.SensorZeroOrFrontToeSplit), model.Ratio / 2),
-            Quantity.RearTotalToe when !model.IsTrailer && model.RearGroup is [var only] && only == dimension.Axle => (model.IndexOf(Quantity.Thrust), -0.5),
-            _ => (-1, 0),
+            Quantity.FrontTotalToe => Known([(model.IndexOf(Quantity.SensorZeroOrFrontToeSplit), model.Ratio / 2)]),
+            Quantity.RearTotalToe when model.RearGroup is [var only] && only == dimension.Axle => Known([(model.IndexOf(Quantity.Thrust), -0.5)]),
+            Quantity.RearTotalToe => Turned(model, dimension.Axle!.Value, 0.5),
+            _ => [],
         };
-        if (state < 0) yield break;
-        yield return [(d, 1), (state, weight)];
-        yield return [(d, 1), (state, -weight)];
+        if (turned.Count > 0)
+        {
+            yield return [(d, 1), .. turned];
+            yield return [(d, 1), .. turned.Select(t => (t.State, -t.Weight))];
+        }
+        // The axle behind the gap alone, where another stands behind it: it is then askew against both its neighbours.
+        if (dimension.Quantity == Quantity.TandemSkew && model.IndexOf(Quantity.TandemSkew, dimension.Axle + 1) is >= 0 and var behind)
+            yield return [(d, 1), (behind, -1)];
     }
+
+    /// <summary>One axle of a group turned to the left by so many degrees, as the skew of the pairs it belongs to.</summary>
+    private static List<(int State, double Weight)> Turned(VehicleModel model, int axle, double degrees) =>
+        Known([(model.IndexOf(Quantity.TandemSkew, axle), degrees), (model.IndexOf(Quantity.TandemSkew, axle - 1), -degrees)]);
+
+    private static List<(int State, double Weight)> Known(IEnumerable<(int State, double Weight)> moves) => [.. moves.Where(m => m.State >= 0)];
 
     /// <summary>A quantity's weight is spread over the places that have it; all together make the misaligned share.</summary>
     private static List<Story> ShareOut(List<Story> found, FaultPriors priors)

@@ -6,20 +6,9 @@ namespace WearWatch.Diagnosis.Causes;
 /// <summary>Weighs one story, alone or beside a look-alike, against all evidence of one vehicle. Not safe for concurrent use.</summary>
 public sealed class StoryWeigher
 {
-    /// <summary>Readings of one vehicle that may be wild at once; below these log odds none is worth taking as wild.</summary>
-    private const int MostWild = 3;
-    private const double WorthTrying = -1.5;
-
     /// <summary>Log likelihood below the story's best at which an onset and a magnitude no longer matter, and how many are weighed in full.</summary>
-    private const double FarBelow = 10;
-    private const int MostRefined = 60;
-
-    /// <summary>SD of a tyre's slip over RMS service slip that a scan takes for it.</summary>
-    private const double ScannedSlipSd = 0.3;
-
-    /// <summary>Three-point Gauss–Hermite rule for the gain common to all edges, in prior SDs (Abramowitz &amp; Stegun 25.10, rescaled).</summary>
-    private static readonly (double Node, double LogWeight)[] Gains =
-        [(-Math.Sqrt(3), Math.Log(1 / 6.0)), (0, Math.Log(2 / 3.0)), (Math.Sqrt(3), Math.Log(1 / 6.0))];
+    private const double FarBelow = 8;
+    private const int MostInFull = 10;
 
     private static readonly double LogPriorInside = Math.Log(1 - 2 * Normal.CDF(0, 1, -1 / Sensitivities.InOrderSd));
 
@@ -28,7 +17,7 @@ public sealed class StoryWeigher
     private readonly SingleReadings _single;
     private readonly BenchEvidence _bench;
     private readonly double[] _state, _priorSd, _ordinarySd;
-    private readonly List<Branch>[] _inOrder;
+    private readonly List<Branch>[] _inOrder; // by gain
 
     /// <summary>One choice of which readings are wild: log likelihood of the joint law, and the state as single readings see it.</summary>
     private sealed record Branch(double Log, StateSeen Seen, (double Mean, double Sd) LogSlipScale);
@@ -52,20 +41,59 @@ public sealed class StoryWeigher
         _bench = new BenchEvidence(model);
         _ordinarySd = [.. model.Dimensions.Select(d => d.PriorSd)];
         (_state, _priorSd) = (new double[_ordinarySd.Length], [.. _ordinarySd]);
-        _inOrder = [.. Gains.Select(g => Branches(0, g.Node))];
+        _inOrder = [.. Enumerable.Range(0, JointGaussian.Gains.Count).Select(g => Branches(0, g))];
     }
 
     /// <summary>Log likelihood of a vehicle with every angle in order and no look-alike worth naming.</summary>
     public double InOrder()
     {
         Place(null, 0, null);
-        return At(null, 0, 0).LogLikelihood;
+        var all = At(null, 0, 0).LogLikelihood;
+        // The Gaussian is linear about the target, wear is quadratic in slip: an angle near its tolerance wears more than that
+        // says. The angle for which that matters most is therefore gone through cell by cell, the others as they are.
+        var within = Enumerable.Range(0, _state.Length).Where(d => _model.Dimensions[d].Tolerance is not null).Select(d => (Dimension: d, Cells: Within(d)))
+            .DefaultIfEmpty((-1, [])).MaxBy(w => w.Cells.Length == 0 ? 0 : StoryFit.LogSum(w.Cells));
+        return within.Cells.Length == 0 ? all : Math.Max(all, InFull(within.Dimension, within.Cells));
+    }
+
+    private double InFull(int d, double[] nearly)
+    {
+        var logs = new List<double>(nearly.Length);
+        for (var i = 0; i < nearly.Length; i++)
+        {
+            if (nearly[i] < nearly.Max() - FarBelow) continue;
+            PlaceWithin(d, i);
+            logs.Add(Math.Log(InOrderCells[i].Share) + At(null, 0, 0, d).LogLikelihood);
+        }
+        return StoryFit.LogSum(logs);
+    }
+
+    /// <summary>Cells of an angle in order, in tolerances, with their shares of the truncated normal law.</summary>
+    private static readonly Cell[] InOrderCells = [.. new (double Low, double High)[] { (-1, -0.8), (-0.8, -0.6), (-0.6, -0.35), (-0.35, 0.35), (0.35, 0.6), (0.6, 0.8), (0.8, 1) }
+        .Select(c => new Cell(c.Low, c.High, (Normal.CDF(0, Sensitivities.InOrderSd, c.High) - Normal.CDF(0, Sensitivities.InOrderSd, c.Low)) / Math.Exp(LogPriorInside)))];
+
+    private double[] Within(int d)
+    {
+        var logs = new double[InOrderCells.Length];
+        for (var i = 0; i < logs.Length; i++)
+        {
+            PlaceWithin(d, i);
+            logs[i] = Math.Log(InOrderCells[i].Share) + Near(null, 0, 0, d);
+        }
+        return logs;
+    }
+
+    private void PlaceWithin(int d, int cell)
+    {
+        Place(null, 0, null);
+        var tolerance = _model.Dimensions[d].Tolerance!.Value;
+        (_state[d], _priorSd[d]) = (InOrderCells[cell].Middle * tolerance, (InOrderCells[cell].High - InOrderCells[cell].Low) * tolerance / Math.Sqrt(12));
     }
 
     /// <summary>A story over all its magnitudes, and an angle over all its onsets (a look-alike has always been there).</summary>
     /// <param name="story">What.</param>
     /// <param name="beside">The look-alike there at the same time, or null; its magnitude is integrated as Gaussian.</param>
-    /// <remarks>Everything is scanned with no reading taken as wild; what comes near the story's best is weighed in full, and moves the rest along.</remarks>
+    /// <remarks>Everything is weighed nearly; what comes near the story's best is weighed in full, and moves the rest along.</remarks>
     public StoryFit Weigh(Story story, Story? beside = null)
     {
         var onsets = story.IsAngle ? _joint.Length : 1;
@@ -74,19 +102,19 @@ public sealed class StoryWeigher
             for (var i = 0; i < story.Cells.Count; i++)
             {
                 Place(story, story.Cells[i].Middle, beside);
-                points.Add(new Point(o, i, Math.Log(story.Cells[i].Share) + (onsets > 1 ? Math.Log(Onsets.Shares[o]) : 0)) { Log = Scan(story, story.Cells[i].Middle, o) });
+                points.Add(new Point(o, i, Math.Log(story.Cells[i].Share) + (onsets > 1 ? Math.Log(Onsets.Shares[o]) : 0)) { Log = Near(story, story.Cells[i].Middle, o) });
             }
         points.Sort((x, y) => (y.Log + y.Prior).CompareTo(x.Log + x.Prior));
         var least = points[0].Log + points[0].Prior - FarBelow;
         double moved = 0;
-        var full = points.TakeWhile((p, i) => i < MostRefined && p.Log + p.Prior >= least).ToArray();
+        var full = points.TakeWhile((p, i) => i < MostInFull && p.Log + p.Prior >= least).ToArray();
         foreach (var point in full)
         {
-            var scanned = point.Log;
+            var nearly = point.Log;
             Place(story, story.Cells[point.Cell].Middle, beside);
             (point.Log, point.LogSlipScale) = At(story, story.Cells[point.Cell].Middle, point.Onset);
             point.InFull = true;
-            moved += (point.Log - scanned) / full.Length;
+            moved += (point.Log - nearly) / full.Length;
         }
         foreach (var point in points.Where(p => !p.InFull)) (point.Log, point.LogSlipScale) = (point.Log + moved, full[0].LogSlipScale);
         return Gather(story, points, onsets);
@@ -120,28 +148,29 @@ public sealed class StoryWeigher
         foreach (var (state, _) in beside?.Moves ?? []) _priorSd[state] = beside!.Spread;
     }
 
-    private double Scan(Story story, double magnitude, int onset)
+    private double Near(Story? story, double magnitude, int onset, int within = -1)
     {
+        if (story is { Moves.Count: 0 }) return At(story, magnitude, onset).LogLikelihood;
         var joint = _joint[onset];
-        joint.HoldGain(0);
-        var log = joint.Scan(_state, _priorSd);
-        var slip = new (double, double)[_model.Positions.Count];
-        for (var i = 0; i < slip.Length; i++) slip[i] = (joint.ShapeSlip(i), ScannedSlipSd);
-        double pull = 0, angle = 0;
-        for (var d = 0; d < _state.Length; d++) (pull, angle) = (pull + _model.Torque[d] * _state[d], angle + _model.WheelAngle[d] * _state[d]);
-        var seen = new StateSeen(slip, _inOrder[1][0].Seen.Slip, (pull, 0.2), (angle, 1));
-        return log + _single.LogLikelihood(story, magnitude, onset, seen) + _bench.LogLikelihood(story, _state);
+        var (top, sum) = (double.NegativeInfinity, 0.0);
+        joint.Near(_state, _priorSd, fit =>
+        {
+            var log = fit.LogLikelihood + Inside(fit, within) + _single.LogLikelihood(story, magnitude, onset, See(joint, fit));
+            if (log > top) (top, sum) = (log, sum * Math.Exp(top - log) + 1);
+            else sum += Math.Exp(log - top);
+        });
+        return top + Math.Log(sum) + (story is null ? 0 : _bench.LogLikelihood(story, _state));
     }
 
     /// <summary>Sums over the gain and over which readings are wild.</summary>
-    private (double LogLikelihood, (double Mean, double Sd) LogSlipScale) At(Story? story, double magnitude, int onset)
+    private (double LogLikelihood, (double Mean, double Sd) LogSlipScale) At(Story? story, double magnitude, int onset, int within = -1)
     {
-        var ordinary = story is null || story.Moves.Count == 0;
+        var ordinary = within < 0 && (story is null || story.Moves.Count == 0);
         var (logs, scales) = (new List<double>(), new List<(double Mean, double Sd)>());
-        for (var g = 0; g < Gains.Length; g++)
-            foreach (var branch in ordinary ? _inOrder[g] : Branches(onset, Gains[g].Node))
+        for (var g = 0; g < _inOrder.Length; g++)
+            foreach (var branch in ordinary ? _inOrder[g] : Branches(onset, g, within))
             {
-                logs.Add(Gains[g].LogWeight + branch.Log + _single.LogLikelihood(story, magnitude, onset, branch.Seen));
+                logs.Add(JointGaussian.Gains[g].LogWeight + branch.Log + _single.LogLikelihood(story, magnitude, onset, branch.Seen));
                 scales.Add(branch.LogSlipScale);
             }
         var total = StoryFit.LogSum(logs);
@@ -159,39 +188,33 @@ public sealed class StoryWeigher
     /// Choices of wild readings along the worst ones: taking a reading as wild costs its small prior share, so that no
     /// single figure decides, and takes back what it had made of all other unknowns.
     /// </summary>
-    private List<Branch> Branches(int onset, double gain)
+    private List<Branch> Branches(int onset, int gain, int within = -1)
     {
-        var branches = new List<Branch>(1);
+        var branches = new List<Branch>(2);
         var joint = _joint[onset];
-        joint.HoldGain(gain);
-        var fit = joint.At(_state, _priorSd);
-        double before = 0;
-        for (var wild = 0; ; wild++)
-        {
-            branches.Add(new Branch(before + fit.LogLikelihood + Inside(fit), See(joint), joint.LogSlipScale()));
-            if (wild == MostWild || fit.WorstLogOdds < WorthTrying) return branches;
-            before += joint.LogWild(fit.Worst);
-            fit = joint.Without(fit.Worst);
-        }
+        joint.At(_state, _priorSd, gain, fit => branches.Add(new Branch(fit.LogLikelihood + Inside(fit, within), See(joint, fit), joint.LogSlipScale())));
+        return branches;
     }
 
-    private StateSeen See(JointGaussian joint)
+    private StateSeen See(JointGaussian joint, in JointFit fit)
     {
         var (slip, before) = (new (double, double)[_model.Positions.Count], new (double, double)[_model.Positions.Count]);
-        for (var i = 0; i < slip.Length; i++) (slip[i], before[i]) = (joint.ShapeSlip(i, _priorSd), joint.ShapeSlipBefore(i, _priorSd));
-        return new StateSeen(slip, before, joint.Steering(_model.Torque, _state, _priorSd), joint.Steering(_model.WheelAngle, _state, _priorSd));
+        for (var i = 0; i < slip.Length; i++) (slip[i], before[i]) = (joint.ShapeSlip(i, _priorSd, fit), joint.ShapeSlipBefore(i, _priorSd, fit));
+        return new StateSeen(slip, before, joint.Steering(_model.Torque, _state, _priorSd, fit), joint.Steering(_model.WheelAngle, _state, _priorSd, fit));
     }
 
     /// <summary>
     /// The Gaussian stands in for "within tolerance"; what of its posterior lies beyond belongs to another story and is
     /// taken off here, so that a story in order never explains an angle that is out.
     /// </summary>
-    private double Inside(JointFit fit)
+    /// <param name="fit">Posterior.</param>
+    /// <param name="within">A dimension held within a cell of its own; −1 for none.</param>
+    private double Inside(JointFit fit, int within = -1)
     {
         double sum = 0;
         for (var d = 0; d < _ordinarySd.Length; d++)
         {
-            if (_model.Dimensions[d].Tolerance is not { } tolerance || _state[d] != 0) continue;
+            if (_model.Dimensions[d].Tolerance is not { } tolerance || _state[d] != 0 || d == within) continue;
             var sd = Math.Sqrt(fit.Variance[d]);
             var bound = tolerance / _priorSd[d];
             var inside = Normal.CDF(0, 1, (bound - fit.Mean[d]) / sd) - Normal.CDF(0, 1, (-bound - fit.Mean[d]) / sd);

@@ -1,7 +1,7 @@
 namespace WearWatch.Diagnosis.Causes;
 
 /// <summary>Unknowns that all figures of a vehicle share, beside its state; each in its prior SDs.</summary>
-internal enum Shared { SlipAgainstEdge, CamberEdge, Feather, TorqueGain, Ratio, VehicleRate, RollFront, RollRear, ScrubShare, Count }
+internal enum Shared { SlipAgainstEdge, CamberEdge, Feather, TorqueGain, Ratio, VehicleRate, RollFront, RollRear, ScrubShare, RouteCrown, Count }
 
 /// <summary>
 /// What wears and shapes each tyre at one state, and how that answers to every unknown: predicted figures with their rows
@@ -19,7 +19,7 @@ internal sealed class TyreResponse
 
     private readonly VehicleModel _model;
     private readonly int[][] _support; // states that reach a tyre at all
-    private readonly double[] _slip, _duty, _crown, _camber, _shared;
+    private readonly double[] _slip, _duty, _crown, _crownEdge, _camber, _shared;
     private double _edgeScale = 1;
 
     public TyreResponse(VehicleModel model)
@@ -29,14 +29,19 @@ internal sealed class TyreResponse
         (_slip, _duty, _crown, _camber, _shared) = (new double[tyres], new double[tyres], new double[tyres], new double[tyres], new double[tyres]);
         _support = [.. Enumerable.Range(0, tyres).Select(i => Enumerable.Range(0, model.Dimensions.Count)
             .Where(d => model.Slip[i, d] != 0 || model.Duty[i, d] != 0 || model.Camber[i, d] != 0).ToArray())];
+        for (var i = 0; i < tyres; i++) _crown[i] = model.CrownSlip * (model.Positions[i].Side == Facts.Side.Right ? 1 : -1);
+        _crownEdge = [.. _crown.Select(c => Observables.EdgeOfSlip(c).Value)];
     }
 
     /// <summary>Slip over service slip against the class's prior.</summary>
     public double SlipScale { get; private set; } = 1;
 
+    /// <summary>Gain held, in prior SDs.</summary>
+    public double Gain { get; private set; }
+
     /// <summary>Holds the gain common to all edges at so many prior SDs; it scales everything, so that a Gaussian would miss its tails.</summary>
     public void HoldGain(double standardDeviations) =>
-        (SlipScale, _edgeScale) = (Math.Exp(SlipPerGain * standardDeviations), Math.Exp(EdgePerGain * standardDeviations));
+        (Gain, SlipScale, _edgeScale) = (standardDeviations, Math.Exp(SlipPerGain * standardDeviations), Math.Exp(EdgePerGain * standardDeviations));
 
     /// <summary>Looks at a state: departures from target, one per dimension.</summary>
     public void Look(ReadOnlySpan<double> state)
@@ -46,7 +51,6 @@ internal sealed class TyreResponse
             (_slip[i], _camber[i], _shared[i]) = (0, 0, 0);
             var axle = _model.Positions[i].Axle;
             var turn = _model.Positions[i].Side == Facts.Side.Right ? 1 : -1;
-            _crown[i] = _model.CrownSlip * turn;
             _duty[i] = _crown[i] + _model.DutyMean * turn * (axle == 1 || _model.IsTrailer ? 1 : 0.7);
             foreach (var d in _support[i])
             {
@@ -73,8 +77,13 @@ internal sealed class TyreResponse
         return (slip, Math.Sqrt(square));
     }
 
-    /// <summary>The same from the state alone.</summary>
-    public double ShapeSlip(int tyre) => _slip[tyre] + _duty[tyre];
+    /// <summary>Whether a state other than sound changes anything at a tyre.</summary>
+    public bool Reached(int tyre, ReadOnlySpan<double> state)
+    {
+        foreach (var d in _support[tyre])
+            if (state[d] != 0) return true;
+        return false;
+    }
 
     /// <summary>Predicts a figure and fills its row of the Jacobian.</summary>
     /// <param name="kind">Rate and edge slope as share of the place's normal rate; feather in mm.</param>
@@ -103,7 +112,7 @@ internal sealed class TyreResponse
                 var (edge, slope) = Observables.EdgeOfSlip(shape);
                 var camberEdge = Sensitivities.CamberEdgeShare * _camber[i];
                 // Beyond normal, and normal is what the crown makes of a sound tyre.
-                byEdge = _edgeScale * (edge - Observables.EdgeOfSlip(_crown[i]).Value) / normal;
+                byEdge = _edgeScale * (edge - _crownEdge[i]) / normal;
                 predicted = byEdge + camberEdge + normalEdge * wear;
                 (bySlip, byCamber) = (_edgeScale * slope / normal + normalEdge * wearBySlip, Sensitivities.CamberEdgeShare);
                 row[At(Shared.VehicleRate)] = predicted * vehicleSd;
@@ -123,6 +132,7 @@ internal sealed class TyreResponse
         }
         row[At(Shared.SlipAgainstEdge)] = (bySlip * z - byEdge) * Difference;
         row[At(Shared.ScrubShare)] = bySlip * _shared[i] * Sensitivities.ShareSpread;
+        row[At(Shared.RouteCrown)] = bySlip * _crown[i] * Sensitivities.CrownSlipSpread;
         return (predicted, wear);
     }
 

@@ -98,11 +98,15 @@ internal sealed partial class HistoryReader
             if (e.Kind == ExplanationKind.OtherVehicle) log += Lonely(s, p);
         }
         log += figures * Math.Log(e.Factor);
-        // Walk after walk, up to the last or from the first on, the same exchange was one done to the tyres.
-        if (e.CanBeDoneToTyres && s > 0 && _explanation[s - 1] == e && (Reaches(s, 1) || Reaches(s, -1))) return log;
         var prior = Set(axles).LogPrior(e, _surveys[s].Survey.ResolutionMm);
-        return log + (e.CanBeDoneToTyres && (Reaches(s, 1) || Reaches(s, -1)) ? Math.Max(prior, Math.Log(MovedPrior) - Math.Log(3)) : prior);
+        if (!e.CanBeDoneToTyres || !(Reaches(s, 1) || Reaches(s, -1))) return log + prior;
+        // Walk after walk, up to the last or from the first on, the same exchange was one done to the tyres, and is said once.
+        if (s > 0 && _explanation[s - 1] == e) return log;
+        return log + (s + 1 < _surveys.Count && _explanation[s + 1] == e ? MovedLogPrior(e) : Math.Max(prior, MovedLogPrior(e)));
     }
+
+    /// <summary>A workshop exchanges the wheels of one axle, or two axles; all wheels across at once it hardly does.</summary>
+    private static double MovedLogPrior(Explanation e) => Math.Log(MovedPrior / (e.Kind == ExplanationKind.SidesSwapped ? 30 : 3));
 
     private bool Reaches(int s, int step)
     {

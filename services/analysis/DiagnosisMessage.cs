@@ -118,6 +118,8 @@ internal static class DiagnosisMessage
         if (t.LimitMm is { } limit) tyre.LimitMm = limit;
         if (t.GoverningGroove is { } groove) tyre.GoverningGroove = groove;
         tyre.SurveyIds.Add(t.SurveyIds);
+        tyre.Grooves.Add(t.Across.Select(g => new TreadGroove { Groove = g.Groove, DepthMm = g.DepthMm }));
+        tyre.Points.Add(t.Points.Select(p => new Contracts.V1.WearPoint { DistanceKm = p.Km, DepthMm = p.DepthMm }));
         return tyre;
     }
 

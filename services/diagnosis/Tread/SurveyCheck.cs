@@ -151,7 +151,7 @@ public static class SurveyCheck
         }
         var shapes = survey.Tyres.Select(t => TreadShape.Of(t, survey.ResolutionMm)).OfType<TreadShape>().ToList();
         if (shapes.Count == 0 || before.Count == 0) return null;
-        var weighed = SurveyExplanation.Weigh(vehicle, shapes, expected, GaugeNoise.TechnicianSdMm);
+        var weighed = SurveyExplanation.Weigh(vehicle, shapes, expected, GaugeNoise.TechnicianSdMm, survey.ResolutionMm);
         var asWritten = weighed.First(w => w.Explanation.Kind == ExplanationKind.AsWritten).Weight;
         // The earlier survey was looked at and kept; the new one is the one that can still be looked at again.
         var best = weighed.Where(w => w.Explanation.Kind is not (ExplanationKind.AsWritten or ExplanationKind.ComparedSurveyWrong)).MaxBy(w => w.Weight)!;
@@ -163,6 +163,8 @@ public static class SurveyCheck
         ExplanationKind.SidesSwapped or ExplanationKind.AxleSidesSwapped => "sides_swapped",
         ExplanationKind.AxlesSwapped => "axles_swapped",
         ExplanationKind.ThirtySecondsTakenForMm or ExplanationKind.MmTakenForThirtySeconds => "unit_mix_up",
+        ExplanationKind.PositionsExchanged => "positions_exchanged",
+        ExplanationKind.GroovesReversed => "grooves_reversed",
         _ => "other_vehicle",
     };
 

@@ -25,10 +25,16 @@ public enum ExplanationKind
     GrooveMistyped,
     /// <summary>One tyre misread, or read at another wheel.</summary>
     TyreMisread,
+    /// <summary>Two wheels of one side exchanged: the walk began at the wrong corner, or two duals were taken for each other.</summary>
+    PositionsExchanged,
+    /// <summary>Grooves counted from the inboard side, on the whole vehicle or on one side of it.</summary>
+    GroovesReversed,
+    /// <summary>One groove measured on a wear bar.</summary>
+    ReadOnWearBar,
 }
 
 /// <summary>One way to explain a survey.</summary>
-public sealed record Explanation(ExplanationKind Kind, int? Axle = null, int? OtherAxle = null, Position? Position = null, int? Groove = null)
+public sealed record Explanation(ExplanationKind Kind, int? Axle = null, int? OtherAxle = null, Position? Position = null, int? Groove = null, Position? OtherPosition = null, Side? Side = null)
 {
     public static readonly Explanation AsWritten = new(ExplanationKind.AsWritten);
 
@@ -47,8 +53,16 @@ public sealed record Explanation(ExplanationKind Kind, int? Axle = null, int? Ot
         ExplanationKind.AxleSidesSwapped when written.Axle == Axle => written.Mirrored,
         ExplanationKind.AxlesSwapped when written.Axle == Axle => written with { Axle = OtherAxle!.Value },
         ExplanationKind.AxlesSwapped when written.Axle == OtherAxle => written with { Axle = Axle!.Value },
+        ExplanationKind.PositionsExchanged when written == Position => OtherPosition!.Value,
+        ExplanationKind.PositionsExchanged when written == OtherPosition => Position!.Value,
         _ => written,
     };
+
+    /// <summary>The grooves of a position were counted from the wrong shoulder.</summary>
+    public bool Reverses(Position written) => Kind == ExplanationKind.GroovesReversed && (Side is null || Side == written.Side);
+
+    /// <summary>Something that a workshop can do to the tyres as well as a pen on paper: in walk after walk it was done to the tyres.</summary>
+    public bool CanBeDoneToTyres => Kind is ExplanationKind.SidesSwapped or ExplanationKind.AxleSidesSwapped or ExplanationKind.AxlesSwapped or ExplanationKind.PositionsExchanged;
 
     /// <summary>A plain sentence.</summary>
     public string Sentence => Kind switch
@@ -62,6 +76,9 @@ public sealed record Explanation(ExplanationKind Kind, int? Axle = null, int? Ot
         ExplanationKind.OtherVehicle => "The depths look like another vehicle's.",
         ExplanationKind.ComparedSurveyWrong => "This survey may be right and the other one wrong.",
         ExplanationKind.GrooveMistyped => $"Groove {Groove} of {Position} looks mistyped.",
+        ExplanationKind.PositionsExchanged => $"{Position} and {OtherPosition} look exchanged.",
+        ExplanationKind.GroovesReversed => $"The grooves look counted from the inboard side{(Side is { } s ? $" on the {s.ToString().ToLowerInvariant()}" : "")}.",
+        ExplanationKind.ReadOnWearBar => $"Groove {Groove} of {Position} looks measured on a wear bar.",
         ExplanationKind.TyreMisread => $"{Position} does not fit its own history in this survey alone.",
         _ => Kind.ToString(),
     };
@@ -75,7 +92,11 @@ public sealed record WeighedExplanation(Explanation Explanation, double Weight);
 /// <param name="EdgeMm">See <see cref="TreadShape.EdgeMm"/>.</param>
 /// <param name="ShoulderMm">See <see cref="TreadShape.ShoulderMm"/>.</param>
 /// <param name="Surveys">How many surveys of this fitting it rests on.</param>
-public readonly record struct TyreExpectation(Estimate MeanMm, Estimate EdgeMm, Estimate ShoulderMm, int Surveys);
+public readonly record struct TyreExpectation(Estimate MeanMm, Estimate EdgeMm, Estimate ShoulderMm, int Surveys)
+{
+    /// <summary>Mean depth that a tyre would show had it been put on new since the survey before, mm; null where nothing is known of that.</summary>
+    public Estimate? NewMm { get; init; }
+}
 
 /// <summary>
 /// Weighs competing explanations of one survey by their likelihood given the vehicle's own history. Any single tyre may
@@ -88,13 +109,25 @@ public static class SurveyExplanation
     private const double SidesSwappedPrior = 0.01;
     private const double AxleSidesSwappedPrior = 0.005;
     private const double AxlesSwappedPrior = 0.004;
+    private const double PositionsExchangedPrior = 0.004;
+    private const double GroovesReversedPrior = 0.002;
     private const double UnitPrior = 0.004;
+    /// <summary>
+    /// What is left of that prior where the gauge's step says otherwise: mm can only be taken for 32nds where the record
+    /// says 32nds, and its depths are then whole steps of those; the other way round just as little. From memory.
+    /// </summary>
+    private const double AgainstStep = 0.02;
     private const double OtherVehiclePrior = 0.002;
     /// <summary>Share of tyres off for a reason of their own.</summary>
     private const double OddTyrePrior = 0.03;
     /// <summary>Share of axles whose tyres were all changed since without a record: tyres are changed by the axle.</summary>
     private const double AxleChangedPrior = 0.02;
     private const double OddMeanSd = 4, OddEdgeSd = 1.2, OddShoulderSd = 1.2;
+    /// <summary>Share of changed tyres that are put on new, and how flat a new tread is across, mm; from memory.</summary>
+    internal const double ChangedForNew = 0.7;
+    internal const double NewShapeSd = 0.3;
+    /// <summary>Half a χ² by which two tyres or all edges must miss as written before the rarer exchanges are weighed: below it none could gain its prior.</summary>
+    private const double WorthWeighing = 4;
 
     /// <summary>Weight from which an explanation is acted on.</summary>
     public const double Clear = 0.9;
@@ -104,38 +137,45 @@ public static class SurveyExplanation
     /// <param name="written">Shapes at the positions as written, in any order.</param>
     /// <param name="expected">What history expects, for every position of the vehicle.</param>
     /// <param name="technicianSdMm">Standard deviation of what all tyres of a survey share, mm.</param>
-    public static IReadOnlyList<WeighedExplanation> Weigh(Vehicle vehicle, IReadOnlyList<TreadShape> written, IReadOnlyDictionary<Position, TyreExpectation> expected, double technicianSdMm)
+    /// <param name="resolutionMm">Step of the gauge as stored, mm.</param>
+    public static IReadOnlyList<WeighedExplanation> Weigh(Vehicle vehicle, IReadOnlyList<TreadShape> written, IReadOnlyDictionary<Position, TyreExpectation> expected, double technicianSdMm, double resolutionMm = 0.1)
     {
         var positions = vehicle.Positions().ToArray();
         var shapes = new TreadShape?[positions.Length];
         foreach (var shape in written) shapes[Array.IndexOf(positions, shape.Position)] = shape;
         var set = ExplanationSet.Of(vehicle, positions, [.. written.Select(w => w.Position.Axle).Distinct()]);
-        return Weigh(set, shapes, [.. positions.Select(p => expected[p])], technicianSdMm);
+        return Weigh(set, shapes, [.. positions.Select(p => expected[p])], technicianSdMm, resolutionMm);
     }
 
     /// <summary>The same for positions in the vehicle's order; a tyre that was not read is null.</summary>
-    internal static WeighedExplanation[] Weigh(ExplanationSet set, ReadOnlySpan<TreadShape?> written, ReadOnlySpan<TyreExpectation> expected, double technicianSdMm)
+    internal static WeighedExplanation[] Weigh(ExplanationSet set, ReadOnlySpan<TreadShape?> written, ReadOnlySpan<TyreExpectation> expected, double technicianSdMm, double resolutionMm)
     {
         var candidates = set.Candidates;
         Span<double> weights = stackalloc double[candidates.Length];
         var (pairs, top) = (set.Pairs, double.NegativeInfinity);
         Array.Clear(pairs);
+        var count = 0;
         for (var i = 0; i < weights.Length; i++)
         {
-            weights[i] = candidates[i].LogPrior + LogLikelihood(candidates[i], set, written, expected, pairs, technicianSdMm);
+            weights[i] = double.NegativeInfinity;
+            if (i > 0 && !set.WorthWeighing(candidates[i], WorthWeighing)) continue;
+            weights[i] = candidates[i].LogPriorAt(resolutionMm) + LogLikelihood(candidates[i], set, written, expected, pairs, technicianSdMm, i == 0);
             top = Math.Max(top, weights[i]);
+            count++;
         }
         double total = 0;
         foreach (ref var w in weights) total += w = Math.Exp(w - top);
         // Two surveys that contradict each other accuse one another equally.
         var mutual = weights[0] < 1 && OneSurveyBehind(written, expected);
-        var list = new WeighedExplanation[candidates.Length + (mutual ? 1 : 0)];
+        var list = new WeighedExplanation[count + (mutual ? 1 : 0)];
         double doubt = 0;
+        count = 0;
         for (var i = 0; i < candidates.Length; i++)
         {
+            if (i > 0 && !set.WorthWeighing(candidates[i], WorthWeighing)) continue;
             var weight = weights[i] / total;
             if (mutual && i > 0) doubt += weight /= 2;
-            list[i] = new(candidates[i].Explanation, weight);
+            list[count++] = new(candidates[i].Explanation, weight);
         }
         if (mutual) list[^1] = new(s_comparedSurveyWrong, doubt);
         Order(list);
@@ -171,7 +211,7 @@ public static class SurveyExplanation
 
     internal static List<(Explanation Explanation, double Prior)> Candidates(Vehicle vehicle, IReadOnlyList<int> axles)
     {
-        List<(Explanation, double)> list = [(Explanation.AsWritten, 1 - SidesSwappedPrior - AxleSidesSwappedPrior - AxlesSwappedPrior - 2 * UnitPrior - OtherVehiclePrior)];
+        List<(Explanation, double)> list = [(Explanation.AsWritten, 1 - SidesSwappedPrior - AxleSidesSwappedPrior - AxlesSwappedPrior - PositionsExchangedPrior - GroovesReversedPrior - 2 * UnitPrior - OtherVehiclePrior)];
         list.Add((new(ExplanationKind.SidesSwapped), SidesSwappedPrior));
         if (axles.Count > 1)
             foreach (var axle in axles) list.Add((new(ExplanationKind.AxleSidesSwapped, axle), AxleSidesSwappedPrior / axles.Count));
@@ -180,7 +220,32 @@ public static class SurveyExplanation
         list.Add((new(ExplanationKind.ThirtySecondsTakenForMm), UnitPrior));
         list.Add((new(ExplanationKind.MmTakenForThirtySeconds), UnitPrior));
         list.Add((new(ExplanationKind.OtherVehicle), OtherVehiclePrior));
+        var wheels = Exchangeable(vehicle, axles);
+        foreach (var (a, b) in wheels) list.Add((new(ExplanationKind.PositionsExchanged, Position: a, OtherPosition: b), PositionsExchangedPrior / wheels.Count));
+        foreach (Side? side in new Side?[] { null, Side.Left, Side.Right }) list.Add((new(ExplanationKind.GroovesReversed, Side: side), GroovesReversedPrior / 3));
         return list;
+    }
+
+    /// <summary>Wheels of one side that one reaches from the same stand on two axles, and the two duals of one end.</summary>
+    private static List<(Position, Position)> Exchangeable(Vehicle vehicle, IReadOnlyList<int> axles)
+    {
+        Position[] read = [.. vehicle.Positions().Where(p => axles.Contains(p.Axle))];
+        return [.. from a in read from b in read
+                   where a.Side == b.Side && ((a.Axle < b.Axle && a.Dual != Dual.Inner && b.Dual != Dual.Inner) || (a.Axle == b.Axle && a.Dual == Dual.Outer && b.Dual == Dual.Inner))
+                   select (a, b)];
+    }
+
+    /// <summary>How far a unit's mix-up agrees with the step of the gauge, as a factor on its prior.</summary>
+    internal static double StepFactor(ExplanationKind kind, double resolutionMm)
+    {
+        var steps = resolutionMm / GaugeNoise.ThirtySecondInchMm;
+        var thirtySeconds = resolutionMm > 0.15 && Math.Abs(steps - Math.Round(steps * 4) / 4) < 0.01;
+        return kind switch
+        {
+            ExplanationKind.MmTakenForThirtySeconds => thirtySeconds ? 1 : AgainstStep,
+            ExplanationKind.ThirtySecondsTakenForMm => thirtySeconds ? AgainstStep : 1,
+            _ => 1,
+        };
     }
 
     /// <summary>How the readings of one position fit the expectation of one position; the same whichever explanation joins the two.</summary>
@@ -189,23 +254,35 @@ public static class SurveyExplanation
     /// <param name="Variance">Its variance, what all tyres share left aside.</param>
     /// <param name="Regular">Log density of all figures but for the exponent of the mean.</param>
     /// <param name="Odd">Log density of a tyre off for a reason of its own.</param>
-    internal readonly record struct PairFit(bool Known, double Residual, double Variance, double Regular, double Odd);
+    /// <param name="Changed">Log density of another tyre, mostly a new one.</param>
+    internal readonly record struct PairFit(bool Known, double Residual, double Variance, double Regular, double Odd, double Changed);
 
-    private static PairFit Pair(TreadShape shape, in TyreExpectation e, double factor, double sharedVariance)
+    private static PairFit Pair(TreadShape shape, in TyreExpectation e, double factor, double sharedVariance, bool reversed)
     {
         var mean = shape.MeanDepthMm * factor;
+        if (reversed) shape = shape with { EdgeMm = -shape.EdgeMm };
         var residual = mean.Value - e.MeanMm.Value;
         var variance = mean.StandardError * mean.StandardError + e.MeanMm.StandardError * e.MeanMm.StandardError;
         var odd = LineBelief.LogDensity(residual, OddMeanSd * OddMeanSd + variance);
         var regular = LineBelief.LogDensity(0, variance + sharedVariance);
         Add(factor, shape.EdgeMm, e.EdgeMm, OddEdgeSd, ref odd, ref regular);
         Add(factor, shape.ShoulderMm, e.ShoulderMm, OddShoulderSd, ref odd, ref regular);
-        return new(true, residual, variance, regular, odd);
+        var changed = odd;
+        if (e.NewMm is { } fresh)
+        {
+            var likeNew = LineBelief.LogDensity(mean.Value - fresh.Value, mean.StandardError * mean.StandardError + fresh.StandardError * fresh.StandardError);
+            double unused = 0;
+            var flat = new Estimate(0, NewShapeSd);
+            Add(factor, shape.EdgeMm, flat, OddEdgeSd, ref unused, ref likeNew);
+            Add(factor, shape.ShoulderMm, flat, OddShoulderSd, ref unused, ref likeNew);
+            changed = LogMix(s_changedForNew, odd, likeNew);
+        }
+        return new(true, residual, variance, regular, odd, changed);
     }
 
     [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private static double LogLikelihood(
-        ExplanationSet.Candidate candidate, ExplanationSet set, ReadOnlySpan<TreadShape?> written, ReadOnlySpan<TyreExpectation> expected, PairFit[] pairs, double technicianSd)
+        ExplanationSet.Candidate candidate, ExplanationSet set, ReadOnlySpan<TreadShape?> written, ReadOnlySpan<TyreExpectation> expected, PairFit[] pairs, double technicianSd, bool first)
     {
         var (n, factor) = (written.Length, candidate.Factor);
         int behind = 0, count = 0, figures = 0;
@@ -229,9 +306,10 @@ public static class SurveyExplanation
             if (written[p] is not { } shape) continue;
             var q = candidate.Belongs[p];
             ref var kept = ref pairs[p * n + q];
-            if (!kept.Known || factor != 1) fits[p] = Pair(shape, expected[q], factor, own);
+            var plain = factor == 1 && !candidate.Reversed[p];
+            if (!kept.Known || !plain) fits[p] = Pair(shape, expected[q], factor, own, candidate.Reversed[p]);
             else fits[p] = kept;
-            if (factor == 1) kept = fits[p];
+            if (plain) kept = fits[p];
             residual[count++] = fits[p].Residual;
             precision += 1 / fits[p].Variance;
         }
@@ -239,17 +317,27 @@ public static class SurveyExplanation
         var log = (count > 2 ? -0.5 * shared * shared / sharedVariance : 0) + figures * candidate.LogFactor;
         Span<double> alone = stackalloc double[Position.MaxAxle + 1];
         Span<double> together = stackalloc double[Position.MaxAxle + 1];
+        double edges = 0;
         for (var p = 0; p < n; p++)
         {
+            if (first) set.Misfit[p] = 0;
             if (written[p] is null) continue;
             var off = fits[p].Residual - shared;
-            alone[set.Axle[p]] += LogMix(s_oddTyre, fits[p].Regular - 0.5 * off * off / (fits[p].Variance + own), fits[p].Odd);
-            together[set.Axle[p]] += fits[p].Odd;
+            alone[set.Axle[p]] += LogMix(s_oddTyre, fits[p].Regular - 0.5 * off * off / (fits[p].Variance + own), fits[p].Changed);
+            together[set.Axle[p]] += candidate.Explanation.Kind == ExplanationKind.OtherVehicle ? fits[p].Odd : fits[p].Changed;
+            if (!first) continue;
+            var (edge, shoulder) = (HalfSquare(written[p]!.EdgeMm, expected[p].EdgeMm), HalfSquare(written[p]!.ShoulderMm, expected[p].ShoulderMm));
+            set.Misfit[p] = 0.5 * off * off / (fits[p].Variance + own) + edge + shoulder;
+            edges += edge - 0.5;
         }
+        if (first) set.EdgeMisfit = edges;
         foreach (var axle in set.Axles)
             log += candidate.Explanation.Kind == ExplanationKind.OtherVehicle ? together[axle] : LogMix(s_axleChanged, alone[axle], together[axle]);
         return log;
     }
+
+    private static double HalfSquare(in Estimate? seen, in Estimate e) =>
+        seen is { } s ? 0.5 * (s.Value - e.Value) * (s.Value - e.Value) / (s.StandardError * s.StandardError + e.StandardError * e.StandardError) : 0;
 
     private static void Add(double factor, in Estimate? seen, in Estimate e, double oddSd, ref double odd, ref double regular)
     {
@@ -270,7 +358,9 @@ public static class SurveyExplanation
     private static readonly (double Regular, double Odd) s_oddTyre = (Math.Log(1 - OddTyrePrior), Math.Log(OddTyrePrior));
     private static readonly (double Regular, double Odd) s_axleChanged = (Math.Log(1 - AxleChangedPrior), Math.Log(AxleChangedPrior));
 
-    private static double LogMix((double Regular, double Odd) logShares, double regular, double odd)
+    private static readonly (double Regular, double Odd) s_changedForNew = (Math.Log(1 - ChangedForNew), Math.Log(ChangedForNew));
+
+    internal static double LogMix((double Regular, double Odd) logShares, double regular, double odd)
     {
         var (a, b) = (logShares.Regular + regular, logShares.Odd + odd);
         var (top, gap) = a > b ? (a, b - a) : (b, a - b);
@@ -289,7 +379,40 @@ internal sealed class ExplanationSet
     /// <param name="Factor">From the depth as stored to the depth as meant.</param>
     /// <param name="LogFactor">Its logarithm.</param>
     /// <param name="Belongs">Index of the position that a reading written at each position belongs to.</param>
-    public sealed record Candidate(Explanation Explanation, double LogPrior, double Factor, double LogFactor, int[] Belongs);
+    /// <param name="Reversed">By position: grooves counted from the wrong shoulder.</param>
+    public sealed record Candidate(Explanation Explanation, double LogPrior, double Factor, double LogFactor, int[] Belongs, bool[] Reversed)
+    {
+        /// <summary>ln of the prior share in a survey whose gauge has this step, mm.</summary>
+        public double LogPriorAt(double resolutionMm) => Factor == 1 ? LogPrior : LogPrior + Math.Log(SurveyExplanation.StepFactor(Explanation.Kind, resolutionMm));
+    }
+
+    /// <summary>Half the χ² of each tyre as written, and of all edges beyond what is usual, of the survey being weighed.</summary>
+    public double[] Misfit { get; private init; } = [];
+    public double EdgeMisfit { get; set; }
+
+    /// <summary>Whether a rarer exchange could explain more than its prior takes off.</summary>
+    public bool WorthWeighing(Candidate candidate, double least) => candidate.Explanation.Kind switch
+    {
+        ExplanationKind.GroovesReversed => EdgeMisfit > least,
+        ExplanationKind.PositionsExchanged => MisfitOfMoved(candidate.Belongs) > least,
+        _ => true,
+    };
+
+    private double MisfitOfMoved(int[] belongs)
+    {
+        double sum = 0;
+        for (var p = 0; p < belongs.Length; p++)
+            if (belongs[p] != p) sum += Misfit[p];
+        return sum;
+    }
+
+    /// <summary>ln of the prior share of an explanation in a survey of these axles.</summary>
+    public double LogPrior(Explanation explanation, double resolutionMm)
+    {
+        foreach (var candidate in Candidates)
+            if (candidate.Explanation == explanation) return candidate.LogPriorAt(resolutionMm);
+        return double.NegativeInfinity;
+    }
 
     public required Candidate[] Candidates { get; init; }
     /// <summary>Axle number of each position.</summary>
@@ -310,9 +433,10 @@ internal sealed class ExplanationSet
         {
             Axle = [.. positions.Select(p => p.Axle)],
             Axles = read,
+            Misfit = new double[positions.Length],
             Pairs = new SurveyExplanation.PairFit[positions.Length * positions.Length],
             Candidates = [.. SurveyExplanation.Candidates(vehicle, read).Select(c => new Candidate(c.Explanation, Math.Log(c.Prior), c.Explanation.Factor, Math.Log(c.Explanation.Factor),
-                [.. positions.Select(p => Array.IndexOf(positions, c.Explanation.Belongs(p)))]))],
+                [.. positions.Select(p => Array.IndexOf(positions, c.Explanation.Belongs(p)))], [.. positions.Select(c.Explanation.Reverses)]))],
         };
     }
 }

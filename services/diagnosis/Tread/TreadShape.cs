@@ -72,8 +72,8 @@ public sealed record TreadShape
         };
     }
 
-    /// <summary>The same tread belonging to another position, every length times <paramref name="factor"/>.</summary>
-    public TreadShape As(Position position, double factor) => this with
+    /// <summary>The same tread belonging to another position, every length times <paramref name="factor"/>; reversed where its grooves were counted from the inboard side.</summary>
+    public TreadShape As(Position position, double factor, bool reversed = false) => reversed ? Reversed().As(position, factor) : this with
     {
         Position = position,
         MeanDepthMm = MeanDepthMm * factor,
@@ -81,6 +81,24 @@ public sealed record TreadShape
         ShoulderMm = ShoulderMm is { } s ? s * factor : null,
         RoundVariationMm = RoundVariationMm is { } r ? r * factor : null,
         ByGroove = factor == 1 ? ByGroove : [.. ByGroove.Select(g => g with { DepthMm = g.DepthMm * factor })],
+    };
+
+    /// <summary>Counted from the other shoulder.</summary>
+    private TreadShape Reversed() => Grooves <= 1 ? this : this with
+    {
+        EdgeMm = -EdgeMm,
+        FeatherMm = -FeatherMm,
+        ByGroove = [.. ByGroove.Reverse().Select(g => g with { Groove = Grooves + 1 - g.Groove })],
+    };
+
+    /// <summary>
+    /// With the error that a tread uneven round its circumference gives: one place may lie anywhere on the wave. What the places of
+    /// a groove have in common with those of the next, standing side by side, moves the mean; across the tread it cancels.
+    /// </summary>
+    /// <param name="sdMm">Spread round the circumference beyond gauge noise, standard deviation, mm.</param>
+    public TreadShape Uneven(double sdMm) => sdMm <= 0 || ByGroove.Count == 0 ? this : this with
+    {
+        MeanDepthMm = MeanDepthMm with { StandardError = Root(MeanDepthMm.StandardError * MeanDepthMm.StandardError, sdMm / Math.Sqrt(ByGroove.Max(g => g.Places))) },
     };
 
     private static (Estimate Mean, Estimate? Edge, Estimate? Shoulder) Parabola(GrooveMean[] byGroove, int count, double variance)

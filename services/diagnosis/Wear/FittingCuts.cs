@@ -37,6 +37,21 @@ internal sealed class FittingCuts
     /// <summary>Beginnings at a position, by its number in the vehicle's order.</summary>
     public IReadOnlyList<Cut> At(int position) => _cuts[position];
 
+    /// <summary>The beginnings as they stand, to come back to.</summary>
+    public Cut[][] Saved() => [.. _cuts.Select(c => c.ToArray())];
+
+    public void Restore(Cut[][] saved)
+    {
+        for (var p = 0; p < saved.Length; p++)
+        {
+            _cuts[p].Clear();
+            _cuts[p].AddRange(saved[p]);
+        }
+    }
+
+    /// <summary>Takes an inferred beginning back.</summary>
+    public void Drop(int position, int survey) => _cuts[position].RemoveAll(c => c.Survey == survey && c.Survey > 0 && c.Record is null && c.Km is null);
+
     /// <summary>Adds a beginning; of two at one survey the later record counts.</summary>
     public void Add(Position position, Cut cut)
     {

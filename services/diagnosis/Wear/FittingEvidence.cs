@@ -1,4 +1,5 @@
 using WearWatch.Diagnosis.Statistics;
+using WearWatch.Diagnosis.Tread;
 
 namespace WearWatch.Diagnosis.Wear;
 
@@ -51,15 +52,28 @@ internal sealed class FittingEvidence
     }
 
     /// <summary>Log evidence of the points from one to before another, technicians' errors allowed for.</summary>
-    public double Of(int from, int to) => Log(_meanByHand[to] - _meanByHand[from], Between(_edge, from, to), Between(_shoulder, from, to), Points[from].Km);
+    public double Of(int from, int to) => Log(_meanByHand[to] - _meanByHand[from], Between(_edge, from, to), Between(_shoulder, from, to), Points[from].Km, _prior);
+
+    /// <summary>Log evidence of the points from one to before another as those of a tyre put on without a record, mostly a new one.</summary>
+    /// <param name="from">First of the points.</param>
+    /// <param name="to">The one after the last.</param>
+    /// <param name="newMm">Mean depth that a new one would have at the first of them, mm.</param>
+    public double OfChanged(int from, int to, in Estimate newMm)
+    {
+        var fresh = _prior with { Mean = newMm, Edge = new(0, SurveyExplanation.NewShapeSd), Shoulder = new(0, SurveyExplanation.NewShapeSd) };
+        var (mean, edge, shoulder) = (_meanByHand[to] - _meanByHand[from], Between(_edge, from, to), Between(_shoulder, from, to));
+        return SurveyExplanation.LogMix(s_changedForNew, Log(mean, edge, shoulder, Points[from].Km, _prior), Log(mean, edge, shoulder, Points[from].Km, fresh));
+    }
+
+    private static readonly (double, double) s_changedForNew = (Math.Log(1 - SurveyExplanation.ChangedForNew), Math.Log(SurveyExplanation.ChangedForNew));
 
     /// <summary>Log evidence of all points but one.</summary>
-    public double Without(int one) => Log(Rest(_meanByHand, one), Rest(_edge, one), Rest(_shoulder, one), Points[one == 0 ? 1 : 0].Km);
+    public double Without(int one) => Log(Rest(_meanByHand, one), Rest(_edge, one), Rest(_shoulder, one), Points[one == 0 ? 1 : 0].Km, _prior);
 
-    private double Log(in LineSums mean, in LineSums edge, in LineSums shoulder, double km)
+    private double Log(in LineSums mean, in LineSums edge, in LineSums shoulder, double km, in FittingPrior prior)
     {
         var x = km - _origin;
-        return mean.Evidence(x, _prior.Mean, _prior.MeanSlope) + edge.Evidence(x, _prior.Edge, _prior.EdgeSlope) + shoulder.Evidence(x, _prior.Shoulder, _prior.ShoulderSlope);
+        return mean.Evidence(x, prior.Mean, prior.MeanSlope) + edge.Evidence(x, prior.Edge, prior.EdgeSlope) + shoulder.Evidence(x, prior.Shoulder, prior.ShoulderSlope);
     }
 
     private static void Add(LineSums[]? sums, int i, double x, Estimate? part, double weight, double wanderVariance)

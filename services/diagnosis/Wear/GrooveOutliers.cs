@@ -10,6 +10,12 @@ internal static class GrooveOutliers
     /// <summary>Share of grooves typed wrong or read on a wear bar, inside the 1-3 % of blunders usual in depots (from memory).</summary>
     private const double Prior = 0.005;
 
+    /// <summary>Height of a wear bar, mm: a groove read on one is that much too shallow (UN R30 and R54: 1.6 mm, +0.6/−0).</summary>
+    private const double WearBarMm = 1.6, WearBarSdMm = 0.2;
+
+    /// <summary>Share of those read on a wear bar; from memory.</summary>
+    private const double OnBarShare = 0.4;
+
     /// <summary>A mistyped depth can be anything within this width, mm.</summary>
     private const double AnyMm = 20;
 
@@ -24,21 +30,24 @@ internal static class GrooveOutliers
     /// <param name="resolutionMm">Step of each survey's gauge, mm.</param>
     /// <param name="repeatSdMm">Standard deviation of a repeated reading, mm.</param>
     /// <returns>By index into <paramref name="readings"/>; null when nothing was found.</returns>
-    public static Dictionary<int, (int Groove, double Probability)>? Find(IReadOnlyList<TyreReadings> readings, IReadOnlyList<double> resolutionMm, double repeatSdMm)
+    public static Dictionary<int, (int Groove, double Probability, ExplanationKind Kind)>? Find(IReadOnlyList<TyreReadings> readings, IReadOnlyList<double> resolutionMm, double repeatSdMm)
     {
         var highest = 0;
         for (var i = 0; readings.Count > 1 && i < readings.Count; i++)
             for (var j = 0; j < readings[i].Depths.Count; j++) highest = Math.Max(highest, readings[i].Depths[j].Groove);
         if (highest < 3) return null;
         var profiles = new Profiles(readings, highest);
-        Dictionary<int, (int, double)>? found = null;
+        Dictionary<int, (int, double, ExplanationKind)>? found = null;
         for (var i = 0; i < readings.Count; i++)
         {
             if (profiles.Worst(i) is not { } worst) continue;
             var variance = GaugeNoise.ReadingVariance(repeatSdMm, resolutionMm[i]) * (1.5 + 1.0 / worst.Others) + ProfileChangeSdMm * ProfileChangeSdMm;
             if (worst.Next > 3 * Math.Sqrt(variance) || Math.Abs(worst.Off) < LeastMm) continue;
-            var odds = Math.Exp(Math.Log(Prior / (1 - Prior) / AnyMm) - LineBelief.LogDensity(worst.Off, variance));
-            if (odds / (1 + odds) >= SurveyExplanation.Clear) (found ??= [])[i] = (worst.Groove, odds / (1 + odds));
+            var typed = (1 - OnBarShare) / AnyMm;
+            var onBar = OnBarShare * Math.Exp(LineBelief.LogDensity(worst.Off + WearBarMm, variance + WearBarSdMm * WearBarSdMm));
+            var odds = Math.Exp(Math.Log(Prior / (1 - Prior) * (typed + onBar)) - LineBelief.LogDensity(worst.Off, variance));
+            if (odds / (1 + odds) >= SurveyExplanation.Clear)
+                (found ??= [])[i] = (worst.Groove, odds / (1 + odds), onBar > 3 * typed ? ExplanationKind.ReadOnWearBar : ExplanationKind.GrooveMistyped);
         }
         return found;
     }

@@ -8,7 +8,7 @@ namespace WearWatch.Diagnosis.Wear;
 /// Reads a vehicle's surveys against each other: which of them were written wrong, which tyres were changed without a
 /// record. Each step takes the single change of reading that raises the joint likelihood most, until none does.
 /// </summary>
-internal sealed class HistoryReader
+internal sealed partial class HistoryReader
 {
     /// <summary>Prior share of an unrecorded change per tyre and survey; from memory.</summary>
     private const double ChangePrior = 0.01;
@@ -21,6 +21,9 @@ internal sealed class HistoryReader
 
     /// <summary>Spread of any depth a tyre can have, mm, about the middle of its life.</summary>
     private const double AnyDepthSdMm = 5;
+
+    /// <summary>Spread of the depth of a new tyre about the one recorded last for its axle, and about the usual one of its kind, mm; from memory.</summary>
+    private const double KnownNewSdMm = 0.5, UsualNewSdMm = 2;
 
     private readonly VehicleTread _tread;
     private readonly IReadOnlyList<StoredSurvey> _surveys;
@@ -35,6 +38,7 @@ internal sealed class HistoryReader
     private readonly TyreReadings?[] _readings;
     private readonly Explanation[] _explanation;
     private readonly double[] _weight;
+    private readonly Estimate[] _newDepth;
     private readonly IReadOnlyList<WeighedExplanation>[] _weighed;
     private readonly Dictionary<(int Survey, int Position), double> _misread = [];
     private readonly List<WeighedExplanation>[] _odd;
@@ -73,6 +77,8 @@ internal sealed class HistoryReader
             for (var i = 0; i < tyres.Count; i++)
                 if (_index[tyres[i].Position] is >= 0 and var p) _readings[Slot(s, p)] ??= tyres[i];
         }
+        _newDepth = new Estimate[places];
+        Array.Fill(_newDepth, new(double.NaN, 0));
         Shapes();
         Restate();
     }
@@ -103,6 +109,7 @@ internal sealed class HistoryReader
                     for (var j = 0; j < tyre.Depths.Count; j++) grooves = Math.Max(grooves, tyre.Depths[j].Groove);
                 }
                 var mistyped = GrooveOutliers.Find(readings, resolutions, _context.RepeatSdMm);
+                var uneven = UnevenTread.SdMm(readings, resolutions, _context.RepeatSdMm);
                 for (var i = 0; i < within.Count; i++)
                 {
                     var s = within[i];
@@ -110,9 +117,9 @@ internal sealed class HistoryReader
                     if (mistyped is not null && mistyped.TryGetValue(i, out var odd))
                     {
                         without = odd.Groove;
-                        Odd(s).Add(new(new(ExplanationKind.GrooveMistyped, Position: _positions[p], Groove: odd.Groove), odd.Probability));
+                        Odd(s).Add(new(new(odd.Kind, Position: _positions[p], Groove: odd.Groove), odd.Probability));
                     }
-                    var shape = TreadShape.Of(readings[i], resolutions[i], _context.RepeatSdMm, null, grooves, without);
+                    var shape = TreadShape.Of(readings[i], resolutions[i], _context.RepeatSdMm, null, grooves, without)?.Uneven(uneven);
                     _written[Slot(s, p)] = shape is null || biases[s] == 0 ? shape : shape with { MeanDepthMm = shape.MeanDepthMm with { Value = shape.MeanDepthMm.Value - biases[s] } };
                 }
             }
@@ -127,7 +134,7 @@ internal sealed class HistoryReader
         var e = _explanation[survey];
         if (e.Kind == ExplanationKind.OtherVehicle) return null;
         if (e.Kind == ExplanationKind.AsWritten) return _written[Slot(survey, position)];
-        return _index[e.Belongs(_positions[position])] is >= 0 and var w ? _written[Slot(survey, w)]?.As(_positions[position], e.Factor) : null;
+        return _index[e.Belongs(_positions[position])] is >= 0 and var w ? _written[Slot(survey, w)]?.As(_positions[position], e.Factor, e.Reverses(_positions[position])) : null;
     }
 
     private TyreReadings? Readings(int survey, int position)
@@ -135,7 +142,9 @@ internal sealed class HistoryReader
         var e = _explanation[survey];
         if (e.Kind == ExplanationKind.AsWritten) return _readings[Slot(survey, position)];
         if (e.Kind == ExplanationKind.OtherVehicle || _index[e.Belongs(_positions[position])] is not (>= 0 and var w) || _readings[Slot(survey, w)] is not { } r) return null;
-        return r with { Position = _positions[position], Depths = [.. r.Depths.Select(d => d with { DepthMm = d.DepthMm * e.Factor })] };
+        if (!e.Reverses(_positions[position])) return r with { Position = _positions[position], Depths = [.. r.Depths.Select(d => d with { DepthMm = d.DepthMm * e.Factor })] };
+        var grooves = _written[Slot(survey, w)]?.Grooves ?? 0;
+        return r with { Depths = [.. r.Depths.Select(d => d.Groove is < 1 || d.Groove > grooves ? d : d with { Groove = grooves + 1 - d.Groove, OutboardEdgeMm = -d.OutboardEdgeMm })] };
     }
 
     /// <summary>Brings points and evidence in line with the present explanations, weights and beginnings.</summary>
@@ -170,15 +179,23 @@ internal sealed class HistoryReader
     /// </summary>
     public void Explain()
     {
+        if (_context.Thorough) Search();
+        else Ascend();
+        MovedForGood();
+        Settle();
+        if (_inferredCuts.Count > 0) new InferredEvents(_tread, _surveys, _positions, (s, p) => Shape(s, _index[p]), (a, b, p) => _normal[_index[p]].RateMmPer1000Km / 1000 * (_km[b].Value - _km[a].Value)).Name(_inferredCuts, Inferred);
+    }
+
+    /// <summary>Surveys, then tyres, until neither asks for a change.</summary>
+    private void Ascend()
+    {
         for (var round = 0; round < 3; round++)
         {
             var surveys = Climb(_surveys.Count, Survey);
-            MovedForGood();
+            if (!_context.Thorough) MovedForGood();
             ChangedForGood();
             if (!Climb(_positions.Length, Tyre) && !surveys) break;
         }
-        Settle();
-        if (_inferredCuts.Count > 0) new InferredEvents(_tread, _surveys, _positions, (s, p) => Shape(s, _index[p]), (a, b, p) => _normal[_index[p]].RateMmPer1000Km / 1000 * (_km[b].Value - _km[a].Value)).Name(_inferredCuts, Inferred);
     }
 
     private delegate void Proposal(int index, ref (double Gain, Action? Apply) best);
@@ -200,16 +217,26 @@ internal sealed class HistoryReader
     private void MovedForGood()
     {
         var last = _surveys.Count - 1;
-        if (last < 1 || _explanation[last].Kind == ExplanationKind.AsWritten) return;
+        if (last < 1) return;
         var first = last;
         while (first > 0 && _explanation[first - 1] == _explanation[last]) first--;
-        if (first == 0 || first == last || _explanation[last].Kind is not (ExplanationKind.SidesSwapped or ExplanationKind.AxleSidesSwapped or ExplanationKind.AxlesSwapped)) return;
-        var moved = _explanation[last];
+        if (_explanation[last].CanBeDoneToTyres && first > 0 && first < last) Moved(_explanation[last], first, last, first);
+        // As well may the walks before have been the other way round, when most came after.
+        var end = 0;
+        while (end < last && _explanation[end + 1] == _explanation[0]) end++;
+        if (_explanation[0].CanBeDoneToTyres && end > 0 && end < last) Moved(_explanation[0], 0, end, end + 1);
+    }
+
+    private void Moved(Explanation moved, int first, int last, int since)
+    {
+        var gain = _context.Thorough ? Joint() : 0;
         for (var s = first; s <= last; s++) _explanation[s] = Explanation.AsWritten;
+        Restate();
+        var probability = _context.Thorough ? Probability(gain - Joint()) : _weighed[first].FirstOrDefault(w => w.Explanation == moved)?.Weight ?? 0.5;
         foreach (var p in _positions.Where(p => moved.Belongs(p) != p))
         {
-            _cuts.Add(p, new FittingCuts.Cut(first, null, null));
-            _inferredCuts.Add((p, first, _weighed[first].FirstOrDefault(w => w.Explanation == moved)?.Weight ?? 0.5));
+            _cuts.Add(p, new FittingCuts.Cut(since, null, null));
+            _inferredCuts.Add((p, since, probability));
         }
         Restate();
     }
@@ -254,9 +281,30 @@ internal sealed class HistoryReader
             behind = Math.Max(behind, _expected[p].Surveys);
         }
         if (axles == 0 || behind == 0) return;
+        var set = Set(axles);
+        _weighed[s] = SurveyExplanation.Weigh(set, _seen, _expected, _context.TechnicianSdMm, _surveys[s].Survey.ResolutionMm);
+    }
+
+    private ExplanationSet Set(int axles)
+    {
         if (!_sets.TryGetValue(axles, out var set))
             _sets[axles] = set = ExplanationSet.Of(_tread.Vehicle, _positions, [.. Enumerable.Range(1, Position.MaxAxle).Where(a => (axles & (1 << a)) != 0)]);
-        _weighed[s] = SurveyExplanation.Weigh(set, _seen, _expected, _context.TechnicianSdMm);
+        return set;
+    }
+
+    /// <summary>What a new tyre would read at a survey, put on at any time since the one before: of the depth recorded last for its axle, else the usual one.</summary>
+    private Estimate NewAt(int s, int p)
+    {
+        if (double.IsNaN(_newDepth[p].Value))
+        {
+            double? known = null;
+            for (var q = 0; q < _positions.Length; q++)
+                if (_positions[q].Axle == _positions[p].Axle)
+                    for (var f = 0; f < _cuts.At(q).Count; f++) known = _cuts.NewDepth(q, f) ?? known;
+            _newDepth[p] = known is { } k ? new(k, KnownNewSdMm) : new(WearPrior.For(_tread.Vehicle.Class, _normal[p].Role).NewDepthMm, UsualNewSdMm);
+        }
+        var half = s > 0 ? Math.Max(0, _km[s].Value - _km[s - 1].Value) * _normal[p].RateMmPer1000Km / 2000 : 0;
+        return new(_newDepth[p].Value - half, Math.Sqrt(Square(_newDepth[p].StandardError) + half * half + Square(_context.TechnicianSdMm)));
     }
 
     /// <summary>What the other surveys of the same fitting expect at a survey.</summary>
@@ -266,7 +314,7 @@ internal sealed class HistoryReader
         var own = _place[Slot(s, p)];
         var (mean, edge, shoulder) = evidence.Expected(_km[s].Value, own);
         // A recorded start is not itself in doubt: it counts for two.
-        return new(mean, Wander(edge), Wander(shoulder), evidence.Points.Count + (evidence.Started ? 1 : 0) - (own < 0 ? 0 : 1));
+        return new(mean, Wander(edge), Wander(shoulder), evidence.Points.Count + (evidence.Started ? 1 : 0) - (own < 0 ? 0 : 1)) { NewMm = NewAt(s, p) };
 
         static Estimate Wander(Estimate e) => new(e.Value, Math.Sqrt(e.StandardError * e.StandardError + WanderSdMm * WanderSdMm));
     }
@@ -364,7 +412,7 @@ internal sealed class HistoryReader
             for (var k = 1; k < n; k++)
             {
                 if (points[k].Survey <= 0) continue;
-                var gain = evidence.Of(0, k) + evidence.Of(k, n) - whole + s_logChange;
+                var gain = evidence.Of(0, k) + evidence.OfChanged(k, n, NewAt(points[k].Survey, p)) - whole + s_logChange;
                 if (gain > best.Gain) best = (gain, Changed(p, points[k].Survey, gain));
             }
             // The last survey cannot be told from a change: it waits for the next.

@@ -1,5 +1,6 @@
 using WearWatch.Diagnosis.Facts;
 using WearWatch.Diagnosis.Statistics;
+using WearWatch.Diagnosis.Tread;
 
 namespace WearWatch.Diagnosis.Wear;
 
@@ -53,4 +54,13 @@ public sealed record TyreFigures
     public string? LimitSource { get; init; }
     /// <summary>Distance from the last survey to the limit at the governing groove, km, 90 %.</summary>
     public Interval? RemainingKm { get; init; }
+    /// <summary>The tread across at the last survey, from the outboard side.</summary>
+    public IReadOnlyList<GrooveMean> Across { get; init; } = [];
+    /// <summary>Depth at the governing groove at each survey of the tyre now on, oldest first.</summary>
+    public IReadOnlyList<WearPoint> Points { get; init; } = [];
 }
+
+/// <summary>One survey on a tyre's wear line.</summary>
+/// <param name="Km">Running distance, km.</param>
+/// <param name="DepthMm">Depth, mm, reader's bias taken off.</param>
+public readonly record struct WearPoint(double Km, double DepthMm);

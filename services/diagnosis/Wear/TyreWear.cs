@@ -150,6 +150,9 @@ internal sealed class TyreWear(VehicleTread vehicle, FleetWear fleet, DateOnly a
         {
             RemainingMm = new(judged.GoverningMm, Math.Sqrt(readingSd * readingSd + bias * bias)),
             GoverningGroove = judged.Groove,
+            Across = [.. last.Shape!.ByGroove.Where(g => g.Groove > 0)],
+            Points = [.. fitting.Points.Select(p => (p.Km, Groove: p.Shape!.ByGroove.FirstOrDefault(g => g.Groove == judged.Groove), Bias: fleet.BiasOf(history.Surveys[p.Survey].Survey).Mm))
+                .Where(p => p.Groove.Places > 0).Select(p => new WearPoint(p.Km, p.Groove.DepthMm - p.Bias))],
             RemainingKm = !judged.Legal ? new Interval(0, 0, 0) : until.Count > 0 ? until[0] : null,
         };
     }

@@ -3,7 +3,11 @@ using WearWatch.Diagnosis.Facts;
 namespace WearWatch.Diagnosis.Wear;
 
 /// <summary>What the history of a vehicle is read against: the fleet's figures, or the built-in ones before there is a fleet.</summary>
-internal sealed record HistoryContext(Func<Vehicle, Position, NormalWear> Normal, Func<TreadSurvey, double> BiasMm, double RepeatSdMm, double TechnicianSdMm);
+internal sealed record HistoryContext(Func<Vehicle, Position, NormalWear> Normal, Func<TreadSurvey, double> BiasMm, double RepeatSdMm, double TechnicianSdMm)
+{
+    /// <summary>Try other readings of the history as a whole against the first one found; the fleet's fit, which stands what a few vehicles get wrong, goes without.</summary>
+    public bool Thorough { get; init; }
+}
 
 /// <summary>A vehicle's surveys put on one distance axis, cut into fittings, and each survey explained.</summary>
 internal sealed class VehicleHistory

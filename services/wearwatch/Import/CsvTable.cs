@@ -55,7 +55,11 @@ internal sealed class CsvTable
     public static TextReader OpenText(string path)
     {
         if (new FileInfo(path).Length == 0) throw new InvalidDataException("the file is empty");
-        if (!path.EndsWith(".gz", StringComparison.Ordinal)) return new StreamReader(path);
+        if (!path.EndsWith(".gz", StringComparison.Ordinal))
+        {
+            if (IsBinary(path)) throw new InvalidDataException("the file is not text: save it as CSV, not as a workbook");
+            return new StreamReader(path);
+        }
         var whole = new MemoryStream();
         using (var compressed = System.IO.File.OpenRead(path))
         using (var gzip = new GZipStream(compressed, CompressionMode.Decompress))
@@ -71,6 +75,15 @@ internal sealed class CsvTable
         if (BitConverter.ToUInt32(length) != (uint)whole.Length) throw new InvalidDataException("the gzip file ends early: it was only half written");
         whole.Position = 0;
         return new StreamReader(whole);
+    }
+
+    /// <summary>A zero byte in its first 4 KB, and no mark of UTF-16 or UTF-32 before it.</summary>
+    private static bool IsBinary(string path)
+    {
+        using var file = System.IO.File.OpenRead(path);
+        Span<byte> head = stackalloc byte[4096];
+        head = head[..file.ReadAtLeast(head, head.Length, throwOnEndOfStream: false)];
+        return head.Contains((byte)0) && !head.StartsWith((ReadOnlySpan<byte>)[0xFF, 0xFE]) && !head.StartsWith((ReadOnlySpan<byte>)[0xFE, 0xFF]) && !head.StartsWith((ReadOnlySpan<byte>)[0, 0, 0xFE, 0xFF]);
     }
 
     private static CsvTable? Read(string file, TextReader text, string[] columns, List<RowProblem> problems)

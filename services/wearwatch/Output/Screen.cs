@@ -95,6 +95,7 @@ internal static class Screen
                 t.RemainingKm is null ? "not known" : string.Create(CultureInfo.InvariantCulture, $"{t.RemainingKm.Value:#,0} ({t.RemainingKm.Low:#,0} to {t.RemainingKm.High:#,0})"), t.HasLimitMm ? $"{t.LimitMm:0.0#}" : "");
         }
         if (table.Rows.Count > 0) console.Write(table);
+        foreach (var line in d.Tyres.SelectMany(t => TreadDrawing.Lines(t, TreadDrawing.DeepestMm(d.Tyres)))) console.WriteLine(line);
     }
 
     private static void Changes(IAnsiConsole console, Contracts.V1.Diagnosis d)

@@ -168,4 +168,85 @@ public class FittingTests
         Assert.Equal(-0.2, At(Estimate(surveys), s_left).PressureShare!.Value.Value, 1e-9);
         Assert.Null(At(Estimate(surveys), new Position(2, Side.Left)).PressureShare);
     }
+
+    /// <summary>Front tyres at 8 and 5 mm, rear ones at 7 and 6 mm in week 0: every wheel is known by its depth.</summary>
+    private static double Own(Position p, int week) => (p.Axle, p.Side) switch { (1, Side.Left) => 8, (1, _) => 5.5, (_, Side.Left) => 7, _ => 6.2 } - 0.02 * week;
+
+    [Fact]
+    public void A_walk_begun_at_the_wrong_corner_is_recognised_and_its_wheels_put_back()
+    {
+        var (front, rear) = (s_left, new Position(2, Side.Left));
+        Position Wrong(Position p) => p == front ? rear : p == rear ? front : p;
+        var result = Estimate([.. new[] { 0, 8, 16, 24, 32 }.Select(w => Survey(w, 50_000 + 1000 * w, (p, _) => Own(w == 16 ? Wrong(p) : p, w)))]);
+        Assert.Equal(new Explanation(ExplanationKind.PositionsExchanged, Position: front, OtherPosition: rear), result.Surveys[2].Used);
+        Assert.Empty(result.Inferred);
+        Assert.Equal(5, At(result, front).Points.Count);
+    }
+
+    [Fact]
+    public void Tyres_of_both_axles_changed_before_the_last_walk_are_new_tyres_and_not_another_vehicle()
+    {
+        var result = Estimate([.. new[] { 0, 4, 8, 12, 16 }.Select(w => Survey(w, 50_000 + 1000 * w, (p, g) => w == 16 ? 8.8 : Own(p, w) - 0.3 * (g - 2.5) * (p.Side == Side.Left ? 1 : -1)))]);
+        Assert.Equal(ExplanationKind.AsWritten, result.Surveys[^1].Used.Kind);
+        Assert.Equal(4, result.Inferred.Count);
+        Assert.All(result.Tyres, t => Assert.Single(t.Points));
+    }
+
+    [Fact]
+    public void Grooves_counted_from_the_inboard_side_in_one_walk_are_turned_back()
+    {
+        double Sloped(Position p, int g, int w) => Own(p, w) + 0.5 * (g - 2.5);
+        var result = Estimate([.. new[] { 0, 8, 16, 24, 32 }.Select(w => Survey(w, 50_000 + 1000 * w, (p, g) => Sloped(p, w == 16 ? 5 - g : g, w)))]);
+        Assert.Equal(ExplanationKind.GroovesReversed, result.Surveys[2].Used.Kind);
+        Assert.Empty(result.Inferred);
+    }
+
+    [Fact]
+    public void Surveys_that_agree_are_not_talked_into_another_unit_by_a_contradicting_one()
+    {
+        // New tyres all round after week 20; the depths before are 1 / 1.26 of what is there after.
+        var result = Estimate([.. new[] { 0, 5, 10, 15, 20, 25, 30 }.Select(w => Survey(w, 50_000 + 1000 * w, (p, _) => w <= 20 ? 6.6 - 0.04 * w : 8.7 - 0.04 * (w - 20)))]);
+        Assert.All(result.Surveys, s => Assert.Equal(ExplanationKind.AsWritten, s.Used.Kind));
+        Assert.All(result.Inferred, i => Assert.Equal(s_first.AddDays(7 * 20), i.After));
+        Assert.Equal(4, result.Inferred.Count);
+    }
+
+    [Fact]
+    public void A_groove_read_on_a_wear_bar_is_named_as_such()
+    {
+        var result = Estimate([.. new[] { 0, 8, 16, 24, 32 }.Select(w => Survey(w, 50_000 + 1000 * w, (p, g) => Plain(w) - (w == 16 && p == s_left && g == 3 ? 1.6 : 0)))]);
+        var odd = Assert.Single(result.Surveys[2].Odd);
+        Assert.Equal((ExplanationKind.ReadOnWearBar, s_left, 3), (odd.Explanation.Kind, odd.Explanation.Position!.Value, odd.Explanation.Groove!.Value));
+    }
+
+    [Fact]
+    public void A_cupped_tyre_read_at_other_places_is_not_taken_for_another_tyre()
+    {
+        // Waves of 1 mm; the first walk reads three places, the others one that may lie anywhere on them.
+        double Wave(int w) => w switch { 8 => 1, 16 => -1, 24 => 0.8, _ => -0.6 };
+        var surveys = new[] { 0, 8, 16, 24, 32 }.Select(w => Survey(w, 50_000 + 1000 * w, (p, _) => Own(p, w) + (p == s_left && w > 0 ? Wave(w) : 0))).ToList();
+        TyreReadings ThreePlaces(TyreReadings t) => t.Position != s_left ? t : t with { Depths = [.. t.Depths.SelectMany(d => new[] { (20.0, 1.0), (140, -0.9), (260, 0.1) }.Select(x => d with { ClockDeg = x.Item1, DepthMm = d.DepthMm + x.Item2 }))] };
+        surveys[0] = surveys[0] with { Survey = surveys[0].Survey with { Tyres = [.. surveys[0].Survey.Tyres.Select(ThreePlaces)] } };
+        Assert.Empty(Estimate(surveys).Inferred);
+    }
+
+    [Fact]
+    public void Contradictory_histories_are_answered_and_never_with_a_confident_number()
+    {
+        var same = new[] { Survey(0, 50_000, (_, _) => 8), Survey(0, 50_000, (_, _) => 4) with { SurveyId = "again" }, Survey(8, 42_000, (_, _) => 7) };
+        var twice = new FittingRecord { VehicleId = "V", At = s_first.AddDays(3), Event = FittingEvent.Fitted, Position = s_left, NewDepthMm = 9 };
+        foreach (var result in new[] { Estimate(same), Estimate(same, twice, twice with { NewDepthMm = 6 }), Estimate([], twice) })
+        {
+            Assert.Equal(4, result.Tyres.Count);
+            Assert.All(result.Tyres, t => Assert.True(t.RemainingKm is not { } km || km.High > 2 * km.Low));
+        }
+    }
+
+    [Fact]
+    public void Ten_thousand_grooves_make_no_exception()
+    {
+        var many = Survey(0, 50_000, (_, _) => 8);
+        many = many with { Survey = many.Survey with { Tyres = [.. many.Survey.Tyres.Select(t => t with { Depths = [.. Enumerable.Range(1, 10_000).Select(g => new GrooveDepth(g, 8))] })] } };
+        Assert.Equal(4, Estimate([many, Survey(8, 58_000, (_, _) => 7)]).Tyres.Count);
+    }
 }

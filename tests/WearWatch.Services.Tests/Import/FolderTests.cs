@@ -103,4 +103,36 @@ public sealed class FolderTests : IDisposable
         Write("surveys.csv", "id,vehicle_id,at,depth_unit", "s1,V1,2026-03-02T07:40:00Z,furlong");
         Assert.Contains("not one of mm, 1/32in", Assert.Single(Read().Problems).Message);
     }
+
+    [Fact]
+    public void A_workbook_renamed_to_csv_is_refused_as_no_text()
+    {
+        File.WriteAllBytes(Path.Combine(_folder, "surveys.csv"), [0x50, 0x4B, 3, 4, 0x14, 0, 6, 0, 8, 0, 0, 0, 0x21, 0, 1, 2, 3]);
+        var problem = Assert.Single(Read().Problems);
+        Assert.Equal("surveys.csv", problem.File);
+        Assert.Contains("not text", problem.Message);
+    }
+
+    [Theory]
+    [InlineData("\r\n", false)]
+    [InlineData("\n", true)]
+    [InlineData("\r\n", true)]
+    public void Line_ends_and_a_byte_order_mark_change_nothing(string end, bool mark)
+    {
+        var text = string.Join(end, "id,vehicle_id,at,symptom", "r1,V1,2026-03-02T07:40:00Z,shakes", "r2,V1,2026-03-03T07:40:00Z,shakes", "");
+        File.WriteAllText(Path.Combine(_folder, "driver_reports.csv"), text, new UTF8Encoding(mark));
+        var (facts, problems) = Read();
+        Assert.Empty(problems);
+        Assert.Equal(2, facts["driver_reports.csv"]);
+    }
+
+    [Fact]
+    public void Columns_may_stand_in_any_order()
+    {
+        Write("driver_reports.csv", "symptom,at,id,vehicle_id", "shakes,2026-03-02T07:40:00Z,r1,V1");
+        var folder = new FolderFacts(_folder);
+        var report = folder.Files().Single(f => f.File == "driver_reports.csv").Facts.Single().DriverReport;
+        Assert.Empty(folder.Problems);
+        Assert.Equal("V1", report.VehicleId);
+    }
 }

@@ -47,11 +47,15 @@ public sealed record StreamFaults
         if (Clock.RateChanges > 0) yield return $"figures that need one rate: the rate changed ({Clock.RateChanges}×), each part was reduced at its own; one rate would help";
         if (Clock.TorqueUnitChanges > 0) yield return $"torque of part of the stream: its declared unit changed ({Clock.TorqueUnitChanges}×) and only N·m was read; one unit would help";
         if (TorqueScaleChanges) yield return "steering pull: the torque's numbers change their scale in the middle of a stream, and which part is in N·m cannot be known; the operator's word on its unit would help";
-        foreach (var (channel, seconds) in FrozenS.OrderBy(f => f.Key)) yield return $"{channel} of {Seconds(seconds)} s of driving: it stood frozen and was left out there; a sensor that is alive would help";
-        foreach (var (channel, seconds) in SaturatedS.OrderBy(f => f.Key)) yield return $"{channel} of {Seconds(seconds)} s: it stood at the end of its range and was left out there; a wider range would help";
+        foreach (var (channel, seconds) in FrozenS.OrderBy(f => f.Key)) yield return $"{Words(channel)} of {Seconds(seconds)} s of driving: it stood frozen and was left out there; a sensor that is alive would help";
+        foreach (var (channel, seconds) in SaturatedS.OrderBy(f => f.Key)) yield return $"{Words(channel)} of {Seconds(seconds)} s: it stood at the end of its range and was left out there; a wider range would help";
         if (AngleWraps > 0) yield return $"wheel angle of the seconds in which it wrapped: it jumps by a full turn ({AngleWraps}×) and was put together again; an angle over several turns would help";
         if (HeldPositionS > 0) yield return $"road of {Seconds(HeldPositionS)} s of driving: the position was held from an earlier fix and left out; a fix every second would help";
     }
+
+    /// <summary>DriverTorque as "driver torque".</summary>
+    private static string Words(SteeringChannel channel) =>
+        string.Concat(channel.ToString().Select((c, i) => char.IsUpper(c) && i > 0 ? $" {char.ToLowerInvariant(c)}" : $"{char.ToLowerInvariant(c)}"));
 
     private static string Seconds(double value) => Math.Round(value).ToString(System.Globalization.CultureInfo.InvariantCulture);
 }

@@ -10,6 +10,9 @@ internal static class StreamStudy
 
     private const double EnoughDrivingS = 600;
 
+    /// <summary>How the lines begin, or what they hold, that are put together differently over streams.</summary>
+    internal const string SignsWords = "signs:", CompensationWords = "pull compensation", StraightWords = "straight running:";
+
     internal readonly record struct Turns(ReturnToCentre? Return, UndersteerReading? Understeer, OnCentre? OnCentre);
 
     public static Turns TurnsOf(GatedStream stream, ReductionVehicle vehicle, SignCheck signs, RunReader reader, float[]? torque) =>
@@ -94,7 +97,7 @@ internal static class StreamStudy
         if (runs.Count > 0)
         {
             if (moving >= EnoughDrivingS && straight < LeastStraightShare * moving)
-                yield return $"the road's share and the route's apart: only {Invariant(Math.Round(100 * straight / moving, 1))} % of the driving is fast and straight, always on the same few places; another route now and then would help";
+                yield return "the road's share and the route's apart: hardly any of the driving is fast and straight, and what is lies in the same few places; another route now and then would help";
             yield break;
         }
         if (!blocks.Has(SteeringChannel.Speed)) yield return "straight running: no speed; a speed channel would help";

@@ -84,8 +84,22 @@ public sealed record VehicleSteeringStudy
             OnCentre = OnCentre.Join(streams.Select(s => s.OnCentre)),
             WheelHop = WheelHop.Join(streams.Select(s => s.WheelHop)),
             FrozenS = streams.SelectMany(s => s.FrozenS).GroupBy(f => f.Key).OrderBy(g => g.Key).ToDictionary(g => g.Key, g => g.Select(f => f.Value).Order().Sum()),
-            NotPossible = streams.SelectMany(s => s.NotPossible).Distinct().Order(StringComparer.Ordinal).ToArray(),
+            NotPossible = NotPossibleOf(streams),
         };
+    }
+
+    /// <summary>
+    /// What one trip lacked another may have had: a line stays where half of the streams say it, that there was no straight running where
+    /// none had any, and what a vehicle is wired or programmed to do where any stream shows it. Faults are told once, in sum.
+    /// </summary>
+    private static string[] NotPossibleOf(IReadOnlyCollection<VehicleSteeringStudy> streams)
+    {
+        var said = streams.SelectMany(s => s.NotPossible.Except(s.Faults.Sentences())).GroupBy(line => line);
+        var ran = streams.Any(s => s.SecondsStraight > 0);
+        bool Stays(string line, int times) =>
+            line.StartsWith(StreamStudy.SignsWords, StringComparison.Ordinal) || line.Contains(StreamStudy.CompensationWords, StringComparison.Ordinal)
+            || (line.StartsWith(StreamStudy.StraightWords, StringComparison.Ordinal) ? !ran : 2 * times >= streams.Count);
+        return [.. said.Where(g => Stays(g.Key, g.Count())).Select(g => g.Key).Order(StringComparer.Ordinal), .. StreamFaults.Sum([.. streams.Select(s => s.Faults)]).Sentences()];
     }
 
     private static double? Total(IEnumerable<double?> parts)

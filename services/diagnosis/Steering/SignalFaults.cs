@@ -86,8 +86,11 @@ internal static class SignalFaults
             blocks.Samples[i] > 2 && !float.IsNaN(mean[i]) && min[i] == max[i] && (max[i] == most || min[i] == least);
     }
 
-    /// <summary>At more than this speed nobody turns the wheel by more than this within a second, km/h and deg.</summary>
-    private const float WrapKmH = 20, WrapDeg = 270;
+    /// <summary>At more than this speed nobody turns the wheel by more than this within a second, km/h and deg; in a tight bend below it some do.</summary>
+    private const float WrapKmH = 30, WrapDeg = 300;
+
+    /// <summary>A wrap moves the angle by a full turn and what the driver turns meanwhile, deg at the most.</summary>
+    private const float TurnedMeanwhileDeg = 60;
 
     /// <summary>Puts a wheel angle that wraps at a full turn together again and blanks the seconds in which it wrapped.</summary>
     /// <returns>Times it wrapped.</returns>
@@ -110,8 +113,9 @@ internal static class SignalFaults
                 blocks.Blank(SteeringChannel.SteeringWheelAngle, i, i + 1);
                 continue;
             }
-            var step = float.IsNaN(last) ? 0 : (int)MathF.Round((mean[i] + 360 * turns - last) / 360);
-            if (step != 0 && speed[i] > WrapKmH)
+            var by = float.IsNaN(last) ? 0 : mean[i] + 360 * turns - last;
+            var step = (int)MathF.Round(by / 360);
+            if (step != 0 && speed[i] > WrapKmH && MathF.Abs(by - 360 * step) < TurnedMeanwhileDeg)
             {
                 if (!inside) times++;
                 turns -= step;

@@ -16,7 +16,7 @@ namespace WearWatch.Analysis;
 internal sealed partial class Diagnosing(FactReader facts, FleetFitStore fits, DiagnosisStore store, RunStore runs, FleetFitting fitting, TimeProvider clock, ILogger<Diagnosing> log)
 {
     /// <summary>Raised when any stage of the diagnosis changes, so that every vehicle becomes due.</summary>
-    public const string Method = "diagnosis-1";
+    public const string Method = "diagnosis-2";
 
     private const int Batch = 16;
 
@@ -36,7 +36,8 @@ internal sealed partial class Diagnosing(FactReader facts, FleetFitStore fits, D
                 if (await facts.LoadVehicle(due.VehicleId, null, cancel) is not { } vehicle) throw new InvalidDataException("the vehicle has no record that holds");
                 var open = await claim.OpenFindings(due, cancel);
                 var since = await Since(vehicle.Vehicle.VehicleId, [.. settings.Keys], fit.Snapshot, cancel);
-                var result = await Task.Run(() => Of(vehicle, settings.GetValueOrDefault(vehicle.Depot.DepotId), fit.Snapshot, fit.Id, since), cancel);
+                var study = await runs.StudyOf(vehicle.Vehicle.VehicleId, [.. settings.Keys], cancel);
+                var result = await Task.Run(() => Of(vehicle, settings.GetValueOrDefault(vehicle.Depot.DepotId), fit.Snapshot, fit.Id, since, study), cancel);
                 await claim.Publish(Publication.Of(due, result, open, clock.GetUtcNow()), cancel);
             }
             catch (Exception failure) when (failure is not (OperationCanceledException or NpgsqlException))
@@ -59,7 +60,7 @@ internal sealed partial class Diagnosing(FactReader facts, FleetFitStore fits, D
         if (await facts.LoadVehicle(vehicleId, day, cancel) is not { } vehicle) return null;
         var (snapshot, _, _) = await fitting.Make(day, cancel);
         var settings = await facts.LoadSettings(cancel);
-        return await Task.Run(() => Of(vehicle, settings.GetValueOrDefault(vehicle.Depot.DepotId), snapshot, 0, []), cancel);
+        return await Task.Run(() => Of(vehicle, settings.GetValueOrDefault(vehicle.Depot.DepotId), snapshot, 0, [], null), cancel);
     }
 
     /// <summary>Straight runs that came after the fit saw the vehicle's last one.</summary>
@@ -68,12 +69,12 @@ internal sealed partial class Diagnosing(FactReader facts, FleetFitStore fits, D
             ? await runs.Since(vehicleId, depots, then.Now.Min(n => n.Through).UtcDateTime, cancel)
             : [];
 
-    private static VehicleDiagnosis Of(VehicleFacts vehicle, DepotSettings? settings, FleetSnapshot fleet, long fit, IReadOnlyList<StraightRun> since)
+    private static VehicleDiagnosis Of(VehicleFacts vehicle, DepotSettings? settings, FleetSnapshot fleet, long fit, IReadOnlyList<StraightRun> since, VehicleSteeringStudy? study)
     {
         var day = vehicle.FactsThrough is { } through && DateOnly.FromDateTime(through.UtcDateTime) > fleet.AsOf && fit != 0 ? DateOnly.FromDateTime(through.UtcDateTime) : fleet.AsOf;
         var tread = VehicleFiguresOf.Tread(vehicle, settings);
         var wear = VehicleWear.Estimate(tread, fleet.Wear, day);
-        var changes = VehicleChangesOf.Vehicle(vehicle, tread, fleet, since, day);
+        var changes = VehicleChangesOf.Vehicle(vehicle, tread, fleet, since, study, day);
         var figures = VehicleFiguresOf.Figures(vehicle, settings, wear, fleet.Roads.Of(vehicle.Vehicle.VehicleId), day, changes);
         var verdict = CauseEstimate.Judge(figures, FaultPriors.Default);
         var inputs = MoneyInputs.For(vehicle.Vehicle, vehicle.Depot, [.. settings?.Prices.Select(p => p.Body) ?? []], [.. settings?.Settings.Select(s => s.Body) ?? []], day);
@@ -91,6 +92,7 @@ internal sealed partial class Diagnosing(FactReader facts, FleetFitStore fits, D
             Findings = [.. findings],
             UnsafeTyres = UnsafeTyres.Of(vehicle.Vehicle, vehicle.Depot, [.. vehicle.Surveys.Select(s => new RecordedSurvey(s.FactId, s.Body, false)), .. vehicle.HeldSurveys.Select(s => new RecordedSurvey(s.FactId, s.Body, true))], [.. vehicle.Fittings.Select(f => f.Body)], VehicleFiguresOf.Limits(settings)),
             FleetFit = fit,
+            Study = study,
             FactsThrough = vehicle.FactsThrough,
         };
     }

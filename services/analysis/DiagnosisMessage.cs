@@ -41,7 +41,7 @@ internal static class DiagnosisMessage
         message.Causes.Add(d.Verdict.Causes.Select(Of));
         message.Tyres.Add(d.Figures.Tyres.Select(Of));
         message.CannotTell.Add(d.Verdict.CannotTell.Select(c => new CannotTell { What = c.What, Because = c.Because, WouldHelp = c.WouldHelp }));
-        message.CannotTell.Add((steering?.NotPossible ?? []).Select(NotPossible));
+        message.CannotTell.Add((steering?.NotPossible ?? []).Union(d.Study?.NotPossible ?? []).Select(NotPossible));
         message.CannotTell.Add(d.Cost.Assumed.Select(a => new CannotTell { What = "the money exactly", Because = $"{a} was assumed", WouldHelp = "the operator's own figure" }));
         message.Changes.Add(d.Figures.Changes.Select(c => Of(c, ChangeLimits.IsPublished(d.Figures, c))));
         message.SurveyNotes.Add(d.Wear.Surveys.Where(s => s.Corrected || s.Weight < 0.9).Select(Of));

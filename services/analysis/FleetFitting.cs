@@ -50,7 +50,7 @@ internal sealed class FleetFitting(FactReader facts, RunStore runs, TimeProvider
         var figures = fleet.AsParallel().AsOrdered()
             .Select((v, i) => VehicleFiguresOf.Figures(v, settings.GetValueOrDefault(v.Depot.DepotId), VehicleWear.Estimate(tread[i], wear, day), roads.Of(v.Vehicle.VehicleId), day))
             .ToList();
-        return new FleetSnapshot { AsOf = day, Wear = wear, Roads = roads, Unusual = UnusualVehicles.Fit(figures), Changes = VehicleChangesOf.Fleet(fleet, straight.ToLookup(r => r.VehicleId), torque, roads) };
+        return new FleetSnapshot { AsOf = day, Wear = wear, Roads = roads, Unusual = UnusualVehicles.Fit(figures), Changes = VehicleChangesOf.Fleet(fleet, straight.ToLookup(r => r.VehicleId), torque, roads, studies.ToLookup(s => s.VehicleId)) };
     }
 
     /// <summary>

@@ -10,7 +10,7 @@ namespace WearWatch.Analysis;
 internal sealed class StreamReducing(FactReader facts, ChunkReader chunks, RunStore runs)
 {
     /// <summary>Raised when the reduction changes, so that every stream is reduced anew.</summary>
-    public const string Method = "reduction-1";
+    public const string Method = "reduction-2";
 
     private const int Batch = 32;
 

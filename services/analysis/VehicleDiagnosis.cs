@@ -1,6 +1,7 @@
 using WearWatch.Diagnosis.Causes;
 using WearWatch.Diagnosis.Money;
 using WearWatch.Diagnosis.Rules;
+using WearWatch.Diagnosis.Steering;
 using WearWatch.Diagnosis.Tread;
 using WearWatch.Diagnosis.Wear;
 
@@ -17,6 +18,8 @@ internal sealed record VehicleDiagnosis
     public required double JobPrice { get; init; }
     public required IReadOnlyList<Finding> Findings { get; init; }
     public required IReadOnlyList<UnsafeTyre> UnsafeTyres { get; init; }
+    /// <summary>What its steering signals hold beyond the straight runs; null without signals, and for a day in the past.</summary>
+    public VehicleSteeringStudy? Study { get; init; }
     public required long FleetFit { get; init; }
     public DateTimeOffset? FactsThrough { get; init; }
 }

@@ -80,10 +80,11 @@ public static class ChangeDating
             if (segments.Count > 1 || segments[0].Sloped) (cost, segments) = Cut(trips, variance, scale);
             else cost = TripCost(trips, variance, scale);
         }
+        var wander = Wander(cost, segments);
         var changes = new List<DatedChange>();
         for (var k = 0; k < segments.Count; k++)
         {
-            if (k > 0) changes.Add(Sudden(series, trips, cost, segments[k - 1], segments[k], variance, scale));
+            if (k > 0) changes.Add(Sudden(series, trips, cost, segments[k - 1], segments[k], variance, scale, wander));
             if (segments[k].Sloped && Drifts(trips, segments[k])) changes.Add(Drift(series, trips, cost, segments[k]));
         }
         return (changes.OrderBy(c => c.Likely).ThenBy(c => c.Form).ToArray(), Now(series, trips, cost, segments[^1], scale));
@@ -165,13 +166,33 @@ public static class ChangeDating
         return Math.Clamp(own * pairs / (pairs + PriorTrips), 0, MostCorrelation);
     }
 
+    /// <summary>Halves of segments that the stated errors count for against the wander found.</summary>
+    private const double PriorHalves = 2;
+
+    /// <summary>
+    /// Factor on the variance of a level because levels wander: shifts and drifts too small to be cut (tyres, pressures, seasons) sit in
+    /// the trips' mean, and neither the scatter of neighbours nor their correlation shows them. Told by the two halves of each segment,
+    /// which ought to agree; never below 1.
+    /// </summary>
+    private static double Wander(SegmentCost cost, IReadOnlyList<Segment> segments)
+    {
+        var (sum, count) = (PriorHalves, PriorHalves);
+        foreach (var s in segments.Where(s => !s.Sloped && s.To - s.From >= 2 * LeastTrips))
+        {
+            var (first, firstVariance, _) = cost.Mean(s.From, (s.From + s.To) / 2);
+            var (second, secondVariance, _) = cost.Mean((s.From + s.To) / 2, s.To);
+            (sum, count) = (sum + (first - second) * (first - second) / (firstVariance + secondVariance), count + 1);
+        }
+        return Math.Max(1, sum / count);
+    }
+
     /// <summary>As many trips as a drift must last at the series' usual pace.</summary>
     private static int LeastSloped(double[] days) => Math.Max(DriftTrips, (int)Math.Ceiling(days.Length * DriftDays / Math.Max(DriftDays, days[^1] - days[0])));
 
     private static bool Drifts(IReadOnlyList<Trip> trips, Segment s) =>
         s.To - s.From >= DriftTrips && (trips[s.To - 1].From - trips[s.From].From).TotalDays >= DriftDays;
 
-    private static DatedChange Sudden(ChangeSeries series, IReadOnlyList<Trip> trips, SegmentCost cost, Segment a, Segment b, double tripVariance, double scale)
+    private static DatedChange Sudden(ChangeSeries series, IReadOnlyList<Trip> trips, SegmentCost cost, Segment a, Segment b, double tripVariance, double scale, double wander)
     {
         // A trip next to a neighbouring change may hold part of that change's step; it is left out where enough others are there.
         var first = a.From > 0 && a.To - a.From > LeastTrips ? a.From + 1 : a.From;
@@ -181,7 +202,7 @@ public static class ChangeDating
         var at = (Day(trips, trips[b.From - 1]) + Day(trips, trips[b.From])) / 2;
         var (left, right) = (a.Sloped ? cost.Slope(a.From, a.To).Slope : 0, b.Sloped ? cost.Slope(b.From, b.To).Slope : 0);
         var (from, to, likely, size) = DatePosterior.Of(between, t => left * (DayOf(trips, t) - at), t => right * (DayOf(trips, t) - at), tripVariance, scale, series.Events);
-        size = size with { StandardError = Math.Sqrt(size.StandardError * size.StandardError + ScaleError * ScaleError * size.Value * size.Value) };
+        size = size with { StandardError = Math.Sqrt(wander * size.StandardError * size.StandardError + ScaleError * ScaleError * size.Value * size.Value) };
         var before = Level(cost, a)(at);
         return new()
         {

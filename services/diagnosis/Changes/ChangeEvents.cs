@@ -1,4 +1,5 @@
 using WearWatch.Diagnosis.Facts;
+using WearWatch.Diagnosis.Steering;
 
 namespace WearWatch.Diagnosis.Changes;
 
@@ -8,8 +9,9 @@ public static class ChangeEvents
     /// <param name="vehicle">Tells which axles steer.</param>
     /// <param name="fittings">With their ids.</param>
     /// <param name="workshop">With their ids.</param>
+    /// <param name="strikes">Jolts found in the steering signals.</param>
     /// <returns>In order of time; work on several wheels of one kind on one day is one event.</returns>
-    public static IReadOnlyList<ChangeEvent> Of(Vehicle vehicle, IEnumerable<(string Id, FittingRecord Body)> fittings, IEnumerable<(string Id, WorkshopRecord Body)> workshop)
+    public static IReadOnlyList<ChangeEvent> Of(Vehicle vehicle, IEnumerable<(string Id, FittingRecord Body)> fittings, IEnumerable<(string Id, WorkshopRecord Body)> workshop, IEnumerable<KerbStrikeCandidate>? strikes = null)
     {
         bool Steers(FittingRecord f) => vehicle.AxleAt(f.Position.Axle)?.Steered ?? f.Position.Axle == 1;
         var tyres = fittings.Where(f => f.Body.Event is not (FittingEvent.Removed or FittingEvent.Regrooved))
@@ -22,7 +24,8 @@ public static class ChangeEvents
                     $"tyres {string.Join(" and ", done)} at {string.Join(", ", places)}", g.OrderBy(f => f.Id, StringComparer.Ordinal).First().Id, TimeKnown: false);
             });
         var visits = workshop.Select(w => new ChangeEvent(EventKind.Workshop, w.Body.At, Words(w.Body.Result), w.Id, TimeKnown: false));
-        return [.. tyres.Concat(visits).OrderBy(e => e.At).ThenBy(e => e.Kind).ThenBy(e => e.Rests, StringComparer.Ordinal)];
+        var jolts = (strikes ?? []).Select(k => new ChangeEvent(EventKind.KerbStrike, k.At, "jolt as from a kerb or a hole", k.Rests));
+        return [.. tyres.Concat(visits).Concat(jolts).OrderBy(e => e.At).ThenBy(e => e.Kind).ThenBy(e => e.Rests, StringComparer.Ordinal)];
     }
 
     private static DateTime Day(DateTimeOffset at) => at.UtcDateTime.Date;

@@ -1,5 +1,6 @@
 using System.Numerics;
 using System.Runtime.InteropServices;
+using System.Runtime.Intrinsics;
 
 namespace WearWatch.Diagnosis.Steering;
 
@@ -15,12 +16,57 @@ public readonly record struct BlockSummary(float Mean, float Min, float Max)
 /// <summary>Reduces one block of samples, NaN being missing. The vector form is the one used; the scalar form is its test oracle.</summary>
 public static class BlockPass
 {
-    private const int ShortestVectors = 3;
+    private const int Lanes = 8;
 
+    /// <summary>Row r keeps the last r lanes: the part of an overlapping load that was not summed before.</summary>
+    private static readonly float[] s_last = [.. Enumerable.Range(0, Lanes).SelectMany(r => Enumerable.Range(0, Lanes).Select(lane => BitConverter.Int32BitsToSingle(lane >= Lanes - r ? -1 : 0)))];
+
+    /// <summary>Whole blocks first, as though nothing were missing; a block whose sum is then no number goes through the careful form.</summary>
     public static BlockSummary Vectorised(ReadOnlySpan<float> samples)
     {
+        if (samples.Length < Lanes || !Vector256.IsHardwareAccelerated) return Scalar(samples);
+        ref var first = ref MemoryMarshal.GetReference(samples);
+        var sum = Vector256.LoadUnsafe(ref first);
+        var (min, max) = (sum, sum);
+        var end = samples.Length - Lanes;
+        var at = Lanes;
+        for (; at <= end; at += Lanes)
+        {
+            var x = Vector256.LoadUnsafe(ref first, (nuint)at);
+            sum += x;
+            min = Vector256.MinNative(min, x);
+            max = Vector256.MaxNative(max, x);
+        }
+        if (samples.Length - at is var rest and > 0)
+        {
+            // The rest is read together with samples seen before: the extremes do not mind, the sum leaves them out.
+            var x = Vector256.LoadUnsafe(ref first, (nuint)end);
+            sum += x & Vector256.LoadUnsafe(ref MemoryMarshal.GetArrayDataReference(s_last), (nuint)(rest * Lanes));
+            min = Vector256.MinNative(min, x);
+            max = Vector256.MaxNative(max, x);
+        }
+        var total = Vector256.Sum(sum);
+        return float.IsFinite(total) ? new(total / samples.Length, Least(min), Most(max)) : Masked(samples);
+    }
+
+    private static float Least(Vector256<float> v)
+    {
+        var w = Vector128.MinNative(v.GetLower(), v.GetUpper());
+        w = Vector128.MinNative(w, Vector128.Shuffle(w, Vector128.Create(2, 3, 0, 1)));
+        return Vector128.MinNative(w, Vector128.Shuffle(w, Vector128.Create(1, 0, 3, 2))).ToScalar();
+    }
+
+    private static float Most(Vector256<float> v)
+    {
+        var w = Vector128.MaxNative(v.GetLower(), v.GetUpper());
+        w = Vector128.MaxNative(w, Vector128.Shuffle(w, Vector128.Create(2, 3, 0, 1)));
+        return Vector128.MaxNative(w, Vector128.Shuffle(w, Vector128.Create(1, 0, 3, 2))).ToScalar();
+    }
+
+    /// <summary>The vector form that looks at every sample for being there.</summary>
+    private static BlockSummary Masked(ReadOnlySpan<float> samples)
+    {
         var width = Vector<float>.Count;
-        if (samples.Length < ShortestVectors * width) return Scalar(samples); // the lanes would cost more to gather than they save
         var sum = Vector<float>.Zero;
         var min = new Vector<float>(float.PositiveInfinity);
         var max = new Vector<float>(float.NegativeInfinity);

@@ -41,13 +41,13 @@ internal static class PullCompensation
     }
 
     /// <summary>First block after each turn.</summary>
-    private static IEnumerable<int> TurnEnds(GatedStream stream)
+    internal static IEnumerable<int> TurnEnds(GatedStream stream)
     {
         for (var i = 1; i < stream.Blocks.Count; i++)
             if (Turning(stream, i - 1) && !Turning(stream, i) && stream.Blocks.Joined[i]) yield return i;
     }
 
-    private static bool Turning(GatedStream stream, int block) => Math.Abs(stream.Yaw(block)) > StraightGates.TurnDegS;
+    internal static bool Turning(GatedStream stream, int block) => Math.Abs(stream.Yaw(block)) > StraightGates.TurnDegS;
 
     private static double SecondsAfter(GatedStream stream, int turnEnd, int block) =>
         (stream.Blocks.StartTicks[block] - stream.Blocks.StartTicks[turnEnd]) / (double)TimeSpan.TicksPerSecond;

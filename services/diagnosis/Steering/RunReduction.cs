@@ -20,14 +20,26 @@ public static class RunReduction
     public static StreamReduction ReduceStream(string vehicleId, string streamId, IReadOnlyList<(long Sequence, SteeringColumns Columns)> chunks, ReductionVehicle vehicle, bool scalar = false)
     {
         var blocks = Blocks.Of(chunks, scalar);
-        var frozen = SignalFaults.BlankFrozen(blocks);
+        var faults = StreamFaults.Remove(blocks);
         var stream = GatedStream.Of(blocks);
+        var signs = SignCheck.Of(stream);
         var compensation = blocks.Has(SteeringChannel.DriverTorque) && PullCompensation.Recognised(stream);
+        var torque = faults.TorqueScaleChanges || signs.Torque == SignVerdict.Opposite ? null : TotalTorque(blocks, compensation);
+        var reader = new RunReader(vehicleId, streamId, stream, vehicle, signs, torque, AngleSlope(stream, vehicle));
+        // Turns tell of release and friction before the time after them is dropped.
+        var turns = StreamStudy.TurnsOf(stream, vehicle, signs, reader, torque);
         if (compensation) PullCompensation.DropAfterTurns(stream);
-        var reader = new RunReader(vehicleId, streamId, stream, vehicle, TotalTorque(blocks, compensation), AngleSlope(stream, vehicle));
         var runs = new List<StraightRun>();
         foreach (var (from, to) in Stretches(stream)) runs.Add(reader.Read(from, to));
-        return new(runs, StreamStudy.Of(vehicleId, stream, runs, frozen, compensation));
+        var study = StreamStudy.Of(vehicleId, stream, runs, faults, signs, compensation) with
+        {
+            KerbStrikes = KerbStrikes.Find(streamId, stream),
+            Return = turns.Return,
+            Understeer = turns.Understeer,
+            OnCentre = turns.OnCentre,
+            WheelHop = WheelHop.Of(Blocks.Ordered(chunks), runs),
+        };
+        return new(runs, study);
     }
 
     /// <summary>Driver plus assist where the stream has both; NaN where either is missing. The torsion bar alone under pull compensation tells nothing.</summary>
@@ -85,7 +97,7 @@ public static class RunReduction
 }
 
 /// <summary>Turns a stretch of blocks into a run.</summary>
-internal sealed class RunReader(string vehicleId, string streamId, GatedStream stream, ReductionVehicle vehicle, float[]? torque, double? angleSlope)
+internal sealed class RunReader(string vehicleId, string streamId, GatedStream stream, ReductionVehicle vehicle, SignCheck signs, float[]? torque, double? angleSlope)
 {
     private readonly double[] _scratch = new double[(int)(2 * StraightGates.LongestRunS) + 2];
 
@@ -104,9 +116,10 @@ internal sealed class RunReader(string vehicleId, string streamId, GatedStream s
             SpeedKmH = Average(blocks.Mean(SteeringChannel.Speed), from, to)!.Value,
             TorqueNm = torque is null ? null : Robust(from, to, i => torque[i], TorqueResolution(), SteeringChannel.DriverTorque),
             TorqueIncludesAssist = blocks.Has(SteeringChannel.AssistTorque),
-            AngleDeg = blocks.Has(SteeringChannel.SteeringWheelAngle)
+            // With signs that disagree the curvature would be doubled, not removed.
+            AngleDeg = blocks.Has(SteeringChannel.SteeringWheelAngle) && signs.Angle != SignVerdict.Opposite
                 ? Robust(from, to, StraightAngle, blocks.Resolution(SteeringChannel.SteeringWheelAngle), SteeringChannel.SteeringWheelAngle) : null,
-            BankReading = blocks.Has(SteeringChannel.LateralAcceleration) && blocks.Has(SteeringChannel.YawRate)
+            BankReading = blocks.Has(SteeringChannel.LateralAcceleration) && blocks.Has(SteeringChannel.YawRate) && signs.LateralAcceleration != SignVerdict.Opposite
                 ? Robust(from, to, Bank, blocks.Resolution(SteeringChannel.LateralAcceleration) / SteeringEquations.Gravity, SteeringChannel.LateralAcceleration) : null,
             YawRateDegS = blocks.Has(SteeringChannel.YawRate) ? Average(blocks.Mean(SteeringChannel.YawRate), from, to) - stream.YawBiasDegS : null,
             LoadKg = Average(blocks.Mean(SteeringChannel.Load), from, to),
@@ -117,7 +130,7 @@ internal sealed class RunReader(string vehicleId, string streamId, GatedStream s
     private double TorqueResolution() => Math.Max(stream.Blocks.Resolution(SteeringChannel.DriverTorque), stream.Blocks.Resolution(SteeringChannel.AssistTorque));
 
     /// <summary>Wheel angle less what the road's curvature takes, deg.</summary>
-    private double StraightAngle(int i)
+    internal double StraightAngle(int i)
     {
         double angle = stream.Blocks.Mean(SteeringChannel.SteeringWheelAngle)[i], yaw = stream.Yaw(i);
         if (double.IsNaN(yaw)) return stream.YawZero == YawZero.None ? angle : double.NaN;

@@ -3,45 +3,69 @@ namespace WearWatch.Diagnosis.Steering;
 /// <summary>Fills a vehicle's study from one gated stream.</summary>
 internal static class StreamStudy
 {
-    private const float MovingKmH = 5; // from memory
+    internal const float MovingKmH = 5; // from memory
 
-    public static VehicleSteeringStudy Of(string vehicleId, GatedStream stream, IReadOnlyList<StraightRun> runs, IReadOnlyDictionary<SteeringChannel, double> frozen, bool compensation)
+    /// <summary>Straight driving as a share of driving from which on a route counts as one with straights (from memory).</summary>
+    private const double LeastStraightShare = 0.03;
+
+    private const double EnoughDrivingS = 600;
+
+    /// <summary>How the lines begin, or what they hold, that are put together differently over streams.</summary>
+    internal const string SignsWords = "signs:", CompensationWords = "pull compensation", StraightWords = "straight running:";
+
+    internal readonly record struct Turns(ReturnToCentre? Return, UndersteerReading? Understeer, OnCentre? OnCentre);
+
+    public static Turns TurnsOf(GatedStream stream, ReductionVehicle vehicle, SignCheck signs, RunReader reader, float[]? torque) =>
+        signs.Angle == SignVerdict.Opposite ? default : new(ReturnToCentre.Of(stream, reader.StraightAngle, torque), UndersteerReading.Of(stream, vehicle), OnCentre.Of(stream, torque));
+
+    public static VehicleSteeringStudy Of(string vehicleId, GatedStream stream, IReadOnlyList<StraightRun> runs, StreamFaults faults, SignCheck signs, bool compensation)
     {
         var blocks = stream.Blocks;
         var speed = blocks.Mean(SteeringChannel.Speed);
         var angle = blocks.Mean(SteeringChannel.SteeringWheelAngle);
+        var seconds = blocks.Seconds.AsSpan();
         var histogram = new double[VehicleSteeringStudy.HistogramClasses];
-        var (recorded, left, right, together) = (0.0, 0.0, 0.0, 0.0);
-        for (var i = 0; i < blocks.Count; i++)
+        var (recorded, moving, together) = (0.0, 0.0, 0.0);
+        for (var i = 0; i < seconds.Length; i++)
         {
-            recorded += blocks.Seconds[i];
+            recorded += seconds[i];
             if (speed.IsEmpty || !(speed[i] > MovingKmH)) continue;
-            var yaw = stream.Yaw(i);
-            if (yaw > 0) left += yaw * blocks.Seconds[i];
-            if (yaw < 0) right -= yaw * blocks.Seconds[i];
+            moving += seconds[i];
             if (angle.IsEmpty || float.IsNaN(angle[i])) continue;
-            if (Math.Abs(yaw) > StraightGates.TurnDegS) together += yaw * angle[i] * blocks.Seconds[i];
+            var yaw = stream.Yaw(i);
+            if (Math.Abs(yaw) > StraightGates.TurnDegS) together += yaw * angle[i] * seconds[i];
             var k = (int)Math.Floor(angle[i] / VehicleSteeringStudy.HistogramStepDeg) + histogram.Length / 2;
-            histogram[Math.Clamp(k, 0, histogram.Length - 1)] += blocks.Seconds[i];
+            histogram[Math.Clamp(k, 0, histogram.Length - 1)] += seconds[i];
         }
-        var hasYaw = blocks.Has(SteeringChannel.YawRate);
+        var duty = TurnDuty.Of(stream);
         return new()
         {
             VehicleId = vehicleId,
             SecondsRecorded = recorded,
+            SecondsMoving = moving,
             SecondsStraight = runs.Sum(r => r.Seconds),
             SecondsLaneKeeping = stream.LaneKeepingSeconds,
             DistanceKm = blocks.DistanceKm,
             AngleHistogramS = histogram,
-            TurnedLeftDeg = hasYaw ? left : null,
-            TurnedRightDeg = hasYaw ? right : null,
+            Duty = duty,
+            TurnedLeftDeg = duty?.LeftDeg,
+            TurnedRightDeg = duty?.RightDeg,
             YawZero = stream.YawZero,
             AngleAgainstYaw = together,
+            Signs = signs,
             PullCompensation = compensation,
             ChannelsPresent = Enum.GetValues<SteeringChannel>().Where(c => Present(blocks, c)).ToArray(),
-            FrozenS = frozen,
-            NotPossible = NotPossible(stream, runs, frozen, compensation, together).ToArray(),
+            Faults = faults,
+            FrozenS = faults.FrozenS,
+            NotPossible = [.. NotPossible(stream, runs, compensation, moving), .. SignSentences(signs), .. faults.Sentences()],
         };
+    }
+
+    private static IEnumerable<string> SignSentences(SignCheck signs)
+    {
+        if (signs.Angle == SignVerdict.Opposite) yield return "signs: steering-wheel angle and yaw rate have opposite signs, so no off-centre angle was read; both positive to the left would help";
+        if (signs.Torque == SignVerdict.Opposite) yield return "signs: driver torque and yaw rate have opposite signs, so no steering pull was read; both positive to the left would help";
+        if (signs.LateralAcceleration == SignVerdict.Opposite) yield return "signs: lateral acceleration and yaw rate have opposite signs, so no bank was read; both positive to the left would help";
     }
 
     private static string Invariant(double value) => value.ToString("0.###", System.Globalization.CultureInfo.InvariantCulture);
@@ -54,7 +78,7 @@ internal static class StreamStudy
         _ => blocks.Has(channel),
     };
 
-    private static IEnumerable<string> NotPossible(GatedStream stream, IReadOnlyList<StraightRun> runs, IReadOnlyDictionary<SteeringChannel, double> frozen, bool compensation, double together)
+    private static IEnumerable<string> NotPossible(GatedStream stream, IReadOnlyList<StraightRun> runs, bool compensation, double moving)
     {
         var blocks = stream.Blocks;
         if (blocks.TorqueUnitUnknown) yield return "steering pull: the torque's unit is raw or unknown; the operator's word on its unit would help";
@@ -69,11 +93,17 @@ internal static class StreamStudy
         else if (stream.YawZero == YawZero.NotTaken) yield return "zero of the yaw rate: the vehicle neither stood for 5 s nor drove straight for 60 s; a log from key-on would help";
         if (!blocks.Has(SteeringChannel.LateralAcceleration)) yield return "own bank reading: no lateral acceleration; a lateral acceleration channel would help";
         if (!blocks.Latitude.Any(double.IsFinite)) yield return "roads shared with other vehicles: no position; latitude and longitude would help";
-        foreach (var (channel, seconds) in frozen.OrderBy(f => f.Key)) yield return $"{channel} stood frozen for {Invariant(Math.Round(seconds))} s of driving and was left out there";
-        if (together < 0) yield return "signs: steering-wheel angle and yaw rate have opposite signs; one of the two is not positive to the left";
-        if (runs.Count > 0) yield break;
-        yield return stream.LaneKeepingSeconds > 0
-            ? "straight running: lane keeping steered during nearly all of it; driving with it off would help"
-            : "straight running: no steady straight stretch of 5 s above 50 km/h; a faster route would help";
+        var straight = runs.Sum(r => r.Seconds);
+        if (runs.Count > 0)
+        {
+            if (moving >= EnoughDrivingS && straight < LeastStraightShare * moving)
+                yield return "the road's share and the route's apart: hardly any of the driving is fast and straight, and what is lies in the same few places; another route now and then would help";
+            yield break;
+        }
+        if (!blocks.Has(SteeringChannel.Speed)) yield return "straight running: no speed; a speed channel would help";
+        else if (moving <= 0) yield return "straight running: the vehicle stood all the time; a log of driving would help";
+        else if (stream.LaneKeepingSeconds > 0) yield return "straight running: lane keeping steered during nearly all of it; driving with it off would help";
+        else if (!blocks.Has(SteeringChannel.YawRate) && !blocks.Has(SteeringChannel.SteeringWheelAngle)) yield return "straight running: neither yaw rate nor steering-wheel angle tells where the road is straight; a yaw rate channel would help";
+        else yield return "straight running: no steady straight stretch of 5 s above 50 km/h; a faster route would help";
     }
 }

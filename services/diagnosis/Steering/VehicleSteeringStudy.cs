@@ -31,6 +31,24 @@ public sealed record VehicleSteeringStudy
     public required IReadOnlyList<SteeringChannel> ChannelsPresent { get; init; }
     /// <summary>Seconds in which each channel stood frozen while the vehicle moved.</summary>
     public required IReadOnlyDictionary<SteeringChannel, double> FrozenS { get; init; }
+    /// <summary>Driving, s.</summary>
+    public double SecondsMoving { get; init; }
+    /// <summary>Turning left against right; null without yaw rate or speed.</summary>
+    public TurnDuty? Duty { get; init; }
+    /// <summary>Signs of the signals against the yaw rate.</summary>
+    public SignCheck Signs { get; init; } = new(SignVerdict.NotTold, SignVerdict.NotTold, SignVerdict.NotTold);
+    /// <summary>What was wrong with the rows.</summary>
+    public StreamFaults Faults { get; init; } = new();
+    /// <summary>Jolts that may have been a kerb, in order of time.</summary>
+    public IReadOnlyList<KerbStrikeCandidate> KerbStrikes { get; init; } = [];
+    /// <summary>Return to centre after turns; null where none ended in straight driving.</summary>
+    public ReturnToCentre? Return { get; init; }
+    /// <summary>Understeer gradient left and right; null without ratio, wheelbase or steady turns.</summary>
+    public UndersteerReading? Understeer { get; init; }
+    /// <summary>On-centre figures; null without a weave-like stretch.</summary>
+    public OnCentre? OnCentre { get; init; }
+    /// <summary>Energy in the band of wheel hop; null below 40 Hz.</summary>
+    public WheelHop? WheelHop { get; init; }
     /// <summary>What could not be known, and which channel would make it so.</summary>
     public required IReadOnlyList<string> NotPossible { get; init; }
 
@@ -56,9 +74,32 @@ public sealed record VehicleSteeringStudy
             AngleAgainstYaw = streams.Select(s => s.AngleAgainstYaw).Order().Sum(),
             PullCompensation = streams.Any(s => s.PullCompensation),
             ChannelsPresent = streams.SelectMany(s => s.ChannelsPresent).Distinct().Order().ToArray(),
+            SecondsMoving = streams.Select(s => s.SecondsMoving).Order().Sum(),
+            Duty = TurnDuty.Sum(streams.Select(s => s.Duty)),
+            Signs = SignCheck.Join(streams.Select(s => s.Signs)),
+            Faults = StreamFaults.Sum([.. streams.Select(s => s.Faults)]),
+            KerbStrikes = [.. streams.SelectMany(s => s.KerbStrikes).OrderBy(k => k.At).ThenBy(k => k.Rests, StringComparer.Ordinal)],
+            Return = ReturnToCentre.Join(streams.Select(s => s.Return)),
+            Understeer = UndersteerReading.Join(streams.Select(s => s.Understeer)),
+            OnCentre = OnCentre.Join(streams.Select(s => s.OnCentre)),
+            WheelHop = WheelHop.Join(streams.Select(s => s.WheelHop)),
             FrozenS = streams.SelectMany(s => s.FrozenS).GroupBy(f => f.Key).OrderBy(g => g.Key).ToDictionary(g => g.Key, g => g.Select(f => f.Value).Order().Sum()),
-            NotPossible = streams.SelectMany(s => s.NotPossible).Distinct().Order(StringComparer.Ordinal).ToArray(),
+            NotPossible = NotPossibleOf(streams),
         };
+    }
+
+    /// <summary>
+    /// What one trip lacked another may have had: a line stays where half of the streams say it, that there was no straight running where
+    /// none had any, and what a vehicle is wired or programmed to do where any stream shows it. Faults are told once, in sum.
+    /// </summary>
+    private static string[] NotPossibleOf(IReadOnlyCollection<VehicleSteeringStudy> streams)
+    {
+        var said = streams.SelectMany(s => s.NotPossible.Except(s.Faults.Sentences())).GroupBy(line => line);
+        var ran = streams.Any(s => s.SecondsStraight > 0);
+        bool Stays(string line, int times) =>
+            line.StartsWith(StreamStudy.SignsWords, StringComparison.Ordinal) || line.Contains(StreamStudy.CompensationWords, StringComparison.Ordinal)
+            || (line.StartsWith(StreamStudy.StraightWords, StringComparison.Ordinal) ? !ran : 2 * times >= streams.Count);
+        return [.. said.Where(g => Stays(g.Key, g.Count())).Select(g => g.Key).Order(StringComparer.Ordinal), .. StreamFaults.Sum([.. streams.Select(s => s.Faults)]).Sentences()];
     }
 
     private static double? Total(IEnumerable<double?> parts)

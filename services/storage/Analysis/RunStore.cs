@@ -181,6 +181,21 @@ public sealed class RunStore(NpgsqlDataSource analysis)
         return [.. (await connection.QueryAsync<string>(Command(StudiesSql, null, null, cancel))).Select(FactJson.Read<VehicleSteeringStudy>)];
     }
 
+    // Served by reduction_vehicle, once a depot.
+    private const string StudiesOfSql = """
+        SELECT study::text FROM analysis.reduction
+        WHERE depot = ANY(@depots) AND vehicle_id = @vehicle AND study IS NOT NULL
+        ORDER BY depot, stream_id
+        """;
+
+    /// <summary>What the streams of one vehicle told beside their runs, put together; null without a stream.</summary>
+    public async Task<VehicleSteeringStudy?> StudyOf(string vehicleId, string[] depots, CancellationToken cancel)
+    {
+        await using var connection = await analysis.OpenConnectionAsync(cancel);
+        var studies = (await connection.QueryAsync<string>(Command(StudiesOfSql, new { vehicle = vehicleId, depots }, null, cancel))).Select(FactJson.Read<VehicleSteeringStudy>).ToArray();
+        return studies.Length == 0 ? null : VehicleSteeringStudy.Of(studies);
+    }
+
     private static CommandDefinition Command(string sql, object? parameters, NpgsqlTransaction? transaction, CancellationToken cancel) =>
         new(sql, parameters, transaction, TimeoutSeconds, cancellationToken: cancel);
 }

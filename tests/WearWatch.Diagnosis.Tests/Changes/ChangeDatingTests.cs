@@ -79,6 +79,16 @@ public class ChangeDatingTests
         Assert.InRange(held / (double)found, 0.84, 0.96);
     }
 
+    [Fact]
+    public void A_level_whose_halves_disagree_widens_the_interval_of_the_size()
+    {
+        var series = new SteeringHistory(21) { StepAtDay = 353, Step = 2 }.Make();
+        // Too small to be cut: a tyre's share, half way before the step.
+        var wandering = series with { Readings = [.. series.Readings.Select(r => r.At >= s_first.AddDays(175) && r.At < s_first.AddDays(353) ? r with { Value = r.Value + 0.2 } : r)] };
+        var (still, moved) = (Only(series).Size, Only(wandering).Size);
+        Assert.InRange(moved.StandardError / still.StandardError, 1.1, 2.5);
+    }
+
     // What the penalty promises: at most 0.2 false changes a vehicle-year, and a vehicle has two steering series.
     [Theory]
     [InlineData(7, 0, 0)]

@@ -5,7 +5,7 @@ namespace WearWatch.Proving;
 /// <summary>The command line.</summary>
 internal sealed record Options
 {
-    public const string Usage = "prove verdict|tread|steering [--seeds N=10] [--first SEED=101] [--vehicles N=100] [--max-samples N=3000000] [--at-once N=2] [--json] [--keep DIR] | prove ... --again DIR [--json]";
+    public const string Usage = "prove verdict|tread|steering [--seeds N=10] [--first SEED=101] [--vehicles N=100] [--max-samples N=3000000] [--at-once N=2] [--no-crown] [--json] [--keep DIR] | prove ... --again DIR [--stored] [--json]";
 
     public static readonly string[] Parts = ["verdict", "tread", "steering"];
 
@@ -17,10 +17,14 @@ internal sealed record Options
     /// <summary>Fleets worked on side by side.</summary>
     public int AtOnce { get; init; } = Math.Min(2, Environment.ProcessorCount);
     public bool Json { get; init; }
+    /// <summary>For steering: simulate each fleet a second time on flat roads, which crown_removed needs.</summary>
+    public bool Crown { get; init; } = true;
     /// <summary>Folder in which databases and truths stay; a temporary one, removed at the end, where null.</summary>
     public string? Keep { get; init; }
     /// <summary>Folder kept earlier, to be analysed and scored anew.</summary>
     public string? Again { get; init; }
+    /// <summary>With <see cref="Again"/>: score the diagnoses as they are stored, without analysing anew.</summary>
+    public bool Stored { get; init; }
     /// <summary>The product's command and the simulator; beside this program where not given.</summary>
     public string Product { get; init; } = Path.Combine(AppContext.BaseDirectory, "wearwatch.dll");
     public string Simulator { get; init; } = Path.Combine(AppContext.BaseDirectory, "simulator.dll");
@@ -35,6 +39,16 @@ internal sealed record Options
             if (args[i] == "--json")
             {
                 options = options with { Json = true };
+                continue;
+            }
+            if (args[i] == "--stored")
+            {
+                options = options with { Stored = true };
+                continue;
+            }
+            if (args[i] == "--no-crown")
+            {
+                options = options with { Crown = false };
                 continue;
             }
             var (name, value) = args[i].Split('=', 2) is [var n, var v] ? (n, v) : (args[i], i + 1 < args.Length ? args[++i] : throw new ArgumentException($"{args[i]} lacks its value"));
@@ -53,6 +67,7 @@ internal sealed record Options
             };
         }
         if (options is { Keep: not null, Again: not null }) throw new ArgumentException("--keep and --again exclude one another: what is scored again stays");
+        if (options is { Stored: true, Again: null }) throw new ArgumentException("--stored goes with --again");
         if (options.Again is { } kept && !Directory.Exists(kept)) throw new ArgumentException($"--again: {kept} is not there");
         return options;
     }

@@ -36,7 +36,7 @@ internal static class SteeringFigures
             Main =
             [
                 .. Intervals(steered),
-                ("crown_removed", Figure.Unknown),
+                .. Crown(steered),
                 .. Changes(steered),
                 ("changes_found_20_runs_a_week", Found([.. steered.Where(c => WeeklyRuns(c) >= RunsAWeek)])),
                 ("median_runs_a_week", Bootstrap.Of(steered, l => Scores.Median(l.Select(WeeklyRuns)))),
@@ -75,6 +75,39 @@ internal static class SteeringFigures
             ($"{name}_median_width_{unit}", Bootstrap.Of(answers, l => Scores.Median(l.Select(a => a.High - a.Low)))),
             ($"{name}_median_error_{unit}", Bootstrap.Of(answers, l => Scores.Median(l.Select(a => Math.Abs(a.Value - a.Truth))))),
         ];
+    }
+
+    /// <summary>
+    /// 1 − RMS of what taking the bank off the roads does to the product's figure ÷ the same of the raw mean, over vehicles
+    /// that log lateral acceleration or position; pull and off-centre angle together as the root mean square of both ratios.
+    /// </summary>
+    private static FigureList Crown(IReadOnlyList<Case> cases)
+    {
+        var seen = cases.Where(c => c.Plain.RoadLogged && c.OnFlatRoads is not null).ToList();
+        static bool HasPull(Case c) => Moved(c, PullOf) is not null && Moved(c, RawPull) is not null;
+        static bool HasAngle(Case c) => Moved(c, AngleOf) is not null && Moved(c, RawAngle) is not null;
+        static double Left(IEnumerable<Case> l, Func<Case, double?> said, Func<Case, double?> raw) => Rms(l.Select(c => Moved(c, said)!.Value)) / Rms(l.Select(c => Moved(c, raw)!.Value));
+        static double PullLeft(IEnumerable<Case> l) => Left(l.Where(HasPull), PullOf, RawPull);
+        static double AngleLeft(IEnumerable<Case> l) => Left(l.Where(HasAngle), AngleOf, RawAngle);
+        return
+        [
+            ("crown_removed", Bootstrap.Of([.. seen.Where(c => HasPull(c) || HasAngle(c))], l => 1 - Rms(new[] { PullLeft(l), AngleLeft(l) }.Where(r => !double.IsNaN(r))))),
+            ("crown_removed_steering_pull", Bootstrap.Of([.. seen.Where(HasPull)], l => 1 - PullLeft(l))),
+            ("crown_removed_off_centre", Bootstrap.Of([.. seen.Where(HasAngle)], l => 1 - AngleLeft(l))),
+        ];
+    }
+
+    private static double? PullOf(Case c) => c.Diagnosis?.SteeringPull?.Value;
+    private static double? AngleOf(Case c) => c.Diagnosis?.OffCentreAngle?.Value;
+    private static double? RawPull(Case c) => (c.Truth.AssistMeasured ? c.Plain.TorqueWithAssistNm : c.Plain.TorqueNm)?.Value;
+    private static double? RawAngle(Case c) => c.Plain.AngleDeg?.Value;
+
+    private static double? Moved(Case c, Func<Case, double?> figure) => figure(c) - figure(c.OnFlatRoads!);
+
+    private static double Rms(IEnumerable<double> values)
+    {
+        var known = values.ToArray();
+        return known.Length == 0 ? double.NaN : Math.Sqrt(known.Average(v => v * v));
     }
 
     /// <summary>At the column where assist torque was logged with the driver's, else the driver's part alone.</summary>

@@ -17,6 +17,7 @@ internal static class PlainFolder
         var bench = Rows(folder, "workshop_records").ToLookup(w => w["vehicle_id"], w => DateOnly.FromDateTime(Time(w["at"])));
         var streams = Rows(folder, "steering_streams").ToLookup(s => s["vehicle_id"], s => Path.Combine(folder, s["file"]));
         var newton = Rows(folder, "steering_channels").Where(c => c["channel"] == "driver_torque" && c["unit"] == "N·m").Select(c => c["vehicle_id"]).ToHashSet();
+        var road = Rows(folder, "steering_channels").Where(c => c["channel"] is "lateral_acceleration" or "latitude").Select(c => c["vehicle_id"]).ToHashSet();
         return Rows(folder, "vehicles").Select(v => v["vehicle_id"]).Distinct().ToDictionary(id => id, id =>
         {
             var own = surveys.GetValueOrDefault(id, []);
@@ -28,6 +29,7 @@ internal static class PlainFolder
                 TorqueWithAssistNm = newton.Contains(id) ? Mean(trips.Select(t => t.Torque + t.Assist)) : null,
                 AngleDeg = Mean(trips.Select(t => t.Angle)),
                 DaysSinceAlignment = end.DayNumber - bench[id].DefaultIfEmpty(from.AddDays(-1)).Max().DayNumber,
+                RoadLogged = road.Contains(id),
                 Tyres = Tyres(id, own, readings, fittings),
             };
         });

@@ -13,6 +13,8 @@ internal sealed record PlainVehicle
     public PlainMean? AngleDeg { get; init; }
     /// <summary>Days since the bench last saw it; those of the window plus one where it did not.</summary>
     public int DaysSinceAlignment { get; init; }
+    /// <summary>Lateral acceleration or position is logged, so that the road's bank could be known.</summary>
+    public bool RoadLogged { get; init; }
     public IReadOnlyList<PlainTyre> Tyres { get; init; } = [];
 }
 

@@ -17,6 +17,8 @@ internal sealed record Case
     /// <summary>Place in the worklist, from 1; last where it is not listed.</summary>
     public required int Rank { get; init; }
     public required PlainVehicle Plain { get; init; }
+    /// <summary>The same vehicle of the same seed with the bank taken off its logged trips; null where no such fleet was made.</summary>
+    public Case? OnFlatRoads { get; init; }
     /// <summary>What the door asked about a survey when it was imported.</summary>
     public required IReadOnlyDictionary<string, string> Asked { get; init; }
 

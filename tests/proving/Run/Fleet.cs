@@ -9,11 +9,12 @@ namespace WearWatch.Proving.Run;
 /// One fleet in a folder of its own. The simulator writes an import folder and, outside it, the truth; the product imports
 /// the folder through its door and analyses it; the truth is read only afterwards, to score.
 /// </summary>
-internal sealed class Fleet(ulong seed, string folder, Options options, Action<string> progress)
+internal sealed class Fleet(ulong seed, string folder, bool flat, Options options, Action<string> progress)
 {
     /// <summary>Exit code of an import that refused some rows; the simulator plants such rows.</summary>
     private const int SomethingRefused = 1;
 
+    private string On => flat ? " on flat roads" : "";
     private string Import => Path.Combine(folder, "import");
     private string TruthFile => Path.Combine(folder, "truth.json");
     private string PlainFile => Path.Combine(folder, "plain.json");
@@ -36,7 +37,7 @@ internal sealed class Fleet(ulong seed, string folder, Options options, Action<s
             var analysed = Lap(watch);
             Directory.Delete(Import, recursive: true);
             var cases = await Read(product, cancel);
-            progress($"seed {seed}: simulated in {simulated:0} s, imported and analysed in {analysed:0} s, read in {Lap(watch):0} s");
+            progress($"seed {seed}{On}: simulated in {simulated:0} s, imported and analysed in {analysed:0} s, read in {Lap(watch):0} s");
             return cases;
         }
     }
@@ -45,10 +46,10 @@ internal sealed class Fleet(ulong seed, string folder, Options options, Action<s
     public async Task<IReadOnlyList<Case>> Again(CancellationToken cancel)
     {
         var watch = Stopwatch.StartNew();
-        await using var product = await Product.Start(options.Product, Data, forget: true, cancel);
+        await using var product = await Product.Start(options.Product, Data, forget: !options.Stored, cancel);
         await product.Analysed(cancel);
         var cases = await Read(product, cancel);
-        progress($"seed {seed}: analysed again and read in {Lap(watch):0} s");
+        progress($"seed {seed}{On}: {(options.Stored ? "read" : "analysed again and read")} in {Lap(watch):0} s");
         return cases;
     }
 
@@ -61,7 +62,7 @@ internal sealed class Fleet(ulong seed, string folder, Options options, Action<s
 
     private async Task Simulate(CancellationToken cancel)
     {
-        await using (var simulator = Child.Start(options.Simulator, null, "--out", Import, "--truth", TruthFile, "--seed", $"{seed}", "--vehicles", $"{options.Vehicles}", "--max-samples", $"{options.MaxSamples}"))
+        await using (var simulator = Child.Start(options.Simulator, null, "--out", Import, "--truth", TruthFile, "--seed", $"{seed}", "--vehicles", $"{options.Vehicles}", "--max-samples", $"{options.MaxSamples}", "--trips", flat ? "flat" : "banked"))
             await simulator.Done(code => code == 0, cancel);
         var truth = Truth.Read(TruthFile);
         File.WriteAllText(PlainFile, JsonSerializer.Serialize(PlainFolder.Read(Import, truth.From, truth.End)));

@@ -1,6 +1,7 @@
 using System.Diagnostics;
 using System.Globalization;
 using System.Text.Json;
+using Google.Protobuf;
 using WearWatch.Proving.Plain;
 
 namespace WearWatch.Proving.Run;
@@ -92,6 +93,8 @@ internal sealed class Fleet(ulong seed, string folder, bool flat, Options option
                 Asked = asked,
             });
         }
+        // For whoever wants to see what lies behind a figure.
+        File.WriteAllText(Path.Combine(folder, "diagnoses.json"), $"[{string.Join(",\n", cases.Where(c => c.Diagnosis is not null).Select(c => JsonFormatter.Default.Format(c.Diagnosis)))}]\n");
         return cases;
     }
 

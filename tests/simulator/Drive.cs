@@ -35,6 +35,12 @@ public sealed class Drive
         return drive;
     }
 
+    /// <summary>Takes the bank off.</summary>
+    public void Flatten()
+    {
+        for (var i = 0; i < Bank.Count; i++) Bank[i] = 0;
+    }
+
     private double Add(Road road, bool forward, int roadSide, double cruiseKmH, double heading, RandomStream random)
     {
         int Index(int i) => forward ? i : road.Points - 1 - i;

@@ -3,6 +3,9 @@ namespace WearWatch.Simulator;
 /// <summary>The arguments of a fleet.</summary>
 public sealed record Scenario(ulong Seed, int Vehicles, int Weeks, long MaxSamples, DateOnly End)
 {
+    /// <summary>Logged trips run on roads without any bank; everything else is the same as with it.</summary>
+    public bool FlatTrips { get; init; }
+
     public int Days => Weeks * 7;
     /// <summary>First day of the window; the last day of it is <see cref="End"/>.</summary>
     public DateOnly Start => End.AddDays(-Days);

@@ -1,7 +1,7 @@
 using System.Globalization;
 using WearWatch.Simulator;
 
-const string usage = "simulator --out FOLDER --truth FILE [--seed N=1] [--vehicles N=64] [--weeks N=26] [--max-samples N=6000000] [--end 2026-11-30]";
+const string usage = "simulator --out FOLDER --truth FILE [--seed N=1] [--vehicles N=64] [--weeks N=26] [--max-samples N=6000000] [--end 2026-11-30] [--trips banked|flat]";
 var given = new Dictionary<string, string>();
 for (var i = 0; i < args.Length; i += 2)
 {
@@ -10,7 +10,7 @@ for (var i = 0; i < args.Length; i += 2)
         Console.WriteLine(usage);
         return 0;
     }
-    if (args[i] is not ("--out" or "--truth" or "--seed" or "--vehicles" or "--weeks" or "--max-samples" or "--end") || i + 1 >= args.Length)
+    if (args[i] is not ("--out" or "--truth" or "--seed" or "--vehicles" or "--weeks" or "--max-samples" or "--end" or "--trips") || i + 1 >= args.Length)
         return Refuse($"'{args[i]}' is not an option or lacks its value");
     given[args[i]] = args[i + 1];
 }
@@ -21,11 +21,13 @@ if (!int.TryParse(given.GetValueOrDefault("--weeks", "26"), out var weeks) || we
 if (!long.TryParse(given.GetValueOrDefault("--max-samples", "6000000"), out var maxSamples) || maxSamples < 0) return Refuse("--max-samples: 0 or more");
 if (!DateOnly.TryParseExact(given.GetValueOrDefault("--end", "2026-11-30"), "yyyy-MM-dd", CultureInfo.InvariantCulture, DateTimeStyles.None, out var end))
     return Refuse("--end: a date such as 2026-11-30");
+var trips = given.GetValueOrDefault("--trips", "banked");
+if (trips is not ("banked" or "flat")) return Refuse("--trips: banked or flat");
 var inside = Path.GetFullPath(folder).TrimEnd(Path.DirectorySeparatorChar) + Path.DirectorySeparatorChar;
 if (Path.GetFullPath(truth).StartsWith(inside, StringComparison.Ordinal)) return Refuse("--truth must lie outside the import folder");
 if (Directory.Exists(folder) && Directory.EnumerateFileSystemEntries(folder).Any()) return Refuse($"{folder} is not empty");
 
-var scenario = new Scenario(seed, vehicles, weeks, maxSamples, end);
+var scenario = new Scenario(seed, vehicles, weeks, maxSamples, end) { FlatTrips = trips == "flat" };
 var (rows, histories) = new FolderWriter(scenario).Write(folder, truth);
 var misaligned = histories.Count(h => h.Vehicle.GeometryAt(scenario.Days).Angles(h.Vehicle.Type).Any(a => a.Ratio > 1));
 Console.WriteLine($"fleet of {vehicles} vehicles, {weeks} weeks to {end:yyyy-MM-dd}, seed {seed}");

@@ -3,6 +3,13 @@ namespace WearWatch.Simulator;
 /// <summary>A blunder or a refusal planted in one survey.</summary>
 public sealed record Planted(string Kind, string SurveyId, string? Note = null);
 
+/// <summary>One walk as it truly was.</summary>
+/// <param name="LeftRightErrors">
+/// How far left and right tyres differ, in standard errors of one reading of each groove: root of the sum of squares over
+/// pairs of grooves. A swap of sides below some 4 can hardly be seen.
+/// </param>
+public sealed record Taken(string SurveyId, int Day, double OdometerKm, int Axles, double LeftRightErrors);
+
 /// <summary>The walks round one vehicle, with what technicians get wrong.</summary>
 public sealed class TreadSurveys
 {
@@ -14,6 +21,7 @@ public sealed class TreadSurveys
     private int _count;
 
     public List<Planted> Planted { get; } = [];
+    public List<Taken> Walks { get; } = [];
     /// <summary>Days on which surveys are taken.</summary>
     public HashSet<int> Days { get; } = [];
 
@@ -53,6 +61,7 @@ public sealed class TreadSurveys
             blunder != "half_finished");
         var (places, pressures, rubs) = (_random.Chance(0.3) ? 3 : 1, _random.Chance(0.5), _random.Chance(0.6));
         if (_vehicle.CuppedPosition >= 0 && _random.Chance(0.6)) places = 3;
+        Walks.Add(new(id, day, odometerKm, reached, LeftRightErrors(technician, tyres, reached, places)));
         foreach (var p in _vehicle.Positions.Where(p => p.Axle < reached))
         {
             var name = Written(p, blunder);
@@ -64,6 +73,22 @@ public sealed class TreadSurveys
             Read(p, name, id, technician, tyres[p.Index], places, blunder == "unit_mix_up");
             Note(p, name, id, tyres[p.Index], pressures, rubs);
         }
+    }
+
+    private double LeftRightErrors(Technician technician, Tyre[] tyres, int reached, int places)
+    {
+        var step = technician.In32nds ? Technician.MmPer32nd : 0.1;
+        // Repeat and rounding of each place, and the groove's own deviation, on either side.
+        var variance = 2 * ((technician.RepeatMm * technician.RepeatMm + step * step / 12) / places + 0.05 * 0.05);
+        var grooves = _vehicle.Type.Grooves;
+        double sum = 0;
+        foreach (var left in _vehicle.Positions.Where(p => p.Left && p.Axle < reached))
+        {
+            var right = _vehicle.Positions.First(p => !p.Left && p.Axle == left.Axle && p.Dual == left.Dual);
+            for (var k = 0; k < grooves; k++)
+                sum += Math.Pow(tyres[left.Index].SmoothDepth(k, grooves) - tyres[right.Index].SmoothDepth(k, grooves), 2) / variance;
+        }
+        return Math.Sqrt(sum);
     }
 
     private double? Distance(double odometerKm, string id)

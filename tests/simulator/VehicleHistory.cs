@@ -94,6 +94,7 @@ public sealed class VehicleHistory
         var heavy = _v.Type.Class is VehicleClass.Truck or VehicleClass.Bus;
         var start = day + random.Between(0.4, 0.6);
         var drive = Simulator.Drive.Plan(_roads.Routes[route], loop, _v.Depot, _v.Type.CruiseKmH, rows / 10.0, heavy, random);
+        if (_s.FlatTrips) drive.Flatten();
         var load = random.Between(0.55, 1);
         var plan = new TripPlan
         {

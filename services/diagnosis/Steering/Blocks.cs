@@ -37,6 +37,8 @@ internal sealed class Blocks
 
     public bool Has(SteeringChannel channel) => _mean[(int)channel] is not null;
     public ReadOnlySpan<float> Mean(SteeringChannel channel) => _mean[(int)channel];
+    /// <summary>The means themselves, for those who ask for one block at a time; null without the channel.</summary>
+    public float[]? Means(SteeringChannel channel) => _mean[(int)channel];
     public ReadOnlySpan<float> Min(SteeringChannel channel) => _min[(int)channel];
     public ReadOnlySpan<float> Max(SteeringChannel channel) => _max[(int)channel];
     /// <summary>Coarsest step of the channel over the stream, in its unit.</summary>

@@ -20,11 +20,13 @@ internal sealed class GatedStream
     private const int LeastStraightBlocks = 60; // from memory: a minute of straight road
 
     private readonly int[] _mode;
+    private readonly float[]? _yaw;
 
     private GatedStream(Blocks blocks)
     {
         Blocks = blocks;
         _mode = new int[blocks.Count];
+        _yaw = blocks.Means(SteeringChannel.YawRate);
         Slope = SpeedSlope(blocks);
     }
 
@@ -41,7 +43,7 @@ internal sealed class GatedStream
     public void Drop(int block) => _mode[block] = NoRun;
 
     public float Yaw(int block) =>
-        Blocks.Has(SteeringChannel.YawRate) ? Blocks.Mean(SteeringChannel.YawRate)[block] - (float)YawBiasDegS : float.NaN;
+        _yaw is null ? float.NaN : _yaw[block] - (float)YawBiasDegS;
 
     public static GatedStream Of(Blocks blocks)
     {

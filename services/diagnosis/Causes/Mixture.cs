@@ -3,6 +3,10 @@ namespace WearWatch.Diagnosis.Causes;
 /// <summary>Posterior shares over pairs of (an angle out, or none) and (a look-alike, or none).</summary>
 public sealed class Mixture
 {
+    /// <summary>Share kept for what no story foresees, where the prior alone speaks: no verdict is ever certain (from memory).</summary>
+    private const double Unforeseen = 0.02;
+
+    private readonly double[,] _prior; // logarithm
     private readonly double[,] _log; // prior and likelihood of (angle, look-alike); last row: none, last column: none
     private readonly StoryFit?[,] _pairs;
     private readonly double _inOrder;
@@ -16,12 +20,13 @@ public sealed class Mixture
     {
         (Angles, Looks, _inOrder) = (angles, looks, inOrder);
         var (rows, columns) = (angles.Count + 1, looks.Count + 1);
-        (_log, _pairs) = (new double[rows, columns], new StoryFit?[rows, columns]);
+        (_prior, _log, _pairs) = (new double[rows, columns], new double[rows, columns], new StoryFit?[rows, columns]);
         var noLook = Math.Log(1 - Math.Min(0.9, looks.Sum(l => l.Story.Share)));
         for (var a = 0; a < rows; a++)
             for (var l = 0; l < columns; l++)
             {
                 var prior = Math.Log(a < angles.Count ? angles[a].Story.Share : 1 - misalignedShare) + (l < looks.Count ? Math.Log(looks[l].Story.Share) : noLook);
+                _prior[a, l] = prior;
                 _log[a, l] = prior + (a < angles.Count, l < looks.Count) switch
                 {
                     (true, true) => Bound(angles[a].Evidence, looks[l].Evidence, inOrder),
@@ -71,11 +76,11 @@ public sealed class Mixture
     private double[,] Shares()
     {
         if (_shares is not null) return _shares;
-        var total = StoryFit.LogSum([.. _log.Cast<double>()]);
+        var (total, before) = (StoryFit.LogSum([.. _log.Cast<double>()]), StoryFit.LogSum([.. _prior.Cast<double>()]));
         _shares = new double[_log.GetLength(0), _log.GetLength(1)];
         for (var a = 0; a < _log.GetLength(0); a++)
             for (var l = 0; l < _log.GetLength(1); l++)
-                _shares[a, l] = Math.Exp(_log[a, l] - total);
+                _shares[a, l] = (1 - Unforeseen) * Math.Exp(_log[a, l] - total) + Unforeseen * Math.Exp(_prior[a, l] - before);
         return _shares;
     }
 }

@@ -76,8 +76,13 @@ public sealed class SingleReadings
             sum += (damper ? Round(tyre, magnitude) : _roundInOrder[i]) + Cupped(tyre, damper, slip);
             var (before, after) = _model.Figures.Wear?.At(tyre.Position)?.ByOnset[onset] is { } dated ? (dated.Before, dated.After)
                 : (new Rubs(), new(tyre.RubsCatchingOutward, tyre.RubsCatchingInward, tyre.RubsCatchingNeither));
-            straight += Felt(after, slip, sd) + Felt(before, seen.SlipBefore[i].Mean, seen.SlipBefore[i].Sd);
-            swapped += Felt(after.Exchanged(), slip, sd) + Felt(before.Exchanged(), seen.SlipBefore[i].Mean, seen.SlipBefore[i].Sd);
+            // The same edge felt again is not new evidence in full, whichever side of the onset it was felt on.
+            var count = before.Count + after.Count;
+            if (count == 0) continue;
+            var weight = (1 + 0.4 * (count - 1)) / count;
+            var was = seen.SlipBefore[i];
+            straight += weight * (Felt(after, slip, sd) + Felt(before, was.Mean, was.Sd));
+            swapped += weight * (Felt(after.Exchanged(), slip, sd) + Felt(before.Exchanged(), was.Mean, was.Sd));
         }
         return sum + straight + Math.Log(1 - RubSwapped + RubSwapped * Math.Exp(swapped - straight));
     }
@@ -109,9 +114,7 @@ public sealed class SingleReadings
         var feltOutward = Normal.CDF(0, 1, (slip - RubThreshold) / spread);
         var feltInward = Normal.CDF(0, 1, (-slip - RubThreshold) / spread);
         double Noted(double felt) => Math.Log((1 - RubError) * Math.Max(0, felt) + RubError / 3);
-        var sum = rubs.Outward * Noted(feltOutward) + rubs.Inward * Noted(feltInward) + rubs.Neither * Noted(1 - feltOutward - feltInward);
-        // The same edge felt again is not new evidence in full.
-        return sum / rubs.Count * (1 + 0.4 * (rubs.Count - 1));
+        return rubs.Outward * Noted(feltOutward) + rubs.Inward * Noted(feltInward) + rubs.Neither * Noted(1 - feltOutward - feltInward);
     }
 
     private double Brake(Story? story)

@@ -18,6 +18,8 @@ public sealed class StoryWeigher
     private readonly BenchEvidence _bench;
     private readonly double[] _state, _priorSd, _ordinarySd;
     private readonly List<Branch>[] _inOrder; // by gain
+    private int _within = -1; // the angle in order that is gone through cell by cell, and the cells worth it
+    private int[] _withinCells = [];
 
     /// <summary>One choice of which readings are wild: log likelihood of the joint law, and the state as single readings see it.</summary>
     private sealed record Branch(double Log, StateSeen Seen, (double Mean, double Sd) LogSlipScale);
@@ -42,53 +44,58 @@ public sealed class StoryWeigher
         _ordinarySd = [.. model.Dimensions.Select(d => d.PriorSd)];
         (_state, _priorSd) = (new double[_ordinarySd.Length], [.. _ordinarySd]);
         _inOrder = [.. Enumerable.Range(0, JointGaussian.Gains.Count).Select(g => Branches(0, g))];
+        ChooseWithin();
     }
 
     /// <summary>Log likelihood of a vehicle with every angle in order and no look-alike worth naming.</summary>
     public double InOrder()
     {
         Place(null, 0, null);
-        var all = At(null, 0, 0).LogLikelihood;
-        // The Gaussian is linear about the target, wear is quadratic in slip: an angle near its tolerance wears more than that
-        // says. The angle for which that matters most is therefore gone through cell by cell, the others as they are.
-        var within = Enumerable.Range(0, _state.Length).Where(d => _model.Dimensions[d].Tolerance is not null).Select(d => (Dimension: d, Cells: Within(d)))
-            .DefaultIfEmpty((-1, [])).MaxBy(w => w.Cells.Length == 0 ? 0 : StoryFit.LogSum(w.Cells));
-        return within.Cells.Length == 0 ? all : Math.Max(all, InFull(within.Dimension, within.Cells));
+        return At(null, 0, 0).LogLikelihood + BeyondGaussian(null, 0, 0, null);
     }
 
-    private double InFull(int d, double[] nearly)
+    /// <summary>
+    /// The Gaussian is linear about the target, wear is quadratic in slip: an angle near its tolerance wears more than that
+    /// says. The angle for which that matters most on a sound vehicle is gone through cell by cell, the others as they are.
+    /// </summary>
+    private void ChooseWithin()
     {
-        var logs = new List<double>(nearly.Length);
-        for (var i = 0; i < nearly.Length; i++)
+        var top = 0.0;
+        for (var d = 0; d < _state.Length; d++)
         {
-            if (nearly[i] < nearly.Max() - FarBelow) continue;
-            PlaceWithin(d, i);
-            logs.Add(Math.Log(InOrderCells[i].Share) + At(null, 0, 0, d).LogLikelihood);
+            if (_model.Dimensions[d].Tolerance is null) continue;
+            var cells = new double[InOrderCells.Length];
+            for (var i = 0; i < cells.Length; i++) cells[i] = NearWithin(null, 0, 0, null, d, i);
+            var all = StoryFit.LogSum(cells);
+            if (_within >= 0 && all <= top) continue;
+            (_within, top) = (d, all);
+            _withinCells = [.. Enumerable.Range(0, cells.Length).Where(i => cells[i] >= cells.Max() - FarBelow)];
         }
-        return StoryFit.LogSum(logs);
+    }
+
+    /// <summary>
+    /// What the cells of that angle add to a story's log likelihood, at its best onset and magnitude. Every story gets it, not the
+    /// vehicle in order alone: otherwise a wheel near its tolerance would speak against whatever else may be wrong.
+    /// </summary>
+    private double BeyondGaussian(Story? story, double magnitude, int onset, Story? beside)
+    {
+        if (_within < 0 || story is { Moves.Count: 0 } || story?.Moves.Any(m => m.State == _within) == true) return 0;
+        Place(story, magnitude, beside);
+        var gaussian = Near(story, magnitude, onset);
+        return Math.Max(0, StoryFit.LogSum([.. _withinCells.Select(i => NearWithin(story, magnitude, onset, beside, _within, i))]) - gaussian);
+    }
+
+    private double NearWithin(Story? story, double magnitude, int onset, Story? beside, int d, int cell)
+    {
+        Place(story, magnitude, beside);
+        var tolerance = _model.Dimensions[d].Tolerance!.Value;
+        (_state[d], _priorSd[d]) = (InOrderCells[cell].Middle * tolerance, (InOrderCells[cell].High - InOrderCells[cell].Low) * tolerance / Math.Sqrt(12));
+        return Math.Log(InOrderCells[cell].Share) + Near(story, magnitude, onset, d);
     }
 
     /// <summary>Cells of an angle in order, in tolerances, with their shares of the truncated normal law.</summary>
     private static readonly Cell[] InOrderCells = [.. new (double Low, double High)[] { (-1, -0.8), (-0.8, -0.6), (-0.6, -0.35), (-0.35, 0.35), (0.35, 0.6), (0.6, 0.8), (0.8, 1) }
         .Select(c => new Cell(c.Low, c.High, (Normal.CDF(0, Sensitivities.InOrderSd, c.High) - Normal.CDF(0, Sensitivities.InOrderSd, c.Low)) / Math.Exp(LogPriorInside)))];
-
-    private double[] Within(int d)
-    {
-        var logs = new double[InOrderCells.Length];
-        for (var i = 0; i < logs.Length; i++)
-        {
-            PlaceWithin(d, i);
-            logs[i] = Math.Log(InOrderCells[i].Share) + Near(null, 0, 0, d);
-        }
-        return logs;
-    }
-
-    private void PlaceWithin(int d, int cell)
-    {
-        Place(null, 0, null);
-        var tolerance = _model.Dimensions[d].Tolerance!.Value;
-        (_state[d], _priorSd[d]) = (InOrderCells[cell].Middle * tolerance, (InOrderCells[cell].High - InOrderCells[cell].Low) * tolerance / Math.Sqrt(12));
-    }
 
     /// <summary>A story over all its magnitudes, and an angle over all its onsets (a look-alike has always been there).</summary>
     /// <param name="story">What.</param>
@@ -117,6 +124,9 @@ public sealed class StoryWeigher
             moved += (point.Log - nearly) / full.Length;
         }
         foreach (var point in points.Where(p => !p.InFull)) (point.Log, point.LogSlipScale) = (point.Log + moved, full[0].LogSlipScale);
+        var best = points.MaxBy(p => p.Log + p.Prior)!;
+        var beyond = BeyondGaussian(story, story.Cells[best.Cell].Middle, best.Onset, beside);
+        foreach (var point in points) point.Log += beyond;
         return Gather(story, points, onsets);
     }
 
@@ -163,12 +173,12 @@ public sealed class StoryWeigher
     }
 
     /// <summary>Sums over the gain and over which readings are wild.</summary>
-    private (double LogLikelihood, (double Mean, double Sd) LogSlipScale) At(Story? story, double magnitude, int onset, int within = -1)
+    private (double LogLikelihood, (double Mean, double Sd) LogSlipScale) At(Story? story, double magnitude, int onset)
     {
-        var ordinary = within < 0 && (story is null || story.Moves.Count == 0);
+        var ordinary = story is null || story.Moves.Count == 0;
         var (logs, scales) = (new List<double>(), new List<(double Mean, double Sd)>());
         for (var g = 0; g < _inOrder.Length; g++)
-            foreach (var branch in ordinary ? _inOrder[g] : Branches(onset, g, within))
+            foreach (var branch in ordinary ? _inOrder[g] : Branches(onset, g))
             {
                 logs.Add(JointGaussian.Gains[g].LogWeight + branch.Log + _single.LogLikelihood(story, magnitude, onset, branch.Seen));
                 scales.Add(branch.LogSlipScale);
@@ -188,11 +198,11 @@ public sealed class StoryWeigher
     /// Choices of wild readings along the worst ones: taking a reading as wild costs its small prior share, so that no
     /// single figure decides, and takes back what it had made of all other unknowns.
     /// </summary>
-    private List<Branch> Branches(int onset, int gain, int within = -1)
+    private List<Branch> Branches(int onset, int gain)
     {
         var branches = new List<Branch>(2);
         var joint = _joint[onset];
-        joint.At(_state, _priorSd, gain, fit => branches.Add(new Branch(fit.LogLikelihood + Inside(fit, within), See(joint, fit), joint.LogSlipScale())));
+        joint.At(_state, _priorSd, gain, fit => branches.Add(new Branch(fit.LogLikelihood + Inside(fit), See(joint, fit), joint.LogSlipScale())));
         return branches;
     }
 

@@ -51,7 +51,8 @@ public sealed class StoryWeigher
     public double InOrder()
     {
         Place(null, 0, null);
-        return At(null, 0, 0).LogLikelihood + BeyondGaussian(null, 0, 0, null);
+        var log = At(null, 0, 0).LogLikelihood;
+        return log + BeyondGaussian(null, 0, 0, null, log);
     }
 
     /// <summary>
@@ -65,7 +66,11 @@ public sealed class StoryWeigher
         {
             if (_model.Dimensions[d].Tolerance is null) continue;
             var cells = new double[InOrderCells.Length];
-            for (var i = 0; i < cells.Length; i++) cells[i] = NearWithin(null, 0, 0, null, d, i);
+            for (var i = 0; i < cells.Length; i++)
+            {
+                PlaceWithin(null, 0, null, d, i);
+                cells[i] = Math.Log(InOrderCells[i].Share) + Near(null, 0, 0, d);
+            }
             var all = StoryFit.LogSum(cells);
             if (_within >= 0 && all <= top) continue;
             (_within, top) = (d, all);
@@ -77,20 +82,21 @@ public sealed class StoryWeigher
     /// What the cells of that angle add to a story's log likelihood, at its best onset and magnitude. Every story gets it, not the
     /// vehicle in order alone: otherwise a wheel near its tolerance would speak against whatever else may be wrong.
     /// </summary>
-    private double BeyondGaussian(Story? story, double magnitude, int onset, Story? beside)
+    private double BeyondGaussian(Story? story, double magnitude, int onset, Story? beside, double gaussian)
     {
-        if (_within < 0 || story is { Moves.Count: 0 } || story?.Moves.Any(m => m.State == _within) == true) return 0;
-        Place(story, magnitude, beside);
-        var gaussian = Near(story, magnitude, onset);
-        return Math.Max(0, StoryFit.LogSum([.. _withinCells.Select(i => NearWithin(story, magnitude, onset, beside, _within, i))]) - gaussian);
+        if (_within < 0 || story?.Moves.Any(m => m.State == _within) == true) return 0;
+        return Math.Max(0, StoryFit.LogSum([.. _withinCells.Select(i =>
+        {
+            PlaceWithin(story, magnitude, beside, _within, i);
+            return Math.Log(InOrderCells[i].Share) + At(story, magnitude, onset, _within).LogLikelihood;
+        })]) - gaussian);
     }
 
-    private double NearWithin(Story? story, double magnitude, int onset, Story? beside, int d, int cell)
+    private void PlaceWithin(Story? story, double magnitude, Story? beside, int d, int cell)
     {
         Place(story, magnitude, beside);
         var tolerance = _model.Dimensions[d].Tolerance!.Value;
         (_state[d], _priorSd[d]) = (InOrderCells[cell].Middle * tolerance, (InOrderCells[cell].High - InOrderCells[cell].Low) * tolerance / Math.Sqrt(12));
-        return Math.Log(InOrderCells[cell].Share) + Near(story, magnitude, onset, d);
     }
 
     /// <summary>Cells of an angle in order, in tolerances, with their shares of the truncated normal law.</summary>
@@ -124,8 +130,8 @@ public sealed class StoryWeigher
             moved += (point.Log - nearly) / full.Length;
         }
         foreach (var point in points.Where(p => !p.InFull)) (point.Log, point.LogSlipScale) = (point.Log + moved, full[0].LogSlipScale);
-        var best = points.MaxBy(p => p.Log + p.Prior)!;
-        var beyond = BeyondGaussian(story, story.Cells[best.Cell].Middle, best.Onset, beside);
+        var best = full.MaxBy(p => p.Log + p.Prior)!;
+        var beyond = BeyondGaussian(story, story.Cells[best.Cell].Middle, best.Onset, beside, best.Log);
         foreach (var point in points) point.Log += beyond;
         return Gather(story, points, onsets);
     }
@@ -173,12 +179,12 @@ public sealed class StoryWeigher
     }
 
     /// <summary>Sums over the gain and over which readings are wild.</summary>
-    private (double LogLikelihood, (double Mean, double Sd) LogSlipScale) At(Story? story, double magnitude, int onset)
+    private (double LogLikelihood, (double Mean, double Sd) LogSlipScale) At(Story? story, double magnitude, int onset, int within = -1)
     {
-        var ordinary = story is null || story.Moves.Count == 0;
+        var ordinary = within < 0 && (story is null || story.Moves.Count == 0);
         var (logs, scales) = (new List<double>(), new List<(double Mean, double Sd)>());
         for (var g = 0; g < _inOrder.Length; g++)
-            foreach (var branch in ordinary ? _inOrder[g] : Branches(onset, g))
+            foreach (var branch in ordinary ? _inOrder[g] : Branches(onset, g, within))
             {
                 logs.Add(JointGaussian.Gains[g].LogWeight + branch.Log + _single.LogLikelihood(story, magnitude, onset, branch.Seen));
                 scales.Add(branch.LogSlipScale);
@@ -198,11 +204,11 @@ public sealed class StoryWeigher
     /// Choices of wild readings along the worst ones: taking a reading as wild costs its small prior share, so that no
     /// single figure decides, and takes back what it had made of all other unknowns.
     /// </summary>
-    private List<Branch> Branches(int onset, int gain)
+    private List<Branch> Branches(int onset, int gain, int within = -1)
     {
         var branches = new List<Branch>(2);
         var joint = _joint[onset];
-        joint.At(_state, _priorSd, gain, fit => branches.Add(new Branch(fit.LogLikelihood + Inside(fit), See(joint, fit), joint.LogSlipScale())));
+        joint.At(_state, _priorSd, gain, fit => branches.Add(new Branch(fit.LogLikelihood + Inside(fit, within), See(joint, fit), joint.LogSlipScale())));
         return branches;
     }
 

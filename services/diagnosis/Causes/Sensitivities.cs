@@ -31,11 +31,14 @@ public static class Sensitivities
     /// <summary>RMS slip of ordinary service, deg, and the spread of its logarithm between vehicles; prior from memory.</summary>
     public const double ServiceSlipDeg = 0.25, ServiceSlipSpread = 0.30;
 
-    /// <summary>Outboard less inboard shoulder over the mean, per unit of signed wear: 2/3 gives outer to inner 2 : 1 far out (from memory).</summary>
-    public const double EdgeShare = 2.0 / 3, EdgeSpread = 0.35;
+    /// <summary>Where the outermost grooves lie, share of the half width: what is read there is not yet the shoulder (common practice, no source).</summary>
+    private const double OuterGrooves = 0.72;
 
-    /// <summary>Outboard less inboard shoulder over the mean, per degree of camber (from memory).</summary>
-    public const double CamberEdgeShare = 0.32, CamberEdgeSpread = 0.45;
+    /// <summary>Outermost less innermost groove over the mean, per unit of signed wear: 2/3 at the shoulders gives outer to inner 2 : 1 far out (from memory).</summary>
+    public const double EdgeShare = OuterGrooves * 2.0 / 3, EdgeSpread = 0.35;
+
+    /// <summary>Outermost less innermost groove over the mean, per degree of camber; 0.32 at the shoulders (from memory).</summary>
+    public const double CamberEdgeShare = OuterGrooves * 0.32, CamberEdgeSpread = 0.45;
 
     /// <summary>Step of the rib edges at a slip of one service RMS, mm, and its spread (from memory).</summary>
     public const double FeatherMm = 0.40, FeatherSpread = 0.60;

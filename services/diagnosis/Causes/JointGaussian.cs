@@ -43,8 +43,8 @@ public sealed class JointGaussian
 
     // The system being worked on: information and its product with the best values, before the unknowns' own precision.
     private readonly double[] _data, _dataB;
-    private readonly double[] _upper, _inverse; // U of P + data = UᵀU and U⁻¹, row by row
-    private readonly double[] _b, _forward, _mean, _variance, _row;
+    private readonly NormalEquations _equations;
+    private readonly double[] _mean, _variance, _row;
     private readonly int[] _columns;
     private readonly Place[] _moved; // places as the state has them; only those it reaches are filled
     private readonly Row[] _rows; // single readings as the state has them
@@ -99,8 +99,8 @@ public sealed class JointGaussian
         _firstSurvey = _firstAxle + model.Positions.Max(x => x.Axle);
         _unknowns = _firstSurvey + _surveys;
         var p = _unknowns;
-        (_data, _dataB, _upper, _inverse) = (new double[p * p], new double[p], new double[p * p], new double[p * p]);
-        (_b, _forward, _mean, _variance, _row, _columns) = (new double[p], new double[p], new double[p], new double[p], new double[p], new int[p]);
+        (_data, _dataB, _equations) = (new double[p * p], new double[p], new(p));
+        (_mean, _variance, _row, _columns) = (new double[p], new double[p], new double[p], new int[p]);
         _moved = [.. _wear.Select(w => new Place(w.Evidence.Size, _firstSurvey))];
         _rows = [.. _single.Select(_ => new Row(_firstSurvey))];
         _reached = new bool[model.Positions.Count];
@@ -359,113 +359,21 @@ public sealed class JointGaussian
     private double Solve(ReadOnlySpan<double> priorSd, bool inFull)
     {
         var p = _unknowns;
-        _data.CopyTo(_upper, 0);
-        _dataB.CopyTo(_b, 0);
+        var (upper, b) = _equations.Start(_data, _dataB);
         for (var d = 0; d < States; d++)
         {
             if (priorSd[d] == _ordinarySd[d]) continue;
             var factor = priorSd[d] / _ordinarySd[d];
-            _b[d] *= factor;
-            for (var k = 0; k < d; k++) _upper[k * p + d] *= factor;
-            _upper[d * p + d] *= factor;
-            for (var k = d; k < p; k++) _upper[d * p + k] *= factor;
+            b[d] *= factor;
+            for (var k = 0; k < d; k++) upper[k * p + d] *= factor;
+            upper[d * p + d] *= factor;
+            for (var k = d; k < p; k++) upper[d * p + k] *= factor;
         }
-        for (var j = 0; j < _firstSurvey; j++) _upper[j * p + j] += 1;
+        for (var j = 0; j < _firstSurvey; j++) upper[j * p + j] += 1;
         for (var s = 0; s < _surveys; s++)
-            for (var t = s; t < _surveys; t++) _upper[(_firstSurvey + s) * p + _firstSurvey + t] += _sharedPrecision[s * _surveys + t];
-        var log = _log - 0.5 * Factor(p);
-        if (inFull)
-        {
-            Invert(p);
-            Posterior(p);
-            double explained = 0;
-            for (var j = 0; j < p; j++) explained += _b[j] * _mean[j];
-            return log + 0.5 * explained;
-        }
-        return log + 0.5 * Substitute(p);
-    }
-
-    /// <summary>Means by forward and backward substitution; returns bᵀ(UᵀU)⁻¹b.</summary>
-    private double Substitute(int p)
-    {
-        double square = 0;
-        for (var k = 0; k < p; k++)
-        {
-            var f = _b[k] / _upper[k * p + k];
-            _b[k] = f;
-            square += f * f;
-            if (f != 0) Subtract(_b.AsSpan(k + 1, p - k - 1), _upper.AsSpan(k * p + k + 1, p - k - 1), f);
-        }
-        for (var k = p - 1; k >= 0; k--)
-        {
-            var left = _b[k];
-            var row = _upper.AsSpan(k * p, p);
-            for (var j = k + 1; j < p; j++) left -= row[j] * _mean[j];
-            _mean[k] = left / row[k];
-        }
-        return square;
-    }
-
-    /// <summary>Cholesky factor in place, by rows, passing over zeros: tyres of different axles meet only in the last columns. Returns the log determinant.</summary>
-    private double Factor(int p)
-    {
-        double logDet = 0;
-        for (var m = 0; m < p; m++)
-        {
-            var pivot = _upper.AsSpan(m * p, p);
-            var root = Math.Sqrt(pivot[m]);
-            logDet += 2 * Math.Log(root);
-            for (var k = m; k < p; k++) pivot[k] /= root;
-            for (var j = m + 1; j < p; j++)
-                if (pivot[j] != 0) Subtract(_upper.AsSpan(j * p + j, p - j), pivot[j..], pivot[j]);
-        }
-        return logDet;
-    }
-
-    private void Invert(int p)
-    {
-        Array.Clear(_inverse);
-        for (var k = 0; k < p; k++)
-        {
-            var row = _inverse.AsSpan(k * p, p);
-            row[k] = 1;
-            for (var m = k; m < p; m++)
-            {
-                if (row[m] == 0) continue;
-                row[m] /= _upper[m * p + m];
-                Subtract(row[(m + 1)..], _upper.AsSpan(m * p + m + 1, p - m - 1), row[m]);
-            }
-        }
-    }
-
-    private void Posterior(int p)
-    {
-        Forward(p, _b);
-        for (var k = 0; k < p; k++)
-        {
-            double mean = 0, variance = 0;
-            for (var j = k; j < p; j++)
-            {
-                var w = _inverse[k * p + j];
-                mean += w * _forward[j];
-                variance += w * w;
-            }
-            (_mean[k], _variance[k]) = (mean, variance);
-        }
-    }
-
-    /// <summary>U⁻ᵀ times a column.</summary>
-    private void Forward(int p, ReadOnlySpan<double> column)
-    {
-        Array.Clear(_forward);
-        for (var k = 0; k < p; k++)
-            if (column[k] != 0) Subtract(_forward.AsSpan(k), _inverse.AsSpan(k * p + k, p - k), -column[k]);
-    }
-
-    private static void Subtract(Span<double> from, ReadOnlySpan<double> row, double factor)
-    {
-        row = row[..from.Length];
-        for (var i = 0; i < from.Length; i++) from[i] -= factor * row[i];
+            for (var t = s; t < _surveys; t++) upper[(_firstSurvey + s) * p + _firstSurvey + t] += _sharedPrecision[s * _surveys + t];
+        var log = _log - 0.5 * _equations.Factor();
+        return log + 0.5 * (inFull ? _equations.Posterior(_mean, _variance) : _equations.Means(_mean));
     }
 
     /// <summary>The reading, or the place's wear, that the rest predicts worst.</summary>
@@ -484,7 +392,7 @@ public sealed class JointGaussian
     /// <summary>Log density of a reading given all others (leave-one-out of a Gaussian).</summary>
     private double SingleFits(int r, ReadOnlySpan<double> priorSd)
     {
-        double reach = 0, fitted = 0;
+        double reach, fitted = 0;
         Array.Clear(_row);
         for (var c = 0; c < _firstSurvey; c++)
         {
@@ -496,8 +404,7 @@ public sealed class JointGaussian
         }
         var left = _rows[r].Residual - fitted;
         if (left * left < 1) return double.PositiveInfinity; // a reading that fits this well is not wild
-        Forward(_unknowns, _row);
-        foreach (var f in _forward) reach += f * f;
+        reach = _equations.Reach(_row);
         var variance = _single[r].Variance / Math.Max(1e-9, 1 - reach);
         return LogNormal(left / Math.Sqrt(_single[r].Variance) * variance, variance);
     }

@@ -124,13 +124,28 @@ public sealed class SingleReadings
         return Guarded(pull, 0, (story?.Quantity == Quantity.Drag ? BrakeDragNm : BrakeRestNm) * share, 4 * share);
     }
 
+    /// <summary>Share of a fault by which the present weeks exceed those before.</summary>
+    private static double Grown(SteeringFigures steering, double daysAgo)
+    {
+        var earliest = Math.Max(steering.EarliestDaysAgo ?? 180, SteeringFigures.PresentDays + 1);
+        return Math.Min(1, daysAgo / SteeringFigures.PresentDays) - Math.Clamp((daysAgo - SteeringFigures.PresentDays) / (earliest - SteeringFigures.PresentDays), 0, 1);
+    }
+
+    /// <summary>Whether two onsets predict the same of what steering changed by and of the hands that felt the tread.</summary>
+    public bool SameAround(int a, int b)
+    {
+        var (aDays, bDays) = (Onsets.DaysAgo[a], Onsets.DaysAgo[b]);
+        var steers = !_model.IsTrailer && _model.Figures.Steering is { } steering && (Grown(steering, aDays) != Grown(steering, bDays) || Math.Min(aDays, bDays) < SteeringFigures.PresentDays);
+        return !steers && _model.Positions.All(p => _model.Figures.Wear?.At(p)?.ByOnset is not { } dated
+            || (dated[a].Before == dated[b].Before && dated[a].After == dated[b].After));
+    }
+
     /// <summary>What changed between the weeks before and the present ones: what began since shows with the share of either that it was there.</summary>
     private double Changes(Story? story, double magnitude, double daysAgo)
     {
         if (_model.IsTrailer || _model.Figures.Steering is not { } steering) return 0;
         var share = Math.Max(0.3, _model.AssistShare);
-        var earliest = Math.Max(steering.EarliestDaysAgo ?? 180, SteeringFigures.PresentDays + 1);
-        var grown = Math.Min(1, daysAgo / SteeringFigures.PresentDays) - Math.Clamp((daysAgo - SteeringFigures.PresentDays) / (earliest - SteeringFigures.PresentDays), 0, 1);
+        var grown = Grown(steering, daysAgo);
         return Change(steering.OffCentreChangeDeg, _model.WheelAngle, AngleDriftDeg, 6) + Change(steering.SteeringPullChangeNm, _model.Torque, TorqueDriftNm * share, 2 * share);
 
         double Change(Estimate? change, double[] map, double drift, double wild)

@@ -8,18 +8,29 @@ public sealed class StoryWeigher
 {
     /// <summary>Log likelihood below the story's best at which an onset and a magnitude no longer matter, and how many are weighed in full.</summary>
     private const double FarBelow = 8;
-    private const int MostInFull = 10;
+    private const int MostInFull = 6;
+
+    /// <summary>Log likelihood that the cells of an angle in order must add on a sound vehicle, to be gone through for every story.</summary>
+    private const double WorthCells = 0.05;
+
+    /// <summary>Log likelihood below the story's best at which the magnitudes between two are not looked at.</summary>
+    private const double Negligible = 14;
+
+    /// <summary>Log odds against a story, nearly weighed, below which weighing it in full would change nothing that is shown.</summary>
+    private const double HardlyMatters = 9;
 
     private static readonly double LogPriorInside = Math.Log(1 - 2 * Normal.CDF(0, 1, -1 / Sensitivities.InOrderSd));
 
     private readonly VehicleModel _model;
     private readonly JointGaussian[] _joint; // by onset
+    private readonly int[] _asOnset; // the first onset around which the readings say the same
     private readonly SingleReadings _single;
     private readonly BenchEvidence _bench;
     private readonly double[] _state, _priorSd, _ordinarySd;
     private readonly List<Branch>[] _inOrder; // by gain
     private int _within = -1; // the angle in order that is gone through cell by cell, and the cells worth it
     private int[] _withinCells = [];
+    private readonly double _nearlyInOrder, _inOrderMoved; // a sound vehicle weighed nearly, and what weighing it in full adds
 
     /// <summary>One choice of which readings are wild: log likelihood of the joint law, and the state as single readings see it.</summary>
     private sealed record Branch(double Log, StateSeen Seen, (double Mean, double Sd) LogSlipScale);
@@ -38,22 +49,24 @@ public sealed class StoryWeigher
         // Where nothing is dated a fault has always been there.
         var dated = model.Figures.Wear is not null || model.Figures.Steering?.EarliestDaysAgo is not null;
         IReadOnlyList<WearObservable>[] wear = [.. Enumerable.Range(0, dated ? Onsets.DaysAgo.Count : 1).Select(o => Observables.Wear(model, o))];
-        _joint = [.. wear.Select((_, o) => new JointGaussian(model, wear, o))];
         _single = new SingleReadings(model);
+        _asOnset = [.. wear.Select((_, o) => Enumerable.Range(0, o).Append(o).First(before => before == o || Same(wear, before, o)))];
+        _joint = new JointGaussian[wear.Length];
+        for (var o = 0; o < wear.Length; o++) _joint[o] = _asOnset[o] == o ? new JointGaussian(model, wear, o) : _joint[_asOnset[o]];
         _bench = new BenchEvidence(model);
         _ordinarySd = [.. model.Dimensions.Select(d => d.PriorSd)];
         (_state, _priorSd) = (new double[_ordinarySd.Length], [.. _ordinarySd]);
         _inOrder = [.. Enumerable.Range(0, JointGaussian.Gains.Count).Select(g => Branches(0, g))];
         ChooseWithin();
+        Place(null, 0, null);
+        var (nearly, full) = (Near(null, 0, 0), At(null, 0, 0).LogLikelihood);
+        var beyond = BeyondGaussian(null, 0, 0, null, full);
+        if (beyond < WorthCells) _within = -1;
+        (_nearlyInOrder, _inOrderMoved) = (nearly, full + beyond - nearly);
     }
 
     /// <summary>Log likelihood of a vehicle with every angle in order and no look-alike worth naming.</summary>
-    public double InOrder()
-    {
-        Place(null, 0, null);
-        var log = At(null, 0, 0).LogLikelihood;
-        return log + BeyondGaussian(null, 0, 0, null, log);
-    }
+    public double InOrder() => _nearlyInOrder + _inOrderMoved;
 
     /// <summary>
     /// The Gaussian is linear about the target, wear is quadratic in slip: an angle near its tolerance wears more than that
@@ -74,7 +87,7 @@ public sealed class StoryWeigher
             var all = StoryFit.LogSum(cells);
             if (_within >= 0 && all <= top) continue;
             (_within, top) = (d, all);
-            _withinCells = [.. Enumerable.Range(0, cells.Length).Where(i => cells[i] >= cells.Max() - FarBelow)];
+            _withinCells = [.. Enumerable.Range(0, cells.Length).Where(i => cells[i] >= cells.Max() - FarBelow / 2)];
         }
     }
 
@@ -110,17 +123,52 @@ public sealed class StoryWeigher
     public StoryFit Weigh(Story story, Story? beside = null)
     {
         var onsets = story.IsAngle ? _joint.Length : 1;
-        var points = new List<Point>(onsets * story.Cells.Count);
-        for (var o = 0; o < onsets; o++)
-            for (var i = 0; i < story.Cells.Count; i++)
-            {
-                Place(story, story.Cells[i].Middle, beside);
-                points.Add(new Point(o, i, Math.Log(story.Cells[i].Share) + (onsets > 1 ? Math.Log(Onsets.Shares[o]) : 0)) { Log = Near(story, story.Cells[i].Middle, o) });
-            }
+        var points = Nearly(story, beside, onsets);
         points.Sort((x, y) => (y.Log + y.Prior).CompareTo(x.Log + x.Prior));
+        if (Math.Log(story.Share) + StoryFit.LogSum(points.Select(p => p.Log + p.Prior)) < _nearlyInOrder - HardlyMatters)
+            foreach (var point in points) (point.Log, point.LogSlipScale) = (point.Log + _inOrderMoved, _inOrder[JointGaussian.MiddleGain][0].LogSlipScale);
+        else InFull(story, beside, points);
+        return Gather(story, points, onsets);
+    }
+
+    /// <summary>
+    /// Every onset and magnitude nearly. Onsets around which nothing else was read share their values; every third magnitude is
+    /// looked at first, and those between only where one of their neighbours comes near the best.
+    /// </summary>
+    private List<Point> Nearly(Story story, Story? beside, int onsets)
+    {
+        var cells = story.Cells.Count;
+        Point[] points = [.. Enumerable.Range(0, onsets * cells).Select(at =>
+            new Point(at / cells, at % cells, Math.Log(story.Cells[at % cells].Share) + (onsets > 1 ? Math.Log(Onsets.Shares[at / cells]) : 0)))];
+        var best = double.NegativeInfinity;
+        foreach (var coarse in (bool[])[true, false])
+            foreach (var point in points)
+            {
+                if (_asOnset[point.Onset] != point.Onset || Coarse(point.Cell) != coarse) continue;
+                var at = point.Onset * cells + point.Cell;
+                if (!coarse)
+                {
+                    var (low, high) = (points[at - point.Cell + Below(point.Cell)].Log, points[at - point.Cell + Above(point.Cell)].Log);
+                    point.Log = Math.Max(low, high);
+                    if (point.Log < best - Negligible) continue;
+                }
+                Place(story, story.Cells[point.Cell].Middle, beside);
+                point.Log = Near(story, story.Cells[point.Cell].Middle, point.Onset);
+                best = Math.Max(best, point.Log);
+            }
+        foreach (var point in points) point.Log = points[_asOnset[point.Onset] * cells + point.Cell].Log;
+        return [.. points];
+
+        bool Coarse(int cell) => cells <= 6 || cell % 3 == 0 || cell == cells - 1 || cell == cells / 2 - 1 || cell == cells / 2;
+        int Below(int cell) => Enumerable.Range(0, cell).Last(Coarse);
+        int Above(int cell) => Enumerable.Range(cell, cells - cell).First(Coarse);
+    }
+
+    private void InFull(Story story, Story? beside, List<Point> points)
+    {
         var least = points[0].Log + points[0].Prior - FarBelow;
-        double moved = 0;
-        var full = points.TakeWhile((p, i) => i < MostInFull && p.Log + p.Prior >= least).ToArray();
+        var full = points.Where(p => _asOnset[p.Onset] == p.Onset).TakeWhile((p, i) => i < MostInFull && p.Log + p.Prior >= least).ToArray();
+        var moved = 0.0;
         foreach (var point in full)
         {
             var nearly = point.Log;
@@ -129,12 +177,17 @@ public sealed class StoryWeigher
             point.InFull = true;
             moved += (point.Log - nearly) / full.Length;
         }
-        foreach (var point in points.Where(p => !p.InFull)) (point.Log, point.LogSlipScale) = (point.Log + moved, full[0].LogSlipScale);
+        foreach (var point in points.Where(p => !p.InFull))
+            (point.Log, point.LogSlipScale) = full.FirstOrDefault(f => f.Cell == point.Cell && f.Onset == _asOnset[point.Onset]) is { } same
+                ? (same.Log, same.LogSlipScale) : (point.Log + moved, full[0].LogSlipScale);
         var best = full.MaxBy(p => p.Log + p.Prior)!;
         var beyond = BeyondGaussian(story, story.Cells[best.Cell].Middle, best.Onset, beside, best.Log);
         foreach (var point in points) point.Log += beyond;
-        return Gather(story, points, onsets);
     }
+
+    /// <summary>Whether all readings say the same around two onsets: both lie before the first of them.</summary>
+    private bool Same(IReadOnlyList<WearObservable>[] wear, int a, int b) => _single.SameAround(a, b) && wear[a].Count == wear[b].Count
+        && wear[a].Zip(wear[b]).All(x => x.First.Tyre == x.Second.Tyre && x.First.Kind == x.Second.Kind && x.First.Evidence.SameAs(x.Second.Evidence));
 
     private static StoryFit Gather(Story story, List<Point> points, int onsets)
     {

@@ -25,6 +25,16 @@ public sealed record SlopeEvidence(double[] K, double[] H)
         return new([.. K.Select((k, at) => k * Scale(at / Size) * Scale(at % Size))], [.. H.Select((h, i) => h * Scale(i))]);
     }
 
+    /// <summary>Whether both say the same but for rounding.</summary>
+    public bool SameAs(SlopeEvidence other) => Size == other.Size && Alike(K, other.K) && Alike(H, other.H);
+
+    private static bool Alike(double[] a, double[] b)
+    {
+        for (var i = 0; i < a.Length; i++)
+            if (Math.Abs(a[i] - b[i]) > 1e-7 * (Math.Abs(a[i]) + Math.Abs(b[i]))) return false;
+        return true;
+    }
+
     /// <summary>A slope known to hold ever since, with nothing shared.</summary>
     public static SlopeEvidence AfterOnly(double value, double standardError)
     {

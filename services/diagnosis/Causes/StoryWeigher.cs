@@ -8,13 +8,16 @@ public sealed class StoryWeigher
 {
     /// <summary>Log likelihood below the story's best at which an onset and a magnitude no longer matter, and how many are weighed in full.</summary>
     private const double FarBelow = 8;
-    private const int MostInFull = 6;
+    private const int MostInFull = 4;
 
     /// <summary>Log likelihood that the cells of an angle in order must add on a sound vehicle, to be gone through for every story.</summary>
     private const double WorthCells = 0.05;
 
     /// <summary>Log likelihood below the story's best at which the magnitudes between two are not looked at.</summary>
     private const double Negligible = 14;
+
+    /// <summary>Difference of two log likelihoods below which what lies between is taken as between them.</summary>
+    private const double Alike = 0.7;
 
     /// <summary>Log odds against a story, nearly weighed, below which weighing it in full would change nothing that is shown.</summary>
     private const double HardlyMatters = 9;
@@ -132,36 +135,42 @@ public sealed class StoryWeigher
     }
 
     /// <summary>
-    /// Every onset and magnitude nearly. Onsets around which nothing else was read share their values; every third magnitude is
-    /// looked at first, and those between only where one of their neighbours comes near the best.
+    /// Every onset and magnitude nearly. Onsets around which nothing else was read share their values; every third magnitude at every
+    /// other onset is looked at first, and what lies between two only where they differ and one of them comes near the best.
     /// </summary>
     private List<Point> Nearly(Story story, Story? beside, int onsets)
     {
         var cells = story.Cells.Count;
         Point[] points = [.. Enumerable.Range(0, onsets * cells).Select(at =>
             new Point(at / cells, at % cells, Math.Log(story.Cells[at % cells].Share) + (onsets > 1 ? Math.Log(Onsets.Shares[at / cells]) : 0)))];
+        int[] own = [.. Enumerable.Range(0, onsets).Where(o => _asOnset[o] == o)];
+        int[] all = [.. Enumerable.Range(0, cells)], some = [.. all.Where(i => cells <= 6 || i % 3 == 0 || i == cells - 1 || i == cells / 2 - 1 || i == cells / 2)];
         var best = double.NegativeInfinity;
-        foreach (var coarse in (bool[])[true, false])
-            foreach (var point in points)
-            {
-                if (_asOnset[point.Onset] != point.Onset || Coarse(point.Cell) != coarse) continue;
-                var at = point.Onset * cells + point.Cell;
-                if (!coarse)
-                {
-                    var (low, high) = (points[at - point.Cell + Below(point.Cell)].Log, points[at - point.Cell + Above(point.Cell)].Log);
-                    point.Log = Math.Max(low, high);
-                    if (point.Log < best - Negligible) continue;
-                }
-                Place(story, story.Cells[point.Cell].Middle, beside);
-                point.Log = Near(story, story.Cells[point.Cell].Middle, point.Onset);
-                best = Math.Max(best, point.Log);
-            }
+        for (var n = 0; n < own.Length; n += 2)
+        {
+            foreach (var i in some) Look(At(n, i));
+            foreach (var i in all.Except(some)) Between(At(n, some.Last(c => c < i)), At(n, some.First(c => c > i)), At(n, i), i);
+        }
+        for (var n = 1; n < own.Length; n += 2)
+            foreach (var i in all)
+                if (n + 1 < own.Length) Between(At(n - 1, i), At(n + 1, i), At(n, i), -1);
+                else Look(At(n, i));
         foreach (var point in points) point.Log = points[_asOnset[point.Onset] * cells + point.Cell].Log;
         return [.. points];
 
-        bool Coarse(int cell) => cells <= 6 || cell % 3 == 0 || cell == cells - 1 || cell == cells / 2 - 1 || cell == cells / 2;
-        int Below(int cell) => Enumerable.Range(0, cell).Last(Coarse);
-        int Above(int cell) => Enumerable.Range(cell, cells - cell).First(Coarse);
+        Point At(int n, int cell) => points[own[n] * cells + cell];
+        void Look(Point point)
+        {
+            Place(story, story.Cells[point.Cell].Middle, beside);
+            point.Log = Near(story, story.Cells[point.Cell].Middle, point.Onset);
+            best = Math.Max(best, point.Log);
+        }
+        void Between(Point low, Point high, Point point, int cell)
+        {
+            var share = cell < 0 ? 0.5 : (story.Cells[cell].Middle - story.Cells[low.Cell].Middle) / (story.Cells[high.Cell].Middle - story.Cells[low.Cell].Middle);
+            point.Log = low.Log + share * (high.Log - low.Log);
+            if (Math.Abs(high.Log - low.Log) > Alike && Math.Max(low.Log, high.Log) > best - Negligible) Look(point);
+        }
     }
 
     private void InFull(Story story, Story? beside, List<Point> points)

@@ -24,6 +24,8 @@ public sealed record FleetWear
     public IReadOnlyList<ReaderBias> Technicians { get; init; } = [];
     public IReadOnlyList<ReaderBias> Gauges { get; init; } = [];
     public NoiseFigures Noise { get; init; } = new();
+    /// <summary>Technicians and gauges as a study of their own.</summary>
+    public ReaderStudy Readers { get; init; } = new();
     public int Vehicles { get; init; }
     /// <summary>Fittings with a rate of their own.</summary>
     public int FittingsWithRate { get; init; }

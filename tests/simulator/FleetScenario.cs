@@ -6,6 +6,9 @@ public sealed record Scenario(ulong Seed, int Vehicles, int Weeks, long MaxSampl
     /// <summary>Logged trips run on roads without any bank; everything else is the same as with it.</summary>
     public bool FlatTrips { get; init; }
 
+    /// <summary>Nobody gauges any tyre; everything else is the same.</summary>
+    public bool NoSurveys { get; init; }
+
     /// <summary>Note down what the best possible is to be told.</summary>
     public bool Best { get; init; }
 

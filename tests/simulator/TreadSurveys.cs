@@ -36,6 +36,7 @@ public sealed class TreadSurveys
         (_vehicle, _scenario, _rows, _log) = (vehicle, scenario, rows, log);
         _random = new RandomStream(scenario.Seed, 6, vehicle.Index);
         _technicians = [.. technicians.Where(t => t.Depot == vehicle.Depot.Index)];
+        if (scenario.NoSurveys) return;
         for (var day = _random.Whole(1, 16); day < scenario.Days; day += _random.Whole(19, 34)) Days.Add(day);
     }
 

@@ -5,7 +5,7 @@ namespace WearWatch.Proving;
 /// <summary>The command line.</summary>
 internal sealed record Options
 {
-    public const string Usage = "prove verdict|tread|steering [--seeds N=10] [--first SEED=101] [--vehicles N=100] [--max-samples N=3000000] [--at-once N=2] [--no-crown] [--json] [--keep DIR] | prove ... --again DIR [--stored] [--json]";
+    public const string Usage = "prove verdict|tread|steering [--seeds N=10] [--first SEED=101] [--vehicles N=100] [--max-samples N=3000000] [--at-once N=2] [--no-best] [--steering-only] [--no-crown] [--json] [--keep DIR] | prove ... --again DIR [--stored] [--json]";
 
     public static readonly string[] Parts = ["verdict", "tread", "steering"];
 
@@ -19,6 +19,10 @@ internal sealed record Options
     public bool Json { get; init; }
     /// <summary>For steering: simulate each fleet a second time on flat roads, which crown_removed needs.</summary>
     public bool Crown { get; init; } = true;
+    /// <summary>For verdict: have the simulator work out the best possible on the same data (some 0.5 s of CPU a vehicle).</summary>
+    public bool Best { get; init; } = true;
+    /// <summary>Withhold every tread survey, and judge the vehicles with steering signals.</summary>
+    public bool SteeringOnly { get; init; }
     /// <summary>Folder in which databases and truths stay; a temporary one, removed at the end, where null.</summary>
     public string? Keep { get; init; }
     /// <summary>Folder kept earlier, to be analysed and scored anew.</summary>
@@ -49,6 +53,16 @@ internal sealed record Options
             if (args[i] == "--no-crown")
             {
                 options = options with { Crown = false };
+                continue;
+            }
+            if (args[i] == "--no-best")
+            {
+                options = options with { Best = false };
+                continue;
+            }
+            if (args[i] == "--steering-only")
+            {
+                options = options with { SteeringOnly = true };
                 continue;
             }
             var (name, value) = args[i].Split('=', 2) is [var n, var v] ? (n, v) : (args[i], i + 1 < args.Length ? args[++i] : throw new ArgumentException($"{args[i]} lacks its value"));

@@ -6,6 +6,12 @@ public sealed record Scenario(ulong Seed, int Vehicles, int Weeks, long MaxSampl
     /// <summary>Logged trips run on roads without any bank; everything else is the same as with it.</summary>
     public bool FlatTrips { get; init; }
 
+    /// <summary>Nobody gauges any tyre; everything else is the same.</summary>
+    public bool NoSurveys { get; init; }
+
+    /// <summary>Note down what the best possible is to be told.</summary>
+    public bool Best { get; init; }
+
     public int Days => Weeks * 7;
     /// <summary>First day of the window; the last day of it is <see cref="End"/>.</summary>
     public DateOnly Start => End.AddDays(-Days);
@@ -38,8 +44,7 @@ public sealed class FleetScenario
         var fleet = new RandomStream(scenario.Seed, 1);
         // Delivery vans and trailers meet the most kerbs (common practice, no source): an order weighted by class.
         var order = Enumerable.Range(0, n).OrderBy(i => -Math.Log(1 - new RandomStream(scenario.Seed, 14, i).Unit()) / Exposure(TypeOf(i).Class)).ToArray();
-        var misaligned = (int)Math.Round(n * fleet.Between(0.22, 0.249), MidpointRounding.ToZero);
-        var large = (int)Math.Round(0.6 * misaligned);
+        var (large, misaligned) = DrawCounts(n, fleet);
         var repaired = Math.Max(1, n / 16);
         Vehicles = [.. Enumerable.Range(0, n).Select(i =>
         {
@@ -49,15 +54,22 @@ public sealed class FleetScenario
         })];
     }
 
+    /// <summary>How many are misaligned, and how many of those by 1.5 tolerances or more.</summary>
+    public static (int Large, int Misaligned) DrawCounts(int vehicles, RandomStream random)
+    {
+        var misaligned = (int)Math.Round(vehicles * random.Between(0.22, 0.249), MidpointRounding.ToZero);
+        return ((int)Math.Round(0.6 * misaligned), misaligned);
+    }
+
     private enum Fate { Large, Small, Repaired, Sound }
 
-    private static VehicleType TypeOf(int index)
+    public static VehicleType TypeOf(int index)
     {
         var choices = VehicleTypes.Mix[index % VehicleTypes.Mix.Length];
         return choices[index / VehicleTypes.Mix.Length % choices.Length];
     }
 
-    private static double Exposure(VehicleClass c) => c switch
+    public static double Exposure(VehicleClass c) => c switch
     {
         VehicleClass.Van => 1.5,
         VehicleClass.Trailer => 1.4,
@@ -97,7 +109,7 @@ public sealed class FleetScenario
             Positions = positions,
             Sound = sound,
             Fault = fault,
-            AfterRepair = fate == Fate.Repaired ? Geometry.DrawSound(type, random, 0.2) : null,
+            AfterRepair = fate == Fate.Repaired ? Geometry.DrawSound(type, random, Geometry.RepairedSpread) : null,
             Sensors = SteeringSensors.Draw(type, Slot(index), random),
             Routes = routes,
             KmPerWeek = kmPerWeek,

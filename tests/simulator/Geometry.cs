@@ -13,6 +13,11 @@ public readonly record struct Angle(string Quantity, int? Axle, char? Side, doub
 /// </summary>
 public sealed class Geometry(int axles)
 {
+    /// <summary>Standard deviation of a sound vehicle's angles, tolerances; of one that comes from the bench.</summary>
+    public const double SoundSpread = 0.4, RepairedSpread = 0.2;
+    /// <summary>Where a sound vehicle's angles end, tolerances.</summary>
+    public const double SoundLimit = 0.95;
+
     public double[] TotalToe { get; } = new double[axles];
     public double[] Direction { get; } = new double[axles];
     public double[] CamberLeft { get; } = new double[axles];
@@ -52,6 +57,32 @@ public sealed class Geometry(int axles)
         return sum;
     }
 
+    /// <summary>Takes the angles of another, times a factor.</summary>
+    public void Set(Geometry other, double factor)
+    {
+        CasterSplit = factor * other.CasterSplit;
+        for (var a = 0; a < Axles; a++)
+        {
+            TotalToe[a] = factor * other.TotalToe[a];
+            Direction[a] = factor * other.Direction[a];
+            CamberLeft[a] = factor * other.CamberLeft[a];
+            CamberRight[a] = factor * other.CamberRight[a];
+        }
+    }
+
+    /// <summary>Adds another's angles, times a factor, to these.</summary>
+    public void Add(Geometry other, double factor)
+    {
+        CasterSplit += factor * other.CasterSplit;
+        for (var a = 0; a < Axles; a++)
+        {
+            TotalToe[a] += factor * other.TotalToe[a];
+            Direction[a] += factor * other.Direction[a];
+            CamberLeft[a] += factor * other.CamberLeft[a];
+            CamberRight[a] += factor * other.CamberRight[a];
+        }
+    }
+
     /// <summary>Every alignment quantity of this vehicle type with its tolerance.</summary>
     public List<Angle> Angles(VehicleType type)
     {
@@ -82,18 +113,18 @@ public sealed class Geometry(int axles)
     /// A vehicle as it leaves a good workshop and settles: every quantity normal about its target, standard deviation
     /// <paramref name="spread"/> tolerances (0.4 by default), never beyond 0.95 of it.
     /// </summary>
-    public static Geometry DrawSound(VehicleType type, RandomStream random, double spread = 0.4)
+    public static Geometry DrawSound(VehicleType type, RandomStream random, double spread = SoundSpread)
     {
         var g = new Geometry(type.Axles.Length);
         do Draw(g, type, random, spread);
-        while (g.Angles(type).Any(a => a.Ratio > 0.95));
+        while (g.Angles(type).Any(a => a.Ratio > SoundLimit));
         return g;
     }
 
     private static void Draw(Geometry g, VehicleType type, RandomStream random, double spread)
     {
         var c = type.Class;
-        double Near(Tolerance t, double share = 1) => t.Target + random.Within(spread * share * t.PlusMinus, 0.95 * t.PlusMinus);
+        double Near(Tolerance t, double share = 1) => t.Target + random.Within(spread * share * t.PlusMinus, SoundLimit * t.PlusMinus);
         for (var a = 0; a < g.Axles; a++)
         {
             var front = a == 0 && !type.IsTrailer;
@@ -116,10 +147,10 @@ public sealed class Geometry(int axles)
         foreach (var a in group)
         {
             g.Direction[a] = direction;
-            direction += random.Within(spread * Tolerances.Skew.PlusMinus, 0.95 * Tolerances.Skew.PlusMinus);
+            direction += random.Within(spread * Tolerances.Skew.PlusMinus, SoundLimit * Tolerances.Skew.PlusMinus);
         }
         var tolerance = type.IsTrailer ? Tolerances.Skew : Tolerances.Thrust(type.Class);
-        var shift = random.Within(spread * tolerance.PlusMinus, 0.95 * tolerance.PlusMinus) - group.Average(a => g.Direction[a]);
+        var shift = random.Within(spread * tolerance.PlusMinus, SoundLimit * tolerance.PlusMinus) - group.Average(a => g.Direction[a]);
         foreach (var a in group) g.Direction[a] += shift;
     }
 }

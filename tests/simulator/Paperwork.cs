@@ -1,3 +1,5 @@
+using WearWatch.Simulator.Best;
+
 namespace WearWatch.Simulator;
 
 /// <summary>What is written down of a vehicle besides surveys and signals: registration, axles, routes, drivers' words, workshop records.</summary>
@@ -49,8 +51,21 @@ public static class Paperwork
             loop || random.Chance(0.4) ? Math.Round(share, 2) : null, urban);
     }
 
+    /// <summary>Chance in a week that a driver reports a pull he must hold, N·m at the column.</summary>
+    public static double ChanceOfPull(VehicleType type, double pullNm) =>
+        0.09 * Math.Max(0, Math.Abs(pullNm / (type.Assist == "electric" ? 1 : 2.5)) - 0.45);
+
+    /// <summary>Chance in a week that he reports a steering wheel that stands off centre, deg.</summary>
+    public static double ChanceOfNotStraight(double offCentreDeg) => 0.012 * Math.Max(0, Math.Abs(offCentreDeg) - 3.5);
+
+    /// <summary>Chance in a week of a word that nothing stands behind, one of four.</summary>
+    public const double ChanceOfNothing = 0.004;
+
+    /// <summary>Bench repeatability, deg (from memory).</summary>
+    public const double BenchRepeatDeg = 0.02;
+
     /// <summary>Drivers notice a holding torque of some 0.5 N·m or a wheel 5° off, and do not often say so.</summary>
-    public static void DriverReports(FleetVehicle v, Scenario s, IReadOnlyList<(double Pull, double OffCentre)> days, Rows rows)
+    public static void DriverReports(FleetVehicle v, Scenario s, IReadOnlyList<(double Pull, double OffCentre)> days, Rows rows, VehicleLog? log)
     {
         if (v.Type.IsTrailer) return;
         var random = new RandomStream(s.Seed, 8, v.Index);
@@ -58,54 +73,56 @@ public static class Paperwork
         for (var day = 3; day < s.Days; day += 7)
         {
             var (pull, off) = days[day];
-            var felt = pull / (v.Type.Assist == "electric" ? 1 : 2.5);
             string? symptom = null;
-            if (random.Chance(0.09 * Math.Max(0, Math.Abs(felt) - 0.45))) symptom = pull > 0 ? "pulls_right" : "pulls_left";
-            else if (random.Chance(0.012 * Math.Max(0, Math.Abs(off) - 3.5))) symptom = "wheel_not_straight";
+            if (random.Chance(ChanceOfPull(v.Type, pull))) symptom = pull > 0 ? "pulls_right" : "pulls_left";
+            else if (random.Chance(ChanceOfNotStraight(off))) symptom = "wheel_not_straight";
             else if (v.CuppedPosition >= 0 && v.Positions[v.CuppedPosition].Axle == 0 && random.Chance(0.05)) symptom = "shakes";
-            else if (random.Chance(0.004)) symptom = random.Pick<string>(["pulls_left", "pulls_right", "wheel_not_straight", "shakes"]);
+            else if (random.Chance(ChanceOfNothing)) symptom = random.Pick<string>(["pulls_left", "pulls_right", "wheel_not_straight", "shakes"]);
+            if (count < 3) log?.DriverWeeks.Add(new(day, symptom));
             if (symptom is null || count >= 3) continue;
             rows.Add("driver_reports", $"d-{v.Id}-{++count}", v.Id, s.Time(day + 0.7), symptom, null);
         }
     }
 
-    public static void Workshop(FleetVehicle v, Scenario s, Func<double, double> odometer, Rows rows)
+    public static void Workshop(FleetVehicle v, Scenario s, Func<double, double> odometer, Rows rows, VehicleLog? log)
     {
         var random = new RandomStream(s.Seed, 9, v.Index);
         if (!double.IsPositiveInfinity(v.Fault?.RepairDay ?? double.PositiveInfinity))
         {
             var day = v.Fault!.RepairDay;
-            Record(v, s, random, "w1", day, "suspected", "adjusted", v.GeometryAt(day - 0.1), v.AfterRepair, odometer, rows);
+            Record(v, s, random, "w1", day, "suspected", "adjusted", v.GeometryAt(day - 0.1), v.AfterRepair, odometer, rows, log);
         }
         else if (v.Fault is null && random.Chance(0.2))
         {
             var day = Math.Floor(random.Between(0.05, 0.9) * s.Days) + 0.5;
-            Record(v, s, random, "w1", day, "routine", "in_order", random.Chance(0.6) ? v.GeometryAt(day) : null, null, odometer, rows);
+            Record(v, s, random, "w1", day, "routine", "in_order", random.Chance(0.6) ? v.GeometryAt(day) : null, null, odometer, rows, log);
         }
         else if (v.Fault is { Mode: FaultMode.Before } && random.Chance(0.2))
         {
             var day = Math.Floor(random.Between(0.3, 0.8) * s.Days) + 0.5;
-            Record(v, s, random, "w1", day, "suspected", random.Pick<string>(["could_not_adjust", "parts_needed"]), v.GeometryAt(day), null, odometer, rows);
+            Record(v, s, random, "w1", day, "suspected", random.Pick<string>(["could_not_adjust", "parts_needed"]), v.GeometryAt(day), null, odometer, rows, log);
         }
     }
 
     private static void Record(FleetVehicle v, Scenario s, RandomStream random, string key, double day, string why, string result,
-        Geometry? before, Geometry? after, Func<double, double> odometer, Rows rows)
+        Geometry? before, Geometry? after, Func<double, double> odometer, Rows rows, VehicleLog? log)
     {
         var id = $"{key}-{v.Id}";
         double? distance = v.DistanceSource == "none" ? null : Math.Round(odometer(day));
         double? cost = result == "adjusted" ? Math.Round(v.Type.JobPriceEur * v.Depot.PriceFactor) : null;
         rows.Add("workshop_records", id, v.Id, s.Time(day), why, result, distance, cost, null);
+        log?.BenchWords.Add(new(day, result == "in_order"));
         if (before is null) return;
         var (first, then) = (before.Angles(v.Type), after?.Angles(v.Type));
         for (var i = 0; i < first.Count; i++)
         {
-            // Bench repeatability 0.02° (from memory); paper often leaves an angle out.
-            double? Bench(double deg) => Math.Round(deg + 0.02 * random.Normal(), 2);
+            // Paper often leaves an angle out.
+            double? Bench(double deg) => Math.Round(deg + BenchRepeatDeg * random.Normal(), 2);
             if (random.Chance(0.12)) continue;
             var b = Bench(first[i].Value);
             var a = then is null ? null : Bench(then[i].Value);
             var asWritten = first[i].Quantity == "front_total_toe" && random.Chance(0.2) ? $"toe {Math.Round(first[i].Value * 7, 1)} mm" : null;
+            if (asWritten is null) log?.Bench.Add(after is null ? new(day, i, b!.Value) : new(day + 0.01, i, a!.Value));
             rows.Add("workshop_angles", id, first[i].Quantity, first[i].Axle, first[i].Side, asWritten is null ? b : null, asWritten is null ? a : null, "deg", asWritten);
         }
     }

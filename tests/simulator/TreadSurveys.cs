@@ -1,3 +1,5 @@
+using WearWatch.Simulator.Best;
+
 namespace WearWatch.Simulator;
 
 /// <summary>A blunder or a refusal planted in one survey.</summary>
@@ -13,11 +15,15 @@ public sealed record Taken(string SurveyId, int Day, double OdometerKm, int Axle
 /// <summary>The walks round one vehicle, with what technicians get wrong.</summary>
 public sealed class TreadSurveys
 {
+    /// <summary>Repeat of a step felt between rib edges, mm.</summary>
+    public const double EdgeRepeatMm = 0.12;
+
     private readonly FleetVehicle _vehicle;
     private readonly Scenario _scenario;
     private readonly Technician[] _technicians;
     private readonly Rows _rows;
     private readonly RandomStream _random;
+    private readonly VehicleLog? _log;
     private int _count;
 
     public List<Planted> Planted { get; } = [];
@@ -25,11 +31,12 @@ public sealed class TreadSurveys
     /// <summary>Days on which surveys are taken.</summary>
     public HashSet<int> Days { get; } = [];
 
-    public TreadSurveys(FleetVehicle vehicle, Scenario scenario, Technician[] technicians, Rows rows)
+    public TreadSurveys(FleetVehicle vehicle, Scenario scenario, Technician[] technicians, Rows rows, VehicleLog? log)
     {
-        (_vehicle, _scenario, _rows) = (vehicle, scenario, rows);
+        (_vehicle, _scenario, _rows, _log) = (vehicle, scenario, rows, log);
         _random = new RandomStream(scenario.Seed, 6, vehicle.Index);
         _technicians = [.. technicians.Where(t => t.Depot == vehicle.Depot.Index)];
+        if (scenario.NoSurveys) return;
         for (var day = _random.Whole(1, 16); day < scenario.Days; day += _random.Whole(19, 34)) Days.Add(day);
     }
 
@@ -70,8 +77,8 @@ public sealed class TreadSurveys
                 _rows.Add("survey_tyres", id, name, null, null, null, null, "gauge does not reach between the duals");
                 continue;
             }
-            Read(p, name, id, technician, tyres[p.Index], places, blunder == "unit_mix_up");
-            Note(p, name, id, tyres[p.Index], pressures, rubs);
+            Read(p, name, (id, day), technician, tyres[p.Index], places, blunder == "unit_mix_up");
+            Note(p, name, (id, day), tyres[p.Index], pressures, rubs);
         }
     }
 
@@ -116,8 +123,9 @@ public sealed class TreadSurveys
         return new Position(0, written.Axle, written.Left, written.Dual).Name;
     }
 
-    private void Read(Position p, string name, string id, Technician technician, Tyre tyre, int places, bool unitMixUp)
+    private void Read(Position p, string name, (string Id, int Day) survey, Technician technician, Tyre tyre, int places, bool unitMixUp)
     {
+        var id = survey.Id;
         var grooves = _vehicle.Type.Grooves;
         var step = technician.In32nds ? Technician.MmPer32nd : 0.1;
         var first = _random.Between(0, 360);
@@ -130,13 +138,16 @@ public sealed class TreadSurveys
                 var depth = tyre.GrooveDepth(groove, grooves, _random) + cup + technician.BiasMm + technician.RepeatMm * _random.Normal();
                 if (unitMixUp) depth /= Technician.MmPer32nd;
                 var steps = Math.Max(0, Math.Round(depth / step));
+                var gaugeStep = unitMixUp ? step * Technician.MmPer32nd : step;
+                _log?.Depths.Add(new(tyre, survey.Day, groove, steps * gaugeStep, gaugeStep, cup + technician.BiasMm, technician.RepeatMm));
                 var text = technician.In32nds ? steps.ToString("0") : Decimal(steps / 10, id);
                 if (_vehicle.Index % 16 == 5 && _count == 2 && p.Index == 0 && groove == 0 && place == 0)
                 {
                     Planted.Add(new("depth_above_new", id, name));
                     text = technician.In32nds ? (tyre.NewDepthMm / Technician.MmPer32nd + 4).ToString("0") : (tyre.NewDepthMm + 3).ToString("0.0");
                 }
-                double? edge = technician.FeelsEdges && groove is > 0 and < 4 ? Math.Round((tyre.FeatherMm + 0.12 * _random.Normal()) / step) * (technician.In32nds ? 1 : 0.1) : null;
+                double? edge = technician.FeelsEdges && groove is > 0 and < 4 ? Math.Round((tyre.FeatherMm + EdgeRepeatMm * _random.Normal()) / step) * (technician.In32nds ? 1 : 0.1) : null;
+                if (edge is { } felt) _log?.Edges.Add(new(tyre, survey.Day, technician.In32nds ? felt * step : felt, step));
                 _rows.Add("readings", id, name, groove + 1, text, places == 1 ? null : clock, edge);
             }
         }
@@ -159,16 +170,25 @@ public sealed class TreadSurveys
         return _random.Chance(0.01) ? text + "0" : text.EndsWith(".0", StringComparison.Ordinal) && _random.Chance(0.3) ? text[..^2] : text;
     }
 
-    private void Note(Position p, string name, string id, Tyre tyre, bool pressures, bool rubs)
+    private void Note(Position p, string name, (string Id, int Day) survey, Tyre tyre, bool pressures, bool rubs)
     {
+        var id = survey.Id;
         var axle = _vehicle.Type.Axles[p.Axle];
         var warm = pressures && _random.Chance(0.3);
         double? pressure = pressures && !(p.Dual == 'I' && _random.Chance(0.2))
             ? Math.Round((axle.PressureKpa * (1 + _vehicle.PressureShare[p.Index] + (warm ? 0.08 : 0)) + 6 * _random.Normal()) / 5) * 5 : null;
         var rub = rubs && p.Dual != 'I' ? HandRub(tyre) : null;
+        if (rub is not null) _log?.Rubs.Add(new(tyre, survey.Day, rub == "neither" ? 0 : rub == "catches_outward" ? 1 : -1));
         var seen = tyre.CuppingMm > 0.4 && _random.Chance(0.7) ? "cupped" : _random.Chance(0.004) ? "cut" : _random.Chance(0.004) ? "heel_toe" : null;
         if (pressure is null && rub is null && seen is null) return;
         _rows.Add("survey_tyres", id, name, pressure, pressure is null ? null : warm, rub, seen, null);
+    }
+
+    /// <summary>Chance that the hand catches anything on fins of some height, and that it then tells the wrong way round.</summary>
+    public static (double Felt, double Wrong) RubChances(double featherMm)
+    {
+        var strength = Math.Abs(featherMm) / 0.27;
+        return (0.06 + 0.9 * (1 - Math.Exp(-strength * strength)), strength < 1 ? 0.3 : 0.12);
     }
 
     /// <summary>
@@ -177,9 +197,9 @@ public sealed class TreadSurveys
     /// </summary>
     private string HandRub(Tyre tyre)
     {
-        var strength = Math.Abs(tyre.FeatherMm) / 0.27;
-        if (!_random.Chance(0.06 + 0.9 * (1 - Math.Exp(-strength * strength)))) return "neither";
-        var outward = tyre.FeatherMm > 0 != _random.Chance(strength < 1 ? 0.3 : 0.12);
+        var (felt, wrong) = RubChances(tyre.FeatherMm);
+        if (!_random.Chance(felt)) return "neither";
+        var outward = tyre.FeatherMm > 0 != _random.Chance(wrong);
         return outward ? "catches_outward" : "catches_inward";
     }
 }

@@ -38,28 +38,37 @@ public static class TreadWear
     /// <param name="pressureShare">(pressure − set) ÷ set.</param>
     public static double[] Rates(AxleType axle, Duty duty, double towardsToeInDeg, double camberDeg, double pressureShare, double month, double[] profile)
     {
+        var (mean, shifted) = Sliding(axle, duty, towardsToeInDeg);
+        var rates = new double[Tyre.Strips];
+        for (var s = 0; s < Tyre.Strips; s++)
+            rates[s] = StripRate(axle, duty, mean, shifted, camberDeg, pressureShare, month, profile, s);
+        return rates;
+    }
+
+    /// <summary>Sliding energy over that of the usual service slip alone, and the part of it that leans to the outboard side.</summary>
+    public static (double Mean, double Shifted) Sliding(AxleType axle, Duty duty, double towardsToeInDeg)
+    {
         var sigma = axle.ServiceSlipDeg * Math.Sqrt(duty.Driver);
-        Span<double> bySide = stackalloc double[3];
-        double reference = 0;
+        double mean = 0, shifted = 0, reference = 0;
         for (var j = 0; j < Nodes.Length; j++)
         {
             var slip = towardsToeInDeg + sigma * Nodes[j];
             var energy = Weights[j] * Math.Pow(Math.Abs(slip), duty.Exponent);
-            bySide[0] += energy;
-            bySide[1] += energy * Math.Tanh(slip / ShiftSlipDeg);
+            mean += energy;
+            shifted += energy * Math.Tanh(slip / ShiftSlipDeg);
             reference += Weights[j] * Math.Pow(axle.ServiceSlipDeg * Math.Abs(Nodes[j]), duty.Exponent);
         }
-        var (mean, shifted) = (bySide[0] / reference, bySide[1] / reference);
-        var rates = new double[Tyre.Strips];
-        for (var s = 0; s < Tyre.Strips; s++)
-        {
-            var outboard = 1 - 2.0 * s / (Tyre.Strips - 1);
-            var edge = outboard * (CamberShiftPerDeg * camberDeg + duty.Roll);
-            var across = pressureShare < 0 ? -1.0 * pressureShare * (outboard * outboard - 0.35) : 1.2 * pressureShare * (0.55 - outboard * outboard);
-            var all = 1 + 0.4 * Math.Max(0, -pressureShare);
-            rates[s] = axle.BaseRate * month * profile[s] * all * Math.Max(0.2, (mean * (1 + edge + across)) + ShoulderShift * outboard * shifted);
-        }
-        return rates;
+        return (mean / reference, shifted / reference);
+    }
+
+    /// <summary>Rate of one strip, mm per 1000 km, at a sliding energy.</summary>
+    public static double StripRate(AxleType axle, Duty duty, double mean, double shifted, double camberDeg, double pressureShare, double month, double[] profile, int strip)
+    {
+        var outboard = 1 - 2.0 * strip / (Tyre.Strips - 1);
+        var edge = outboard * (CamberShiftPerDeg * camberDeg + duty.Roll);
+        var across = pressureShare < 0 ? -1.0 * pressureShare * (outboard * outboard - 0.35) : 1.2 * pressureShare * (0.55 - outboard * outboard);
+        var all = 1 + 0.4 * Math.Max(0, -pressureShare);
+        return axle.BaseRate * month * profile[strip] * all * Math.Max(0.2, (mean * (1 + edge + across)) + ShoulderShift * outboard * shifted);
     }
 
     /// <summary>

@@ -1,3 +1,5 @@
+using WearWatch.Simulator.Best;
+
 namespace WearWatch.Simulator;
 
 /// <summary>How a vehicle holds straight: torque (N·m at the wheel, before assist) and road-wheel steer (deg) on the flat and per sine of bank.</summary>
@@ -41,6 +43,9 @@ public sealed class Trip(VehicleType type, SteeringSensors sensors, Depot depot,
 
     private double _v, _a, _s, _yaw, _dwell = 22, _lastStop = -1;
     private double _heading, _offset, _angleNoise, _torqueNoise, _wind, _friction, _lastAngle, _assist, _east, _north, _yawDrift;
+
+    /// <summary>Takes what the samples tell of straight running once everything else is known; null where nobody asks.</summary>
+    public TripRemainder? Remainder { get; init; }
 
     /// <returns>Rows written.</returns>
     public int Write(string path)
@@ -130,6 +135,9 @@ public sealed class Trip(VehicleType type, SteeringSensors sensors, Depot depot,
                 "lane_keeping" => LaneKeeping(row) ? 1 : 0,
                 _ => double.NaN,
             };
+        if (Remainder is null || jolt != 0 || _v <= 3) return;
+        var knownTorque = torque - law.TorqueNm - _torqueNoise - _wind * _v * _v / 500 - sensors.Boost * sensors.TorqueZeroNm - (sensors.PullCompensation ? _assist : 0);
+        Remainder.Row(values, struck || row >= plan.Rows / 3, angle - steerNoise - _ratio * law.SteerDeg, _keepsLane && LaneKeeping(row) ? double.NaN : knownTorque, _v);
     }
 
     /// <summary>Driver's correction about the mean steering-wheel angle, deg: noise plus feedback on heading and offset in the lane.</summary>
@@ -150,7 +158,7 @@ public sealed class Trip(VehicleType type, SteeringSensors sensors, Depot depot,
     {
         if (_v < 0.2) return 0.15 * _torqueNoise;
         _torqueNoise += -0.1 * _torqueNoise + Math.Sqrt(0.19) * sensors.TorqueNoiseNm * random.Normal();
-        _wind += -0.0015 * _wind + 0.0049 * random.Normal();
+        _wind += -0.0015 * _wind + 0.0049 * random.Normal(); // memory 67 s
         var rate = (angle - _lastAngle) / Dt;
         _lastAngle = angle;
         _friction += (Math.Tanh(rate / 3) - _friction) * 0.4;

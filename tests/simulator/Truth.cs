@@ -62,6 +62,7 @@ public static class Truth
             RepairedOn = v.Fault is { } f && !double.IsPositiveInfinity(f.RepairDay) ? s.Date(f.RepairDay) : null,
             Signals = signals,
             AssistMeasured = v.Sensors.Has("assist_torque"),
+            Position = v.Sensors.Has("latitude"),
             PullCompensation = v.Sensors.PullCompensation,
             SteeringPullNm = steered ? R(h.Steering.Pull) : (double?)null,
             SteeringPullTorsionBarNm = steered ? R(h.Steering.Pull / (1 + v.Sensors.Boost)) : (double?)null,

@@ -4,6 +4,9 @@ namespace WearWatch.Simulator;
 public sealed class Tyre
 {
     public const int Strips = 7;
+    public const double GrooveDeviationMm = 0.05;
+    public const double DeviationMemoryKm = 8000;
+    public const double FeatherMemoryKm = 3000;
     private readonly double[] _deviation = new double[6];
     private double _deviationKm;
 
@@ -21,6 +24,10 @@ public sealed class Tyre
     /// <summary>Depth variation round the tyre of a cupped tread, mm amplitude.</summary>
     public double CuppingMm { get; set; }
     public double Km { get; private set; }
+    /// <summary>Depth, mm, by strip when it was new, from the side that was outboard then.</summary>
+    public double[] NewDepths { get; private set; } = [];
+    /// <summary>Whether it stands the other way round on its rim than when it was new.</summary>
+    public bool Turned { get; private set; }
 
     public static Tyre Draw(string id, string pattern, double newDepthMm, double conicitySdN, RandomStream random)
     {
@@ -34,7 +41,8 @@ public sealed class Tyre
         };
         // A new tyre's grooves differ by a tenth or so.
         tyre.DepthMm = [.. Enumerable.Range(0, Strips).Select(_ => newDepthMm - Math.Abs(0.05 * random.Normal()))];
-        for (var i = 0; i < tyre._deviation.Length; i++) tyre._deviation[i] = 0.05 * random.Normal();
+        tyre.NewDepths = [.. tyre.DepthMm];
+        for (var i = 0; i < tyre._deviation.Length; i++) tyre._deviation[i] = GrooveDeviationMm * random.Normal();
         return tyre;
     }
 
@@ -45,10 +53,12 @@ public sealed class Tyre
     public void Run(double km, double[] rates, double towardsToeInDeg)
     {
         for (var s = 0; s < Strips; s++) DepthMm[s] = Math.Max(0, DepthMm[s] - Loss(s, km, rates[s]));
-        var settled = 0.55 * Math.Tanh(towardsToeInDeg / 0.3);
-        FeatherMm += (settled - FeatherMm) * (1 - Math.Exp(-km / 3000));
+        FeatherMm += (SettledFeather(towardsToeInDeg) - FeatherMm) * (1 - Math.Exp(-km / FeatherMemoryKm));
         Km += km;
     }
+
+    /// <summary>Fin height that a lasting slip leads to, mm.</summary>
+    public static double SettledFeather(double towardsToeInDeg) => 0.55 * Math.Tanh(towardsToeInDeg / 0.3);
 
     /// <summary>Loss over some distance: 25 % faster at first, decaying within some 1.2 mm, then slowing by up to 10 % (from memory).</summary>
     public double Loss(int strip, double km, double rate) => km / 1000 * rate * StripFactor[strip] * Stage(NewDepthMm - DepthMm[strip], NewDepthMm);
@@ -62,10 +72,10 @@ public sealed class Tyre
     /// </summary>
     public double GrooveDepth(int groove, int grooves, RandomStream random)
     {
-        var memory = Math.Exp(-(Km - _deviationKm) / 8000);
+        var memory = Math.Exp(-(Km - _deviationKm) / DeviationMemoryKm);
         if (memory < 1)
         {
-            var fresh = 0.05 * Math.Sqrt(1 - memory * memory);
+            var fresh = GrooveDeviationMm * Math.Sqrt(1 - memory * memory);
             for (var i = 0; i < _deviation.Length; i++) _deviation[i] = memory * _deviation[i] + fresh * random.Normal();
             _deviationKm = Km;
         }
@@ -91,5 +101,6 @@ public sealed class Tyre
         Array.Reverse(StripFactor);
         ConicityN = -ConicityN;
         FeatherMm = -FeatherMm;
+        Turned = !Turned;
     }
 }

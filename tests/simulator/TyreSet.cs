@@ -1,3 +1,5 @@
+using WearWatch.Simulator.Best;
+
 namespace WearWatch.Simulator;
 
 /// <summary>The tyres of one vehicle through the window: how they wear, when they are changed, moved or turned, and what of it is written down.</summary>
@@ -9,6 +11,7 @@ public sealed class TyreSet
     private readonly RandomStream _random;
     private readonly double[] _months;
     private readonly Rows _rows;
+    private readonly VehicleLog? _log;
     private readonly Dictionary<int, double[]> _profiles = [];
     private readonly double _changeAtMm;
     private readonly double _moveDay;
@@ -21,9 +24,9 @@ public sealed class TyreSet
     public bool[] Winter { get; }
     public List<string> Unrecorded { get; } = [];
 
-    public TyreSet(FleetVehicle vehicle, Scenario scenario, double[] months, Rows rows)
+    public TyreSet(FleetVehicle vehicle, Scenario scenario, double[] months, Rows rows, VehicleLog? log)
     {
-        (_vehicle, _scenario, _months, _rows) = (vehicle, scenario, months, rows);
+        (_vehicle, _scenario, _months, _rows, _log) = (vehicle, scenario, months, rows, log);
         _random = new RandomStream(scenario.Seed, 3, vehicle.Index);
         var light = vehicle.Type.Class is VehicleClass.Car or VehicleClass.Van;
         var limit = vehicle.Depot.LimitMm(vehicle.Type);
@@ -38,6 +41,7 @@ public sealed class TyreSet
         var n = vehicle.Positions.Length;
         (Tyres, SinceKm, Winter) = (new Tyre[n], new double[n], new bool[n]);
         Age();
+        log?.Opens(vehicle.Positions, Tyres);
     }
 
     private double KmPerDay => _vehicle.KmPerWeek / 7;
@@ -57,7 +61,7 @@ public sealed class TyreSet
     }
 
     /// <summary>Wear profile of the pattern on this kind of axle, the same for the whole fleet.</summary>
-    private double[] Profile(int axle)
+    public double[] Profile(int axle)
     {
         if (_profiles.TryGetValue(axle, out var profile)) return profile;
         var role = _vehicle.Type.IsTrailer ? 0 : axle == 0 ? 1 : 2;
@@ -108,6 +112,7 @@ public sealed class TyreSet
         {
             var g = _vehicle.GeometryAt(-7.0 * w + 3);
             var slip = _vehicle.MeanSlip(g, stand);
+            if (w == (weeks + 1) / 2 && _log is not null) _log.Earlier[here[0].Axle] = new(weeks, km, _vehicle.Wheels(stand));
             foreach (var p in here) RunOne(p, g, slip[p.Index], km / weeks, 1);
         }
     }
@@ -129,7 +134,7 @@ public sealed class TyreSet
     {
         var rates = RatesAt(p, g, slipDeg, month);
         var tyre = Tyres[p.Index];
-        tyre.Run(km * (_vehicle.Type.Axles[p.Axle].Lifting ? 0.6 : 1), rates, -p.Sign * slipDeg);
+        tyre.Run(km * _vehicle.Type.Axles[p.Axle].DownShare, rates, -p.Sign * slipDeg);
         if (_vehicle.CuppedPosition == p.Index) tyre.CuppingMm = Math.Min(1.4, tyre.CuppingMm + km * 6e-5);
     }
 
@@ -143,11 +148,18 @@ public sealed class TyreSet
         var g = _vehicle.GeometryAt(day + 0.5);
         var slip = _vehicle.MeanSlip(g, Tyres);
         var month = _months[_scenario.At(day).Month - 1];
+        _log?.Days.Add((km, month, _vehicle.Wheels(Tyres)));
         foreach (var p in _vehicle.Positions) RunOne(p, g, slip[p.Index], km, month);
     }
 
     /// <summary>What the depot does to the tyres at the end of a day.</summary>
-    public void Evening(double day, double odometerKm)
+    public void Evening(int day, double odometerKm)
+    {
+        Serve(day, odometerKm);
+        _log?.Evening(day, _vehicle.Positions, Tyres);
+    }
+
+    private void Serve(int day, double odometerKm)
     {
         if (day == _seasonDay)
         {
@@ -223,13 +235,13 @@ public sealed class TyreSet
     }
 
     private double[] LossPer1000Km(Position p, double[] rates) =>
-        [.. rates.Select((r, s) => Tyres[p.Index].Loss(s, 1000, r) * (_vehicle.Type.Axles[p.Axle].Lifting ? 0.6 : 1))];
+        [.. rates.Select((r, s) => Tyres[p.Index].Loss(s, 1000, r) * _vehicle.Type.Axles[p.Axle].DownShare)];
 
     /// <summary>Distance, km, until the first groove reaches the limit if nothing changes; 0 when one already has.</summary>
     public double RemainingKm(Position p, Geometry g, double slipDeg, double limitMm)
     {
         const double step = 500;
-        var share = _vehicle.Type.Axles[p.Axle].Lifting ? 0.6 : 1;
+        var share = _vehicle.Type.Axles[p.Axle].DownShare;
         var rates = RatesAt(p, g, slipDeg);
         var (tyre, grooves) = (Tyres[p.Index], _vehicle.Type.Grooves);
         var depth = (double[])tyre.DepthMm.Clone();

@@ -1,3 +1,5 @@
+using WearWatch.Simulator.Best;
+
 namespace WearWatch.Simulator;
 
 /// <summary>A sudden change of a vehicle's steering pull or off-centre angle.</summary>
@@ -20,6 +22,8 @@ public sealed class VehicleHistory
     public List<Step> Steps { get; } = [];
     public FleetVehicle Vehicle => _v;
     public long Samples { get; private set; }
+    /// <summary>What the best possible is told; null where it is not asked for.</summary>
+    public VehicleLog? Log { get; }
     public double OdometerKm => _odometer[^1];
     public (double Pull, double OffCentre) Steering => _days[^1];
 
@@ -27,9 +31,10 @@ public sealed class VehicleHistory
     public VehicleHistory(FleetVehicle vehicle, Scenario scenario, RoadNetwork roads, Technician[] technicians, double[] months, long samples)
     {
         (_v, _s, _roads, _budget) = (vehicle, scenario, roads, samples);
+        Log = scenario.Best ? new() : null;
         _rowsPerTrip = Math.Min(6000, samples / (double)scenario.Weeks);
-        Tyres = new(vehicle, scenario, months, Rows);
-        Surveys = new(vehicle, scenario, technicians, Rows);
+        Tyres = new(vehicle, scenario, months, Rows, Log);
+        Surveys = new(vehicle, scenario, technicians, Rows, Log);
         var random = new RandomStream(scenario.Seed, 10, vehicle.Index);
         _odometer = new double[scenario.Days + 1];
         _odometer[0] = vehicle.OdometerKm;
@@ -63,8 +68,8 @@ public sealed class VehicleHistory
             Tyres.Evening(day, _odometer[day + 1]);
             NoteStep(day, morning);
         }
-        Paperwork.DriverReports(_v, _s, _days, Rows);
-        Paperwork.Workshop(_v, _s, Odometer, Rows);
+        Paperwork.DriverReports(_v, _s, _days, Rows, Log);
+        Paperwork.Workshop(_v, _s, Odometer, Rows, Log);
     }
 
     private StraightLaw Law(double day) => StraightLaw.Of(_v.Type, _v.Positions, _v.GeometryAt(day), _v.Wheels(Tyres.Tyres));
@@ -109,7 +114,9 @@ public sealed class VehicleHistory
         }
         var name = $"steering/{_v.Id}/{_s.Date(day)}.csv.gz";
         Directory.CreateDirectory(Path.Combine(folder, "steering", _v.Id));
-        var written = new Trip(_v.Type, _v.Sensors, _v.Depot, drive, plan, random).Write(Path.Combine(folder, name));
+        var remainder = Log is null ? null : new TripRemainder(_v.Sensors);
+        var written = new Trip(_v.Type, _v.Sensors, _v.Depot, drive, plan, random) { Remainder = remainder }.Write(Path.Combine(folder, name));
+        if (remainder?.Of(day) is { } means) Log!.Trips.Add(means);
         Samples += written;
         _budget -= written;
         Rows.Add("steering_streams", $"{_v.Id}-{_s.Date(day)}", _v.Id, name, _s.Time(start), 10);

@@ -13,6 +13,8 @@ public sealed record AxleType(
     bool Steered = false, bool Driven = false, bool Lifting = false, bool Duals = false)
 {
     public int TyresPerSide => Duals ? 2 : 1;
+    /// <summary>Share of the distance that it runs on the road.</summary>
+    public double DownShare => Lifting ? 0.6 : 1;
 }
 
 /// <summary>

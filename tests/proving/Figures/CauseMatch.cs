@@ -1,4 +1,3 @@
-using WearWatch.Contracts.V1;
 using WearWatch.Proving.Run;
 
 namespace WearWatch.Proving.Figures;
@@ -12,18 +11,19 @@ internal static class CauseMatch
     /// </summary>
     private static readonly string[] s_group = ["caster_split", "conicity", "camber_split"];
 
-    public static bool Is(Cause cause, TrueQuantity truth, string signals)
+    public static bool Is(SaidCause said, TrueQuantity truth, string signals)
     {
-        var said = Case.WireName(cause.Quantity);
-        if (said == truth.Quantity) return (!cause.HasAxle || truth.Axle is null || cause.Axle == truth.Axle) && Case.WireName(cause.Side) == truth.Side;
+        if (said.Quantity == truth.Quantity) return Same(said, truth);
         var apart = signals == "torque" ? s_group[..2] : s_group;
-        return apart.Contains(said) && apart.Contains(truth.Quantity);
+        return apart.Contains(said.Quantity) && apart.Contains(truth.Quantity);
     }
 
-    /// <summary>Whether the largest true quantity is among the first causes named.</summary>
-    public static bool Among(Case c, int first) => c.Diagnosis!.Causes.Take(first).Any(cause => Is(cause, c.Truth.Quantities[0], c.Truth.Signals));
+    private static bool Same(SaidCause said, TrueQuantity truth) =>
+        said.Quantity == truth.Quantity && (said.Axle is null || truth.Axle is null || said.Axle == truth.Axle) && said.Side == truth.Side;
 
-    /// <summary>What the product says of exactly this quantity.</summary>
-    public static Cause? Of(Case c, TrueQuantity truth) => c.Diagnosis?.Causes.FirstOrDefault(cause =>
-        Case.WireName(cause.Quantity) == truth.Quantity && (!cause.HasAxle || truth.Axle is null || cause.Axle == truth.Axle) && Case.WireName(cause.Side) == truth.Side);
+    /// <summary>Whether the largest true quantity is among the first causes named.</summary>
+    public static bool Among(Case c, IReadOnlyList<SaidCause> causes, int first) => causes.Take(first).Any(cause => Is(cause, c.Truth.Quantities[0], c.Truth.Signals));
+
+    /// <summary>What is said of exactly this quantity.</summary>
+    public static SaidCause? Of(IReadOnlyList<SaidCause> causes, TrueQuantity truth) => causes.FirstOrDefault(cause => Same(cause, truth));
 }

@@ -61,24 +61,32 @@ internal sealed record Report
     {
         var text = new StringBuilder();
         text.Append(CultureInfo.InvariantCulture, $"{Part}: {Fleets} fleets, {Vehicles} vehicles, {Elapsed.TotalSeconds:0} s{(NotDiagnosed > 0 ? $", {NotDiagnosed} without a diagnosis" : "")}\n");
-        text.Append(CultureInfo.InvariantCulture, $"{"",-44}{"figure",9}   {"90 % interval",-19}{"counted",8}\n");
-        Lines(text, Main);
-        foreach (var (method, figures) in Baselines) Titled(text, $"plain: {method}", figures);
+        var (best, bars) = (All().Any(f => f.Best is not null), All().Any(f => f.Bar is not null));
+        text.Append(CultureInfo.InvariantCulture, $"{"",-44}{"figure",9}   {"90 % interval",-19}{"counted",8}{(best ? $"{"best",9}{"our share",11}" : "")}{(bars ? "   asked" : "")}\n");
+        Lines(text, Main, best);
+        foreach (var (method, figures) in Baselines) Titled(text, $"plain: {method}", figures, best);
         foreach (var (split, groups) in Splits)
-            foreach (var (group, figures) in groups) Titled(text, $"{split.Replace('_', ' ')}: {group.Replace('_', ' ')}", figures);
+            foreach (var (group, figures) in groups) Titled(text, $"{split.Replace('_', ' ')}: {group.Replace('_', ' ')}", figures, best);
         return text.ToString();
     }
 
-    private static void Titled(StringBuilder text, string title, FigureList figures)
+    private IEnumerable<Figure> All() => Main.Concat(Splits.SelectMany(s => s.Groups).SelectMany(g => g.Figures)).Select(f => f.Figure);
+
+    private static void Titled(StringBuilder text, string title, FigureList figures, bool best)
     {
         text.Append('\n').Append(title).Append('\n');
-        Lines(text, figures);
+        Lines(text, figures, best);
     }
 
-    private static void Lines(StringBuilder text, FigureList figures)
+    private static void Lines(StringBuilder text, FigureList figures, bool best)
     {
         foreach (var (name, f) in figures)
-            text.Append(CultureInfo.InvariantCulture, $"  {name,-42}{Word(f.Value),9}   {(double.IsNaN(f.Low) ? "" : $"{Word(f.Low)} to {Word(f.High)}"),-19}{f.N,8}\n");
+        {
+            var line = string.Create(CultureInfo.InvariantCulture, $"  {name,-42}{Word(f.Value),9}   {(double.IsNaN(f.Low) ? "" : $"{Word(f.Low)} to {Word(f.High)}"),-19}{f.N,8}");
+            if (best) line += string.Create(CultureInfo.InvariantCulture, $"{(f.Best is { } b ? Word(b.Value) : ""),9}{(double.IsNaN(f.ShareOfBest) ? "" : f.ShareOfBest.ToString("0.000", CultureInfo.InvariantCulture)),11}");
+            if (f.Bar is not null) line += $"   {f.Bar}{(f.Reached switch { true => ", reached", false => ", not reached", _ => "" })}";
+            text.Append(line.TrimEnd()).Append('\n');
+        }
     }
 
     private static string Word(double value) => double.IsNaN(value) ? "unknown" : value.ToString(Math.Abs(value) >= 100 ? "0" : "0.000", CultureInfo.InvariantCulture);
@@ -95,7 +103,16 @@ internal sealed record Report
         return json;
     }
 
-    private static JsonObject Of(Figure f) => new() { ["value"] = Number(f.Value), ["low"] = Number(f.Low), ["high"] = Number(f.High), ["n"] = f.N };
+    private static JsonObject Of(Figure f)
+    {
+        var json = new JsonObject { ["value"] = Number(f.Value), ["low"] = Number(f.Low), ["high"] = Number(f.High), ["n"] = f.N };
+        if (f.Best is not null) json["best"] = Of(f.Best);
+        if (f.MoreIsBetter && f.Best is not null) json["share_of_best"] = Number(f.ShareOfBest);
+        if (f.Bar is null) return json;
+        json["asked"] = new JsonObject { ["at_least"] = Number(f.Bar.Least), ["at_most"] = Number(f.Bar.Most) };
+        json["reached"] = f.Reached;
+        return json;
+    }
 
     private static JsonNode? Number(double value) => double.IsNaN(value) || double.IsInfinity(value) ? null : JsonValue.Create(Math.Round(value, 4));
 }

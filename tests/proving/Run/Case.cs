@@ -14,6 +14,8 @@ internal sealed record Case
     public required IReadOnlyDictionary<string, string> Blunders { get; init; }
     /// <summary>Null where the product gave none.</summary>
     public required Contracts.V1.Diagnosis? Diagnosis { get; init; }
+    /// <summary>The best possible on the same data; null where it was not worked out.</summary>
+    public BestVerdict? Best { get; init; }
     /// <summary>Place in the worklist, from 1; last where it is not listed.</summary>
     public required int Rank { get; init; }
     public required PlainVehicle Plain { get; init; }
@@ -23,6 +25,9 @@ internal sealed record Case
     public required IReadOnlyDictionary<string, string> Asked { get; init; }
 
     public double Probability => Diagnosis?.MisalignedProbability ?? 0;
+    /// <summary>Causes that the product names, most probable first.</summary>
+    public IReadOnlyList<SaidCause> Causes => _causes ??= [.. (Diagnosis?.Causes ?? []).Select(c => new SaidCause(WireName(c.Quantity), c.HasAxle ? c.Axle : null, WireName(c.Side), c.Low, c.High))];
+    private IReadOnlyList<SaidCause>? _causes;
     public bool Large => Truth.Stratum == "large";
     public double Years => (End.DayNumber - From.DayNumber) / 365.25;
 

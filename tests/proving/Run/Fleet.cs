@@ -18,6 +18,7 @@ internal sealed class Fleet(ulong seed, string folder, bool flat, Options option
     private string On => flat ? " on flat roads" : "";
     private string Import => Path.Combine(folder, "import");
     private string TruthFile => Path.Combine(folder, "truth.json");
+    private string BestFile => Path.Combine(folder, "best.json");
     private string PlainFile => Path.Combine(folder, "plain.json");
     private string AskedFile => Path.Combine(folder, "asked.json");
     private string Data => Path.Combine(folder, "product");
@@ -63,7 +64,9 @@ internal sealed class Fleet(ulong seed, string folder, bool flat, Options option
 
     private async Task Simulate(CancellationToken cancel)
     {
-        await using (var simulator = Child.Start(options.Simulator, null, "--out", Import, "--truth", TruthFile, "--seed", $"{seed}", "--vehicles", $"{options.Vehicles}", "--max-samples", $"{options.MaxSamples}", "--trips", flat ? "flat" : "banked"))
+        string[] best = options is { Part: "verdict", Best: true } ? ["--best", BestFile] : [];
+        await using (var simulator = Child.Start(options.Simulator, null, ["--out", Import, "--truth", TruthFile, "--seed", $"{seed}", "--vehicles", $"{options.Vehicles}",
+            "--max-samples", $"{options.MaxSamples}", "--trips", flat ? "flat" : "banked", "--surveys", options.SteeringOnly ? "none" : "taken", .. best]))
             await simulator.Done(code => code == 0, cancel);
         var truth = Truth.Read(TruthFile);
         File.WriteAllText(PlainFile, JsonSerializer.Serialize(PlainFolder.Read(Import, truth.From, truth.End)));
@@ -76,9 +79,10 @@ internal sealed class Fleet(ulong seed, string folder, bool flat, Options option
         var truth = Truth.Read(TruthFile);
         var plain = JsonSerializer.Deserialize<Dictionary<string, PlainVehicle>>(File.ReadAllText(PlainFile))!;
         var asked = JsonSerializer.Deserialize<Dictionary<string, string>>(File.ReadAllText(AskedFile))!;
+        var best = File.Exists(BestFile) ? BestVerdict.Read(BestFile) : new Dictionary<string, BestVerdict>();
         var blunders = truth.Surveys.GroupBy(b => b.SurveyId).ToDictionary(g => g.Key, g => g.First().Kind);
         var cases = new List<Case>();
-        foreach (var vehicle in truth.Vehicles)
+        foreach (var vehicle in truth.Vehicles.Where(v => !options.SteeringOnly || v.Signals != "gauge_only"))
         {
             cases.Add(new Case
             {
@@ -89,6 +93,7 @@ internal sealed class Fleet(ulong seed, string folder, bool flat, Options option
                 Blunders = blunders,
                 Diagnosis = await product.DiagnosisOf(vehicle.VehicleId, cancel),
                 Rank = rank.GetValueOrDefault(vehicle.VehicleId, worklist.Count + 1),
+                Best = best.GetValueOrDefault(vehicle.VehicleId),
                 Plain = plain[vehicle.VehicleId],
                 Asked = asked,
             });

@@ -13,7 +13,7 @@ internal sealed record Truth
     /// <summary>Blunders planted in surveys.</summary>
     public required IReadOnlyList<Blunder> Surveys { get; init; }
 
-    private static readonly JsonSerializerOptions s_json = new()
+    internal static readonly JsonSerializerOptions s_json = new()
     {
         PropertyNamingPolicy = JsonNamingPolicy.SnakeCaseLower,
         NumberHandling = JsonNumberHandling.AllowNamedFloatingPointLiterals,
@@ -39,6 +39,8 @@ internal sealed record TrueVehicle
     /// <summary><c>gauge_only</c>, <c>angle</c> or <c>torque</c>.</summary>
     public required string Signals { get; init; }
     public required bool AssistMeasured { get; init; }
+    /// <summary>Whether it logs where it is.</summary>
+    public bool Position { get; init; }
     public double? SteeringPullNm { get; init; }
     public double? SteeringPullTorsionBarNm { get; init; }
     public double? OffCentreDeg { get; init; }
@@ -60,3 +62,15 @@ internal sealed record TrueSurvey(string SurveyId, DateOnly Date, double Odomete
 
 /// <summary>A sudden change of at least 0.3 N·m at the column or 2° at the wheel.</summary>
 internal sealed record TrueStep(DateOnly Date, double SteeringPullNm, double OffCentreDeg, string Because);
+
+/// <summary>What the simulator, knowing all but the wheel angles, says of one vehicle on the same data.</summary>
+internal sealed record BestVerdict(string VehicleId, double Probability, IReadOnlyList<SaidCause> Causes)
+{
+    private sealed record All(IReadOnlyList<BestVerdict> Vehicles);
+
+    public static IReadOnlyDictionary<string, BestVerdict> Read(string path) =>
+        JsonSerializer.Deserialize<All>(File.ReadAllText(path), Truth.s_json)!.Vehicles.ToDictionary(v => v.VehicleId);
+}
+
+/// <summary>A cause as it was named, in the words of truth.json; the interval holds 90 %, deg.</summary>
+internal sealed record SaidCause(string Quantity, int? Axle, string? Side, double Low, double High);

@@ -3,6 +3,21 @@ namespace WearWatch.Proving.Scoring;
 /// <summary>A figure with its 90 % bootstrap interval and how many items it counts. NaN where nothing could be counted.</summary>
 internal sealed record Figure(double Value, double Low, double High, int N)
 {
+    /// <summary>The same of the best possible on the same data; null where it was not worked out or means nothing.</summary>
+    public Figure? Best { get; init; }
+    /// <summary>What the figure ought to reach; null where nothing is asked.</summary>
+    public Bar? Bar { get; init; }
+
+    /// <summary>Whether more of it is better, so that its share of the best possible says something.</summary>
+    public bool MoreIsBetter { get; init; }
+
+    /// <summary>Value over that of the best possible.</summary>
+    public double ShareOfBest => MoreIsBetter && Best is { Value: > 0 } best ? Value / best.Value : double.NaN;
+
+    /// <summary>Whether the bar is reached; where the best possible lies below it, 95 % of the best possible do. Null where unknown.</summary>
+    public bool? Reached => Bar is null || double.IsNaN(Value) ? null
+        : Bar.Holds(Value) || (MoreIsBetter && Best is { } best && best.Value < Bar.Least && Value >= 0.95 * best.Value);
+
     public static Figure Unknown { get; } = new(double.NaN, double.NaN, double.NaN, 0);
 }
 
@@ -40,4 +55,16 @@ internal static class Bootstrap
         var below = (int)at;
         return below + 1 < sorted.Count ? sorted[below] + (at - below) * (sorted[below + 1] - sorted[below]) : sorted[below];
     }
+}
+
+/// <summary>The range a figure ought to lie in.</summary>
+internal sealed record Bar(double Least, double Most)
+{
+    public static Bar AtLeast(double value) => new(value, double.PositiveInfinity);
+
+    public static Bar AtMost(double value) => new(double.NegativeInfinity, value);
+
+    public bool Holds(double value) => value >= Least && value <= Most;
+
+    public override string ToString() => double.IsPositiveInfinity(Most) ? FormattableString.Invariant($"≥ {Least}") : double.IsNegativeInfinity(Least) ? FormattableString.Invariant($"≤ {Most}") : FormattableString.Invariant($"{Least} to {Most}");
 }

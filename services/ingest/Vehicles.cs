@@ -83,6 +83,11 @@ internal static class Vehicles
             TyrePrice = (decimal?)p.Optional(sent.HasTyrePrice, sent.TyrePrice, $"{path}.tyre_price", 0, Limits.Money),
             PressureKpa = p.Optional(sent.HasPressureKpa, sent.PressureKpa, $"{path}.pressure_kpa", 100, 1_500, "kPa"),
             TrackM = p.Optional(sent.HasTrackM, sent.TrackM, $"{path}.track_m", 0.8, 3, "m"),
+            ToeAdjustable = sent.HasToeAdjustable ? sent.ToeAdjustable : null,
+            CamberAdjustable = sent.HasCamberAdjustable ? sent.CamberAdjustable : null,
+            CasterAdjustable = sent.HasCasterAdjustable ? sent.CasterAdjustable : null,
+            ScrubRadiusMm = p.Optional(sent.HasScrubRadiusMm, sent.ScrubRadiusMm, $"{path}.scrub_radius_mm", -150, 150, "mm"),
+            TrailMm = p.Optional(sent.HasTrailMm, sent.TrailMm, $"{path}.trail_mm", -50, 100, "mm"),
         };
     }
 

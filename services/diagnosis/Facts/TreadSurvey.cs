@@ -13,7 +13,14 @@ public enum HandRub
     Neither,
 }
 
-public enum Seen { Cord, Cut, Bulge, Cupped, FlatSpot, HeelToe, Unsafe }
+public enum Seen
+{
+    Cord, Cut, Bulge, Cupped, FlatSpot, HeelToe, Unsafe,
+    /// <summary>Ribs that do not lie side by side stand lower than the rest.</summary>
+    RibDepression,
+    /// <summary>A narrow channel worn along the edges of the ribs.</summary>
+    RiverWear,
+}
 
 /// <summary>All readings of one vehicle on one walk round it, finished or not. Depths in mm, whatever the gauge showed.</summary>
 public sealed record TreadSurvey

@@ -3,7 +3,12 @@ namespace WearWatch.Diagnosis.Facts;
 public enum VehicleClass { Car, Van, Truck, Bus, Trailer }
 
 /// <summary>How an axle's wheels are guided; decides what can be adjusted and what camber does under load.</summary>
-public enum Suspension { Unknown, BeamLeaf, BeamAir, Strut, DoubleWishbone, TrailingArm, SemiTrailingArm }
+public enum Suspension
+{
+    Unknown, BeamLeaf, BeamAir, Strut, DoubleWishbone, TrailingArm, SemiTrailingArm,
+    /// <summary>Beam on coil springs, held by links and a lateral rod.</summary>
+    BeamCoil,
+}
 
 /// <summary>What helps the driver turn the wheel; decides what a torque reading means.</summary>
 public enum SteeringAssist { Unknown, None, Hydraulic, ElectroHydraulic, Electric }
@@ -69,6 +74,14 @@ public sealed record Axle
     public double? PressureKpa { get; init; }
     /// <summary>Track width, m.</summary>
     public double? TrackM { get; init; }
+    /// <summary>Whether the angle can be set on this axle, where it differs from what is usual of its suspension.</summary>
+    public bool? ToeAdjustable { get; init; }
+    public bool? CamberAdjustable { get; init; }
+    public bool? CasterAdjustable { get; init; }
+    /// <summary>Contact centre outboard of the steering axis, mm; the class's usual figure where absent.</summary>
+    public double? ScrubRadiusMm { get; init; }
+    /// <summary>Mechanical trail, mm; the class's usual figure where absent.</summary>
+    public double? TrailMm { get; init; }
 
     public IEnumerable<Position> Positions() => Duals
         ? [new(Number, Side.Left, Dual.Outer), new(Number, Side.Left, Dual.Inner), new(Number, Side.Right, Dual.Inner), new(Number, Side.Right, Dual.Outer)]

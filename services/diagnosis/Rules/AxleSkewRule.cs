@@ -35,9 +35,9 @@ public static class AxleSkewRule
             EvidenceAgainst = against,
             Confounders = Confounders(figures, axles, sign),
             Causes = causes,
-            FirstCheck = FirstCheck.For(figures.Vehicle.Class == VehicleClass.Trailer ? CheckFor.TrailerDirection : CheckFor.AxleDirection, lead.Axle.Suspension),
-            AlignmentMends = causes[0].IsAngle(),
-            Caution = Cautions.UnderVehicle,
+            FirstCheck = FirstCheck.For(figures.Vehicle.Class == VehicleClass.Trailer ? CheckFor.TrailerDirection : CheckFor.AxleDirection, figures.Vehicle, lead.Axle),
+            AlignmentMends = figures.Vehicle.Mends(lead.Axle, causes[0]),
+            Caution = Cautions.Under(lead.Axle),
             Strength = lead.Strength,
         };
     }

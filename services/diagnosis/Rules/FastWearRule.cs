@@ -30,6 +30,8 @@ public static class FastWearRule
         var slides = axle is null ? [] : Slides(figures, axle).ToList();
         var rate = worst.RateMmPer1000Km is { } r ? $", {TradeWords.Full(r, 3, TradeWords.PerDistance)}" : "";
         IReadOnlyList<Quantity> causes = axle is null ? [Quantity.Duty, Quantity.Pressure]
+            // One member of a dual pair alone carries more than its share, or less: pressure and diameter before anything else.
+            : slides.Count == 0 && OneMember(figures, axle, tyres) ? [Quantity.Pressure, Quantity.Duty]
             : slides.Count > 0 ? [vehicle.ToeOf(axle.Number), Quantity.Camber, Quantity.Duty]
             : [Quantity.Duty, Quantity.Pressure, vehicle.ToeOf(axle.Number)];
         var others = axle is null ? [] : figures.Tyres.Where(t => t.Position.Axle != axle.Number && Stands(t)).ToList();
@@ -50,11 +52,16 @@ public static class FastWearRule
                 new("The first 1 to 2 mm of a new tyre wear atypically", "One more survey"),
             ],
             Causes = causes,
-            FirstCheck = FirstCheck.For(CheckFor.FastWear, axle?.Suspension),
-            AlignmentMends = causes[0].IsAngle(),
+            FirstCheck = axle is not null && slides.Count == 0 && OneMember(figures, axle, tyres) ? FirstCheck.For(CheckFor.DepthMatch) : FirstCheck.For(CheckFor.FastWear),
+            AlignmentMends = axle is not null && vehicle.Mends(axle, causes[0]),
             Strength = tyres.Max(t => RuleLimits.Strength(t.LogRateRatio!.Value)),
         };
     }
+
+    /// <summary>Every fast tyre has a mate in its pair that was measured and is not fast.</summary>
+    private static bool OneMember(VehicleFigures figures, Axle axle, IReadOnlyList<TyreFigures> tyres) =>
+        axle.Duals && tyres.All(t =>
+            figures.At(t.Position with { Dual = t.Position.Dual == Dual.Outer ? Dual.Inner : Dual.Outer }) is { RateBorrowed: false, LogRateRatio: not null } mate && !tyres.Contains(mate));
 
     /// <summary>Edge slope or feather of the axle that says its tyres slide sideways.</summary>
     private static IEnumerable<Evidence> Slides(VehicleFigures figures, Axle axle)

@@ -21,6 +21,7 @@ public static class FeatherReading
     /// <summary>The hand rubs alone, mm.</summary>
     private static Estimate? Felt(TyreFigures tyre)
     {
+        if (tyre.FeltMm is not null) return tyre.FeltMm;
         var rubs = tyre.RubsCatchingOutward + tyre.RubsCatchingInward + tyre.RubsCatchingNeither;
         if (rubs == 0) return null;
         var net = (tyre.RubsCatchingOutward - tyre.RubsCatchingInward) / (double)rubs;

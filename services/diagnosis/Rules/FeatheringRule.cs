@@ -49,9 +49,9 @@ public static class FeatheringRule
             EvidenceAgainst = [.. ProfileEvidence(figures, edge, pair, both, RuleLimits.Agrees(profile, -sign) ? -sign : 0), .. workshopAgainst],
             Confounders = Confounders(pair, both),
             Causes = causes,
-            FirstCheck = FirstCheck.For(CheckFor.Toe, axle.Suspension),
-            AlignmentMends = true,
-            Caution = Cautions.UnderVehicle,
+            FirstCheck = FirstCheck.For(CheckFor.Toe, figures.Vehicle, axle),
+            AlignmentMends = vehicle.Mends(axle, causes[0]),
+            Caution = Cautions.Under(axle),
             Strength = pair.Strength,
         };
     }
@@ -87,9 +87,10 @@ public static class FeatheringRule
                 new("One tyre turned on its rim carries its old edges the other way", "Ask whether it was turned; the next rub is fresh"),
             ],
             Causes = causes,
-            FirstCheck = FirstCheck.For(CheckFor.TurnAngles, axle.Suspension),
+            FirstCheck = FirstCheck.For(CheckFor.TurnAngles, figures.Vehicle, axle),
+            // What stands first may lie at the rear axles: the angle decides, not what this axle lets set.
             AlignmentMends = causes[0].IsAngle(),
-            Caution = Cautions.UnderVehicle,
+            Caution = Cautions.Under(axle),
             Strength = pair.Strength,
         };
     }

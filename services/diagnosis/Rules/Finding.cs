@@ -7,6 +7,7 @@ public enum FindingKind
     SteeringPull, OffCentreWheel, Feathering, OneEdgeWear, AxleSkew, CentreWear, ShoulderWear, Cupping, DiagonalWear,
     FastWear, PressureOff, DepthGap, BelowLimit, UnsafeTyre, Unusual,
     SteeringPullChange, OffCentreChange, WearRateChange,
+    HeelToe, FlatSpot, RibWear, BrakeDrag, UnevenReturn, SteeringBinds, WheelHop, OneWayDuty,
 }
 
 /// <summary>One condition on one axle or wheel, with its evidence.</summary>

@@ -1,3 +1,7 @@
+using WearWatch.Diagnosis.Causes;
+using WearWatch.Diagnosis.Chassis;
+using WearWatch.Diagnosis.Facts;
+
 namespace WearWatch.Diagnosis.Rules;
 
 /// <summary>The rule set. A new rule is a static function from a vehicle's figures to findings, added to <see cref="All"/>.</summary>
@@ -20,10 +24,29 @@ public static class GeometryRules
         DiagonalWearRule.Find,
         FastWearRule.Find,
         ChangeRule.Find,
+        HeelToeRule.Find,
+        FlatSpotRule.Find,
+        RibWearRule.Find,
+        BrakeDragRule.Find,
+        UnevenReturnRule.Find,
+        SteeringBindsRule.Find,
+        WheelHopRule.Find,
+        OneWayDutyRule.Find,
     ];
 
     /// <summary>All findings on one vehicle: by safety, then strength, then place; the order of the input does not matter.</summary>
-    public static IReadOnlyList<Finding> Find(VehicleFigures figures) => InOrder(figures, All.SelectMany(rule => rule(figures)));
+    public static IReadOnlyList<Finding> Find(VehicleFigures figures)
+    {
+        var check = ChassisCheck.Of(figures.Vehicle, figures.Tolerances);
+        var taken = figures with { Vehicle = check.Vehicle };
+        return InOrder(taken, All.SelectMany(rule => rule(taken)).Select(f => Doubtful(f, check.Problems)));
+    }
+
+    /// <summary>A finding that names angles says where the chassis data contradict themselves.</summary>
+    private static Finding Doubtful(Finding finding, IReadOnlyList<CannotTell> problems) =>
+        problems.Count == 0 || !finding.Causes.Any(c => c.IsAngle())
+            ? finding
+            : finding with { Confounders = [.. finding.Confounders, .. problems.Select(p => new Confounder($"The chassis data leave open {p.What}: {p.Because}", $"Record {p.WouldHelp}"))] };
 
     /// <summary>Findings in the order people read them.</summary>
     public static IReadOnlyList<Finding> InOrder(VehicleFigures figures, IEnumerable<Finding> findings) =>

@@ -35,7 +35,8 @@ public static class OneEdgeWearRule
         var finAgrees = RuleLimits.Agrees(feather.Shared, sign) || (feather.Shared is null && RuleLimits.Agrees(feather.Worse, sign));
         var finContradicts = RuleLimits.Agrees(feather.Shared, -sign);
         var finClean = FeatherReading.Clean(pair.Left) && FeatherReading.Clean(pair.Right);
-        var causes = MirroredCauses(figures, axle, pair.Dual, sign, finAgrees, finContradicts, finClean);
+        var roll = sign > 0 && !finAgrees ? Rolling(figures, axle) : [];
+        var causes = MirroredCauses(figures, axle, pair.Dual, sign, finAgrees, finContradicts, finClean, roll.Count > 0);
 
         var (workshopFor, workshopAgainst) = Witnesses.Workshop(figures);
         var against = new List<Evidence>(workshopAgainst);
@@ -43,7 +44,7 @@ public static class OneEdgeWearRule
         if (finClean) against.Add(new("The rib edges are clean on both tyres", [.. pair.Left!.SurveyIds, .. pair.Right!.SurveyIds]));
 
         var edge = sign > 0 ? "outboard" : "inboard";
-        var points = !causes[0].IsAngle() ? "" : (causes[0], finAgrees) switch
+        var points = roll.Count > 0 ? "; another axle shows the same, as a high body rolling in turns does" : !causes[0].IsAngle() ? "" : (causes[0], finAgrees) switch
         {
             (Quantity.Camber, _) => sign > 0 ? "; both agree on camber with the tops leaning out" : "; both agree on camber with the tops leaning in",
             (_, true) => sign > 0 ? "; their rib edges agree on toe-in" : "; their rib edges agree on toe-out",
@@ -57,26 +58,41 @@ public static class OneEdgeWearRule
             Sentence = $"Both {TradeWords.Tyres(vehicle, axle.Number, pair.Dual)} wear their {edge} shoulders faster than normal "
                 + $"({TradeWords.LeftRight(pair.LeftFigure * sign, pair.RightFigure * sign, 3, TradeWords.PerDistance)}; {TradeWords.Range(shared * sign, 3)}){points}.",
             EvidenceFor = [Witnesses.EdgeOf(vehicle, pair.Left!), Witnesses.EdgeOf(vehicle, pair.Right!),
-                .. finAgrees ? Witnesses.Wheels(vehicle, feather, Witnesses.FeatherOf, sign, sign) : [], .. workshopFor],
+                .. finAgrees ? Witnesses.Wheels(vehicle, feather, Witnesses.FeatherOf, sign, sign) : [], .. roll, .. workshopFor],
             EvidenceAgainst = against,
             Confounders = MirroredConfounders(figures, axle, sign),
             Causes = causes,
-            FirstCheck = FirstCheck.For(causes[0] == Quantity.Camber ? CheckFor.WheelCamber : CheckFor.Toe, axle.Suspension),
-            AlignmentMends = causes[0].IsAngle(),
-            Caution = Cautions.UnderVehicle,
+            FirstCheck = FirstCheck.For(causes[0] == Quantity.Camber ? CheckFor.WheelCamber : CheckFor.Toe, figures.Vehicle, axle),
+            AlignmentMends = vehicle.Mends(axle, causes[0]),
+            Caution = Cautions.Under(axle),
             Strength = pair.Strength,
         };
     }
 
-    private static IReadOnlyList<Quantity> MirroredCauses(VehicleFigures figures, Axle axle, Dual dual, double sign, bool finAgrees, bool finContradicts, bool finClean)
+    private static IReadOnlyList<Quantity> MirroredCauses(VehicleFigures figures, Axle axle, Dual dual, double sign, bool finAgrees, bool finContradicts, bool finClean, bool roll)
     {
         var toe = figures.Vehicle.ToeOf(axle.Number);
         // Inner duals worn inboard on both sides: the beam bends under load (trade practice).
         if (dual == Dual.Inner && sign < 0) return finAgrees ? [toe, Quantity.Camber, Quantity.Pressure] : [Quantity.Camber, Quantity.Pressure, Quantity.Crown];
+        // The body of a bus or high van leans out in every turn and loads the outboard shoulders of all its axles alike.
+        if (roll) return [Quantity.Duty, Quantity.Camber, toe, Quantity.Pressure];
         if (finContradicts) return [Quantity.Camber, toe, Quantity.Duty];
         // Rounded shoulders with no fin: cornering (1948 shop manual, pp. 212-213), outboard only.
         if (sign > 0 && finClean && figures.Vehicle.IsFront(axle.Number)) return [Quantity.Duty, Quantity.Pressure, Quantity.Camber, toe];
         return sign > 0 ? [toe, Quantity.Camber, Quantity.Duty] : [toe, Quantity.Camber];
+    }
+
+    /// <summary>Other axles of a high vehicle whose outboard shoulders wear on both sides too.</summary>
+    private static List<Evidence> Rolling(VehicleFigures figures, Axle axle)
+    {
+        if (figures.Vehicle.Class is not (VehicleClass.Bus or VehicleClass.Van)) return [];
+        return [.. from other in figures.Vehicle.Axles
+                   where other.Number != axle.Number
+                   orderby other.Number
+                   let pair = WheelPair.Edge(figures, other, other.Duals ? Dual.Outer : Dual.Single)
+                   where pair.Pattern == PairPattern.Mirrored && pair.Shared!.Value.Value > 0
+                   from tyre in new[] { pair.Left!, pair.Right! }
+                   select Witnesses.EdgeOf(figures.Vehicle, tyre)];
     }
 
     private static IReadOnlyList<Confounder> MirroredConfounders(VehicleFigures figures, Axle axle, double sign)
@@ -88,8 +104,11 @@ public static class OneEdgeWearRule
             if (figures.Vehicle.Class is VehicleClass.Bus or VehicleClass.Van)
                 list.Add(new("Body roll of a high vehicle loads the outboard shoulders", "The fin of the rib edges; the same wear on others of its class and route"));
         }
-        if (axle.Suspension is Suspension.BeamLeaf or Suspension.BeamAir)
-            list.Add(new("Camber of a beam axle changes with load", "Measure loaded as in service"));
+        var row = figures.Vehicle.Chassis(axle).Row;
+        if (row.Beam)
+            list.Add(new($"Camber of a beam axle changes with load, by about {TradeWords.Number(Math.Abs(row.LadenCamberDeg), 2)} deg from empty to laden", "Measure loaded as in service"));
+        else if (row.CamberDegPerCm != 0)
+            list.Add(OneWheelWear.CamberWithHeight(row.CamberDegPerCm));
         list.Add(new("Tyres turned on the rim change their shoulders over", "Ask whether both were turned; the fin turns with the tyre"));
         return list;
     }

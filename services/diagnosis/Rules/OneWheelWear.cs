@@ -34,24 +34,28 @@ internal static class OneWheelWear
                 + $"{TradeWords.Full(slope * sign, 3, TradeWords.PerDistance)}, {mate}{names}.",
             EvidenceFor = [Witnesses.EdgeOf(vehicle, tyre), .. pullAgrees ? [Witnesses.Pull(figures, pull!.Value)] : Array.Empty<Evidence>(), .. workshopFor],
             EvidenceAgainst = [.. RuleLimits.Agrees(pull, -pullSign) ? [Witnesses.Pull(figures, pull!.Value)] : Array.Empty<Evidence>(), .. workshopAgainst],
-            Confounders = Confounders(pair),
+            Confounders = Confounders(figures, axle, pair),
             Causes = causes,
-            FirstCheck = FirstCheck.For(CheckFor.WheelCamber, axle.Suspension),
-            AlignmentMends = true,
-            Caution = Cautions.UnderVehicle,
+            FirstCheck = FirstCheck.For(CheckFor.WheelCamber, figures.Vehicle, axle),
+            AlignmentMends = vehicle.Mends(axle, causes[0]),
+            Caution = Cautions.Under(axle),
             Strength = pair.Strength,
         };
     }
 
-    private static IReadOnlyList<Confounder> Confounders(WheelPair pair)
+    private static IReadOnlyList<Confounder> Confounders(VehicleFigures figures, Axle axle, WheelPair pair)
     {
         var list = new List<Confounder>
         {
             new("A worn hub bearing lets the wheel lean like camber", "Play at the raised wheel"),
             new("Tyres of different make or pattern on the axle wear differently", "Read make and pattern on both"),
         };
+        if (figures.Vehicle.Chassis(axle).Row is { CamberDegPerCm: not 0 } row) list.Add(CamberWithHeight(row.CamberDegPerCm));
         if (pair.Mate is not { } mate) list.Add(new("The mate tyre was not measured, so toe, a side force and this wheel alone cannot be told apart", "Measure the mate tyre across its width"));
         else if (mate.StandardError > pair.Limit / 2) list.Add(new("The mate tyre's figure is too rough to call it clean", "One more survey of the mate tyre across its width"));
         return list;
     }
+
+    internal static Confounder CamberWithHeight(double degPerCm) =>
+        new($"A sagged spring leans the wheel by about {TradeWords.Number(Math.Abs(degPerCm), 2)} deg for each 10 mm of ride height", "Ride height left and right before camber");
 }

@@ -111,7 +111,7 @@ public static class DepthGapRule
         Sentence = sentence,
         EvidenceFor = [.. pair.Select(t => new Evidence($"{TradeWords.Sentence(TradeWords.Tyre(figures.Vehicle, t.Position))}: {TradeWords.Full(t.RemainingMm!.Value, 1, "mm")}", t.SurveyIds))],
         Confounders = confounders,
-        FirstCheck = FirstCheck.For(CheckFor.DepthMatch, axle.Suspension),
+        FirstCheck = FirstCheck.For(CheckFor.DepthMatch),
         AlignmentMends = false,
         Caution = Cautions.Demount,
         Strength = RuleLimits.Strength(gap),

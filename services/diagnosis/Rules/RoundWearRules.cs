@@ -35,7 +35,8 @@ public static class CuppingRule
         var worst = TyreGroup.Worst(tyres, t => t.RoundVariationMm);
         var what = tyres.Any(t => t.Seen.Contains(Seen.Cupped)) ? "cupping was seen" : "the depth varies round the tyre";
         var figure = worst is null ? "; how many mm it varies round the tyre was not measured" : $", standard deviation {TradeWords.Full(worst.RoundVariationMm!.Value, 2, "mm")}";
-        var freeRolling = !axle.Driven && !axle.Steered && !figures.Vehicle.IsFront(axle.Number);
+        var freeRolling = figures.Vehicle.FreeRolling(axle);
+        var hop = WheelHopRule.EvidenceOf(figures);
         var steps = tyres.Where(t => t.Seen.Contains(Seen.FlatSpot) || t.Seen.Contains(Seen.HeelToe)).ToList();
         return new Finding
         {
@@ -44,7 +45,7 @@ public static class CuppingRule
             Side = TyreGroup.CommonSide(tyres),
             Dual = TyreGroup.CommonDual(axle, tyres),
             Sentence = $"{TradeWords.Sentence(TyreGroup.Words(figures.Vehicle, tyres))}: {what}{figure}.",
-            EvidenceFor = [.. tyres.Select(t => EvidenceOf(figures, t)), .. Witnesses.Reports(figures, Symptom.Shakes, "shakes")],
+            EvidenceFor = [.. tyres.Select(t => EvidenceOf(figures, t)), .. hop is null ? Array.Empty<Evidence>() : [hop], .. Witnesses.Reports(figures, Symptom.Shakes, "shakes")],
             EvidenceAgainst = [.. steps.Select(t => new Evidence("A flat spot or heel-and-toe step was seen too and moves the reading", t.SurveyIds))],
             Confounders =
             [
@@ -52,9 +53,9 @@ public static class CuppingRule
                 .. freeRolling ? [new("Toe can start cupping on a free-rolling rear axle", "The fin of the rib edges; total toe of this axle")] : Array.Empty<Confounder>(),
             ],
             Causes = freeRolling ? [Quantity.Damper, figures.Vehicle.ToeOf(axle.Number)] : [Quantity.Damper],
-            FirstCheck = FirstCheck.For(CheckFor.WearRoundTyre, axle.Suspension),
+            FirstCheck = FirstCheck.For(CheckFor.WearRoundTyre, figures.Vehicle, axle),
             AlignmentMends = false,
-            Caution = Cautions.UnderVehicle,
+            Caution = Cautions.Under(axle),
             Strength = tyres.Max(t => t.RoundVariationMm is { } v ? RuleLimits.Strength(v) : RuleLimits.AloneErrors.Value),
         };
     }
@@ -74,7 +75,7 @@ public static class DiagonalWearRule
 
     /// <summary>Free-rolling rear tyre that varies round its circumference and slides sideways as well.</summary>
     internal static bool IsDiagonal(VehicleFigures figures, Axle axle, TyreFigures tyre) =>
-        !axle.Driven && !axle.Steered && !figures.Vehicle.IsFront(axle.Number)
+        figures.Vehicle.FreeRolling(axle)
         && CuppingRule.MeasuredToVary(tyre) && !tyre.Seen.Contains(Seen.FlatSpot)
         && (EdgeStands(figures, tyre) || FeatherStands(tyre));
 
@@ -108,9 +109,9 @@ public static class DiagonalWearRule
                 new("Low pressure or much running empty", "Cold pressure; share of empty kilometres"),
             ],
             Causes = [figures.Vehicle.ToeOf(axle.Number), Quantity.Pressure, Quantity.Damper],
-            FirstCheck = FirstCheck.For(CheckFor.DiagonalWear, axle.Suspension),
-            AlignmentMends = true,
-            Caution = Cautions.UnderVehicle,
+            FirstCheck = FirstCheck.For(CheckFor.DiagonalWear, figures.Vehicle, axle),
+            AlignmentMends = figures.Vehicle.Mends(axle, figures.Vehicle.ToeOf(axle.Number)),
+            Caution = Cautions.Under(axle),
             Strength = tyres.Max(t => RuleLimits.Strength(t.RoundVariationMm!.Value)),
         };
     }

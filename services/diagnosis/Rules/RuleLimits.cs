@@ -47,6 +47,15 @@ public static class RuleLimits
     public static readonly RuleLimit AxleGap = new("depth gap across an axle", 2, "mm", "vehicle makers' manuals: at most 2 mm before an alignment check");
     public static readonly RuleLimit AxleGapFrance = new("depth gap across an axle, France", 5, "mm", "France, order JORFARTI000038987859; defer to the law in force");
 
+    // Signals beyond straight driving.
+    public static readonly RuleLimit BrakeFlip = new("pull that braking takes away, share of the pull", 0.5, "1", Memory);
+    public static readonly RuleLimit UnevenReturn = new("steering wheel coming to rest beside straight after turns, both directions together", 1.5, "deg", Memory);
+    public static readonly RuleLimit Binding = new("steering wheel stopping short of straight after turns either way", 4, "deg", Memory);
+    public static readonly RuleLimit HopShare = new("share of the signal's faster movement between 8 and 16 Hz", 0.5, "1", Memory);
+    public static readonly RuleLimit HopTorque = new("steering torque between 8 and 16 Hz, root mean square", 0.2, "N·m", Memory);
+    public static readonly RuleLimit HopAcceleration = new("lateral acceleration between 8 and 16 Hz, root mean square", 0.5, "m/s²", Memory);
+    public static readonly RuleLimit HopSeconds = new("straight driving behind a figure of wheel hop", 60, "s", Memory);
+
     // Look-alikes and old evidence.
     public static readonly RuleLimit OneWayTurning = new("share of turning one way that wears like a fault", 0.60, "1", Memory);
     public static readonly RuleLimit ReportDays = new("age at which a driver's report no longer counts", 90, "days", Practice);
@@ -62,7 +71,7 @@ public static class RuleLimits
     public static IReadOnlyList<RuleLimit> All { get; } =
     [
         AloneErrors, AgreeingErrors, MateErrors, MateShare, SteeringPull, OffCentre, OneEdgeShare, ShoulderShare, Feather, FeltStep,
-        FeltStepError, RoundVariation, FastWear, Pressure, PressureFlat, DualGap, AxleGap, AxleGapFrance, OneWayTurning, ReportDays,
+        BrakeFlip, UnevenReturn, Binding, HopShare, HopTorque, HopAcceleration, HopSeconds, FeltStepError, RoundVariation, FastWear, Pressure, PressureFlat, DualGap, AxleGap, AxleGapFrance, OneWayTurning, ReportDays,
         WorkshopDays, NormalCar, NormalVan, NormalTruck, NormalBus, NormalTrailer,
     ];
 

@@ -31,9 +31,9 @@ internal static class SideForceWear
             EvidenceAgainst = [.. rearContradicts ? rearEvidence : [], .. workshopAgainst, .. AgainstRoad(figures, sign)],
             Confounders = Confounders(figures, sign),
             Causes = causes,
-            FirstCheck = FirstCheck.For(CheckFor.SideForce, axle.Suspension),
+            FirstCheck = FirstCheck.For(CheckFor.SideForce, figures.Vehicle, axle),
             AlignmentMends = causes[0].IsAngle(),
-            Caution = Cautions.UnderVehicle,
+            Caution = Cautions.Under(axle),
             Strength = pair.Strength,
         };
     }

@@ -1,6 +1,7 @@
 using WearWatch.Diagnosis.Changes;
 using WearWatch.Diagnosis.Facts;
 using WearWatch.Diagnosis.Roads;
+using WearWatch.Diagnosis.Steering;
 using WearWatch.Diagnosis.Wear;
 
 namespace WearWatch.Diagnosis.Rules;
@@ -15,6 +16,8 @@ public sealed record VehicleFigures
     /// <summary>Wear of the places around every possible onset; null where only the figures of the present tyres are known.</summary>
     public VehicleWearHistory? Wear { get; init; }
     public SteeringFigures? Steering { get; init; }
+    /// <summary>What the steering signals hold beyond the straight runs: turning, return to centre, wheel hop; null without signals.</summary>
+    public VehicleSteeringStudy? Study { get; init; }
     public UsualRoute? Route { get; init; }
     public IReadOnlyList<DriverReport> DriverReports { get; init; } = [];
     public IReadOnlyList<WorkshopRecord> WorkshopRecords { get; init; } = [];

@@ -72,8 +72,19 @@ internal static class Witnesses
         };
     }
 
+    /// <summary>Share of turning done to the left: as measured, else as the usual route is recorded.</summary>
+    public static double? LeftTurnShare(VehicleFigures figures) => figures.Study?.Duty?.LeftShare ?? figures.Study?.LeftTurnShare ?? figures.Route?.LeftTurnShare;
+
+    /// <summary>What the share of turning rests on.</summary>
+    public static IReadOnlyList<string> TurningRests(VehicleFigures figures) =>
+        figures.Study?.LeftTurnShare is not null ? Signals(figures) : [$"route/{figures.Route?.Route ?? figures.Vehicle.VehicleId}"];
+
+    /// <summary>What a figure of the signals beyond single runs rests on.</summary>
+    public static IReadOnlyList<string> Signals(VehicleFigures figures) =>
+        figures.Steering?.EvidenceRuns is { Count: > 0 } runs ? runs : [$"streams/{figures.Vehicle.VehicleId}"];
+
     /// <summary>How a steady side force from the road or the route shows: +1 when it makes the driver steer left.</summary>
-    public static double? OneWayTurning(VehicleFigures figures) => figures.Route?.LeftTurnShare switch
+    public static double? OneWayTurning(VehicleFigures figures) => LeftTurnShare(figures) switch
     {
         { } share when share >= RuleLimits.OneWayTurning.Value => 1,
         { } share when share <= 1 - RuleLimits.OneWayTurning.Value => -1,

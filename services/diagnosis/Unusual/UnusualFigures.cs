@@ -24,7 +24,7 @@ public static class UnusualFigures
     [
         new("steering pull", "N·m", 2, 0.05, [FindingKind.SteeringPull], null, f => f.Steering?.SteeringPullNm),
         new("off-centre angle", "deg", 1, 0.2, [FindingKind.OffCentreWheel], null, f => f.Steering?.OffCentreDeg),
-        new("extra steering pull while braking", "N·m", 2, 0.05, [FindingKind.SteeringPull], null, f => f.Steering?.BrakePullNm),
+        new("extra steering pull while braking", "N·m", 2, 0.05, [FindingKind.SteeringPull, FindingKind.BrakeDrag], null, f => f.Steering?.BrakePullNm),
         new("extra steering pull under drive", "N·m", 2, 0.05, [FindingKind.SteeringPull], null, f => f.Steering?.DrivePullNm),
         .. OfTyres(true),
         .. OfTyres(false),
@@ -41,7 +41,7 @@ public static class UnusualFigures
         yield return Figure("one-edge wear shared by both sides", TradeWords.PerDistance, 3, 0.002, Slides, f => MeanOf(Pairs(f, front, WheelPair.Edge).Select(p => p.Shared)));
         yield return Figure("one-edge wear toward one side of the vehicle", TradeWords.PerDistance, 3, 0.002, Slides, f => MeanOf(Pairs(f, front, WheelPair.Edge).Select(p => p.Direction)));
         yield return Figure("shoulder over centre wear", TradeWords.PerDistance, 3, 0.002, [FindingKind.ShoulderWear, FindingKind.CentreWear], f => MeanOf(Tyres(f, front).Select(t => t.ShoulderMmPer1000Km)));
-        yield return Figure("greatest depth variation round a tyre", "mm", 2, 0.05, [FindingKind.Cupping, FindingKind.DiagonalWear], f => Greatest(Tyres(f, front).Select(t => t.RoundVariationMm)));
+        yield return Figure("greatest depth variation round a tyre", "mm", 2, 0.05, [FindingKind.Cupping, FindingKind.DiagonalWear, FindingKind.FlatSpot, FindingKind.HeelToe], f => Greatest(Tyres(f, front).Select(t => t.RoundVariationMm)));
         yield return Figure("feather shared by both sides", "mm", 2, 0.05, Slides, f => MeanOf(Pairs(f, front, WheelPair.Feather).Select(p => p.Shared)));
         yield return Figure("feather toward one side of the vehicle", "mm", 2, 0.05, Slides, f => MeanOf(Pairs(f, front, WheelPair.Feather).Select(p => p.Direction)));
         yield return Figure("pressure off its setting (share)", "1", 2, 0.01, [FindingKind.PressureOff], f => MeanOf(Tyres(f, front).Select(t => t.PressureShare)));

@@ -39,6 +39,8 @@ public sealed record TyreFigures
     /// <summary>Hand rubs on this fitting that caught moving inward (sharp edge outboard, toe-out).</summary>
     public int RubsCatchingInward { get; init; }
     public int RubsCatchingNeither { get; init; }
+    /// <summary>Step of the rib edges that the rubs speak for, by what each technician's hand is worth, mm; null where only the counts are known.</summary>
+    public Estimate? FeltMm { get; init; }
     /// <summary>(measured − set) ÷ set pressure.</summary>
     public Estimate? PressureShare { get; init; }
     /// <summary>What was seen on the tyre at its last survey.</summary>

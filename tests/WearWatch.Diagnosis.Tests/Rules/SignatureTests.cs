@@ -153,7 +153,7 @@ public class SignatureTests
 
     [Fact]
     public void A_flat_spot_is_not_cupping() =>
-        Assert.Empty(GeometryRules.Find(Vehicles.Van().With("1R", t => t with { RoundVariationMm = new(0.9, 0.1), Seen = [Seen.FlatSpot] })));
+        Assert.Equal(FindingKind.FlatSpot, Assert.Single(GeometryRules.Find(Vehicles.Van().With("1R", t => t with { RoundVariationMm = new(0.9, 0.1), Seen = [Seen.FlatSpot] }))).Kind);
 
     [Fact]
     public void Diagonal_wipe_needs_a_free_rolling_rear_tyre_that_slides_and_varies_round()

@@ -1,6 +1,8 @@
 using WearWatch.Diagnosis.Facts;
 using WearWatch.Diagnosis.Roads;
 using WearWatch.Diagnosis.Rules;
+using WearWatch.Diagnosis.Statistics;
+using WearWatch.Diagnosis.Steering;
 using WearWatch.Diagnosis.Wear;
 
 namespace WearWatch.Diagnosis.Tests.Rules;
@@ -69,12 +71,49 @@ internal static class Vehicles
         EvidenceRuns = ["stream-a/3", "stream-a/9"],
     };
 
+    public static VehicleSteeringStudy StudyOf(this VehicleFigures figures) => figures.Study ?? new VehicleSteeringStudy
+    {
+        VehicleId = figures.Vehicle.VehicleId,
+        SecondsRecorded = 20_000,
+        SecondsStraight = 9_000,
+        SecondsLaneKeeping = 0,
+        AngleHistogramS = new double[VehicleSteeringStudy.HistogramClasses],
+        YawZero = default,
+        AngleAgainstYaw = 1,
+        PullCompensation = false,
+        ChannelsPresent = [],
+        FrozenS = new Dictionary<SteeringChannel, double>(),
+        NotPossible = [],
+    };
+
+    /// <summary>Rest of the steering wheel after left and right turns, deg beside straight, + left.</summary>
+    public static VehicleFigures Returning(this VehicleFigures figures, double afterLeft, double afterRight, double error = 0.3) => figures with
+    {
+        Study = figures.StudyOf() with { Return = new ReturnToCentre { AfterLeft = 40, AfterRight = 40, RestAfterLeftDeg = new(afterLeft, error), RestAfterRightDeg = new(afterRight, error) } },
+    };
+
+    public static VehicleFigures Turning(this VehicleFigures figures, double leftDeg, double rightDeg) =>
+        figures with { Study = figures.StudyOf() with { TurnedLeftDeg = leftDeg, TurnedRightDeg = rightDeg } };
+
+    public static VehicleFigures Hopping(this VehicleFigures figures, double rms, double share) =>
+        figures with { Study = figures.StudyOf() with { WheelHop = new WheelHop(SteeringChannel.DriverTorque, rms, share, 600) } };
+
+    private static VehicleSteeringStudy Mirrored(VehicleSteeringStudy study) => study with
+    {
+        TurnedLeftDeg = study.TurnedRightDeg,
+        TurnedRightDeg = study.TurnedLeftDeg,
+        Return = study.Return is not { } r ? null : r with { AfterLeft = r.AfterRight, AfterRight = r.AfterLeft, RestAfterLeftDeg = Negative(r.RestAfterRightDeg), RestAfterRightDeg = Negative(r.RestAfterLeftDeg) },
+    };
+
+    private static Estimate? Negative(Estimate? e) => e is { } known ? -known : null;
+
     /// <summary>The same vehicle seen in a mirror: sides swapped, steering signs and the traffic side turned over.</summary>
     public static VehicleFigures Mirrored(this VehicleFigures figures) => figures with
     {
         Depot = figures.Depot with { TrafficSide = figures.Depot.TrafficSide == TrafficSide.Right ? TrafficSide.Left : TrafficSide.Right },
         Tyres = [.. figures.Tyres.Select(t => t with { Position = t.Position.Mirrored })],
         Steering = figures.Steering is not { } s ? null : s with { SteeringPullNm = -s.SteeringPullNm, OffCentreDeg = -s.OffCentreDeg, BrakePullNm = -s.BrakePullNm, DrivePullNm = -s.DrivePullNm },
+        Study = figures.Study is { } study ? Mirrored(study) : null,
         Route = figures.Route is not { } r ? null : r with { LeftTurnShare = 1 - r.LeftTurnShare },
         DriverReports = [.. figures.DriverReports.Select(d => d with { Symptom = d.Symptom switch { Symptom.PullsLeft => Symptom.PullsRight, Symptom.PullsRight => Symptom.PullsLeft, var other => other } })],
     };

@@ -31,7 +31,7 @@ internal sealed class Analysis(DiagnosisStore store, FleetFitStore fits, Diagnos
             ?? throw new RequestRefused(RefusedBecause.NotFound, "vehicle_id", $"vehicle '{request.VehicleId}' was not known on {request.AsOf}");
         var diagnosis = DiagnosisMessage.Of(past);
         diagnosis.Findings.Add(past.Findings.Select(f => DiagnosisMessage.Of(f, past.Figures)));
-        return new GetDiagnosisResponse { Diagnosis = diagnosis };
+        return new GetDiagnosisResponse { Diagnosis = diagnosis, BelowLimit = { past.UnsafeTyres.Select(u => TyreMessage.Of(u, past)) } };
     }
 
     public override async Task<ListFindingsResponse> ListFindings(ListFindingsRequest request, ServerCallContext context)
@@ -47,6 +47,9 @@ internal sealed class Analysis(DiagnosisStore store, FleetFitStore fits, Diagnos
         if (bodies.Count > size) response.NextPageToken = (offset + size).ToString(CultureInfo.InvariantCulture);
         return response;
     }
+
+    public override async Task<GetReaderStudyResponse> GetReaderStudy(GetReaderStudyRequest request, ServerCallContext context) =>
+        ReaderStudyMessage.Of(await diagnosing.Latest(context.CancellationToken) ?? throw new RequestRefused(RefusedBecause.NotFound, "", "no fleet-wide snapshot was made yet"));
 
     public override async Task<GetAnalysisStatusResponse> GetAnalysisStatus(GetAnalysisStatusRequest request, ServerCallContext context)
     {

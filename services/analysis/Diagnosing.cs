@@ -93,11 +93,15 @@ internal sealed partial class Diagnosing(FactReader facts, FleetFitStore fits, D
             UnsafeTyres = UnsafeTyres.Of(vehicle.Vehicle, vehicle.Depot, [.. vehicle.Surveys.Select(s => new RecordedSurvey(s.FactId, s.Body, false)), .. vehicle.HeldSurveys.Select(s => new RecordedSurvey(s.FactId, s.Body, true))], [.. vehicle.Fittings.Select(f => f.Body)], VehicleFiguresOf.Limits(settings)),
             FleetFit = fit,
             Study = study,
+            Answers = vehicle.Answers,
+            Use = VehicleUse.Of([.. vehicle.Surveys.Select(s => s.Body)], wear.KmPerWeek),
+            Surveys = vehicle.Surveys.Concat(vehicle.HeldSurveys).GroupBy(s => s.FactId).ToDictionary(g => g.Key, g => (DateOnly.FromDateTime(g.First().At.UtcDateTime), g.First().Body.ResolutionMm)),
             FactsThrough = vehicle.FactsThrough,
         };
     }
 
-    private async Task<(long Id, FleetSnapshot Snapshot)?> Latest(CancellationToken cancel)
+    /// <summary>The latest fleet snapshot; null where none of this method was made yet.</summary>
+    public async Task<(long Id, FleetSnapshot Snapshot)?> Latest(CancellationToken cancel)
     {
         // A snapshot of an older method is not read; the worker makes a new one.
         if (await fits.Latest(cancel) is not { } latest || latest.Method != Method) return null;

@@ -39,12 +39,14 @@ internal static class DiagnosisMessage
         };
         if (d.FactsThrough is { } through) message.FactsThrough = Timestamp.FromDateTimeOffset(through);
         message.Causes.Add(d.Verdict.Causes.Select(Of));
-        message.Tyres.Add(d.Figures.Tyres.Select(Of));
+        message.Tyres.Add(d.Figures.Tyres.Select(t => TyreMessage.Of(t, d)));
+        message.KmPerWeek = TyreMessage.Use(d.Use);
         message.CannotTell.Add(d.Verdict.CannotTell.Select(c => new CannotTell { What = c.What, Because = c.Because, WouldHelp = c.WouldHelp }));
         message.CannotTell.Add((steering?.NotPossible ?? []).Union(d.Study?.NotPossible ?? []).Select(NotPossible));
         message.CannotTell.Add(d.Cost.Assumed.Select(a => new CannotTell { What = "the money exactly", Because = $"{a} was assumed", WouldHelp = "the operator's own figure" }));
         message.Changes.Add(d.Figures.Changes.Select(c => Of(c, ChangeLimits.IsPublished(d.Figures, c))));
         message.SurveyNotes.Add(d.Wear.Surveys.Where(s => s.Corrected || s.Weight < 0.9).Select(Of));
+        message.SurveyNotes.Add(d.Answers.Select(a => new SurveyNote { SurveyId = a.SurveyId, Note = $"answered{(a.Who is { } who ? $" by {who}" : "")} on {a.At.ToString("yyyy-MM-dd", CultureInfo.InvariantCulture)}: {string.Join(" ", a.Answers.Select(e => e.Answer))}" }));
         message.SurveyNotes.Add(d.Wear.Inferred.Select(i => new SurveyNote { Note = i.Sentence }));
         return message;
     }
@@ -103,26 +105,6 @@ internal static class DiagnosisMessage
     internal static string Snake(string name) =>
         string.Concat(name.Select((c, i) => char.IsUpper(c) && i > 0 ? $"_{char.ToLowerInvariant(c)}" : $"{char.ToLowerInvariant(c)}"));
 
-    private static TyreDiagnosis Of(TyreFigures t)
-    {
-        var tyre = new TyreDiagnosis
-        {
-            Position = t.Position.ToString(),
-            RateMmPer1000Km = Of(t.RateMmPer1000Km, "mm/1000 km"),
-            RateBorrowed = t.RateBorrowed,
-            DepthMm = Of(t.RemainingMm, "mm"),
-            RemainingKm = t.RemainingKm is { } km ? Of(km, "km") : null,
-            LimitSource = t.LimitSource ?? "",
-            EdgeSlopeMmPer1000Km = Of(t.EdgeSlopeMmPer1000Km, "mm/1000 km"),
-        };
-        if (t.LimitMm is { } limit) tyre.LimitMm = limit;
-        if (t.GoverningGroove is { } groove) tyre.GoverningGroove = groove;
-        tyre.SurveyIds.Add(t.SurveyIds);
-        tyre.Grooves.Add(t.Across.Select(g => new TreadGroove { Groove = g.Groove, DepthMm = g.DepthMm }));
-        tyre.Points.Add(t.Points.Select(p => new Contracts.V1.WearPoint { DistanceKm = p.Km, DepthMm = p.DepthMm }));
-        return tyre;
-    }
-
     public static Contracts.V1.Finding Of(Diagnosis.Rules.Finding f, VehicleFigures figures)
     {
         var finding = new Contracts.V1.Finding
@@ -164,7 +146,7 @@ internal static class DiagnosisMessage
 
     private static Side Of(Diagnosis.Facts.Side? side) => side switch { Diagnosis.Facts.Side.Left => Side.Left, Diagnosis.Facts.Side.Right => Side.Right, _ => Side.Unspecified };
 
-    private static Range? Of(Estimate? e, string unit) => e is { } known ? new Range { Value = known.Value, Low = known.Low, High = known.High, Unit = unit } : null;
+    internal static Range? Of(Estimate? e, string unit) => e is { } known ? new Range { Value = known.Value, Low = known.Low, High = known.High, Unit = unit } : null;
 
-    private static Range Of(Interval i, string unit) => new() { Value = i.Value, Low = i.Low, High = i.High, Unit = unit };
+    internal static Range Of(Interval i, string unit) => new() { Value = i.Value, Low = i.Low, High = i.High, Unit = unit };
 }

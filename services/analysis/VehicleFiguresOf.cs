@@ -20,6 +20,7 @@ internal static class VehicleFiguresOf
         Tyres = [.. v.Tyres.Select(t => t.Body)],
         AdjustedAt = v.WorkshopRecords.LastOrDefault(w => w.Body.Result == WorkshopResult.Adjusted || w.Body.Angles.Any(a => a.AfterDeg is not null))?.At,
         Limits = Limits(settings),
+        Settings = [.. settings?.Settings.Select(s => s.Body) ?? []],
     };
 
     public static IReadOnlyList<DepthLimitFact> Limits(DepotSettings? settings) => [.. settings?.Limits.Select(l => l.Body) ?? []];

@@ -82,12 +82,15 @@ internal static class Decisions
             Who = p.Text(sent.Who, "decision.who"),
         };
         if (record is { VehicleId: null, About: null }) p.Refuse("missing", "decision.about", "a decision is about a vehicle, a finding or a fact");
+        if (record.Kind == DecisionKind.Answered) Answers.Check(record, p);
         return new FactBody(FactKind.Decision, record, record.At)
         {
             VehicleId = record.VehicleId,
+            About = record.Kind == DecisionKind.Answered ? record.About : null,
             Judge = (context, judgement) =>
             {
                 if (record.VehicleId is { } vehicle) judgement.NeedsVehicle(context, vehicle, "decision.vehicle_id");
+                if (record.Kind == DecisionKind.Answered && !judgement.Refused) Answers.Judge(record, context, judgement);
             },
         };
     }
@@ -112,8 +115,13 @@ internal static class Decisions
     private static void Judge(Withdrawal record, FactContext context, Judgement judgement)
     {
         const string Field = "withdrawal.fact_id";
-        if (context.Known(new FactKey(judgement.Depot, record.FactId)) is not { } fact)
+        var key = new FactKey(judgement.Depot, record.FactId);
+        if (context.Known(key) is not { } fact)
+        {
+            // Something refused is no fact, but it can be laid to rest.
+            if (record.Kind == WithdrawalKind.Retract && context.IsSetAside(key)) return;
             judgement.Refuse("unknown_fact", Field, $"depot {judgement.Depot} has no fact {record.FactId}");
+        }
         else if (fact.Kind == FactKind.Withdrawal)
             judgement.Refuse("not_withdrawable", Field, "a withdrawal stands; send the fact anew under another id");
         else if (record.Kind == WithdrawalKind.Release && !fact.Held)

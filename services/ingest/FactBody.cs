@@ -12,6 +12,8 @@ internal sealed record FactBody(string Kind, object Record, DateTimeOffset At)
     public int Readings { get; init; }
     public string? Retracts { get; init; }
     public string? Releases { get; init; }
+    /// <summary>Fact that a decision is about.</summary>
+    public string? About { get; init; }
     /// <summary>Judges it against what is known: the vehicle exists, has that position, ran no distance back.</summary>
     public Action<FactContext, Judgement>? Judge { get; init; }
 }
@@ -33,19 +35,23 @@ internal sealed class Judgement(string depot, string? replaces)
 
     public bool Held { get; private set; }
 
+    /// <summary>Held fact that this one lets through.</summary>
+    public string? Releases { get; set; }
+
     public void Refuse(string code, string field, string message)
     {
         Refused = true;
         _remarks.Add(new Remark(code, field, message));
     }
 
-    public void Hold(string code, string field, string message)
+    public void Hold(string code, string field, string message, IReadOnlyList<RemarkChoice>? choices = null)
     {
         Held = true;
-        _remarks.Add(new Remark(code, field, message));
+        Tell(code, field, message, choices: choices);
     }
 
-    public void Tell(string code, string field, string message, bool safety = false) => _remarks.Add(new Remark(code, field, message, safety));
+    public void Tell(string code, string field, string message, bool safety = false, IReadOnlyList<RemarkChoice>? choices = null) =>
+        _remarks.Add(new Remark(code, field, message, safety) { Choices = choices });
 
     /// <summary>Refuses a fact on a vehicle that no fact describes.</summary>
     public void NeedsVehicle(FactContext context, string vehicleId, string field)

@@ -24,9 +24,11 @@ public static class IngestHost
         services.AddSingleton(new StreamStore(database.Ingest));
         services.AddSingleton(new ChunkWriter(database.Ingest));
         services.AddSingleton(new SetAsideReader(database.Ingest));
+        services.AddSingleton(new FactFinder(database.Ingest));
         services.AddSingleton<RecordFacts>();
         services.AddSingleton<StreamSteering>();
         services.AddSingleton<SetAside>();
+        services.AddSingleton<FindFact>();
     }
 
     public static void MapIngest(this IEndpointRouteBuilder routes) => routes.MapGrpcService<IngestService>();

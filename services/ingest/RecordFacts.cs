@@ -45,12 +45,12 @@ internal sealed class RecordFacts(IngestFacts facts, TimeProvider clock)
     {
         await using var batch = await facts.Begin(ReadFact.Scope(items), cancel);
         var response = new RecordFactsResponse();
-        foreach (var item in items) response.Answers.Add(Answer(item, batch));
+        foreach (var item in items) response.Answers.Add(Answer(item, batch, clock.GetUtcNow()));
         await batch.Commit(cancel);
         return response;
     }
 
-    private static FactAnswer Answer(ReadFact item, FactBatch batch)
+    private static FactAnswer Answer(ReadFact item, FactBatch batch, DateTimeOffset now)
     {
         var known = batch.Context.Known(item.Key);
         if (known is not null && known.ContentHash.AsSpan().SequenceEqual(item.Row.ContentHash))
@@ -64,9 +64,19 @@ internal sealed class RecordFacts(IngestFacts facts, TimeProvider clock)
         Correction(item, batch.Context, judgement);
         item.Body!.Judge?.Invoke(batch.Context, judgement);
         if (judgement.Refused) return Refuse(item, batch, judgement.Remarks);
-        batch.Store(item.Row, judgement.Held, judgement.Remarks);
+        batch.Store(item.Row with { Releases = judgement.Releases ?? item.Row.Releases }, judgement.Held, judgement.Remarks);
+        if (!judgement.Held && Explains(item.Row, batch.Context) is { } vehicle) JudgeAgain.Held(item.Row, vehicle, batch, now, judgement);
         return Answered(item, judgement.Held ? Outcome.Held : Outcome.Stored, judgement.Remarks);
     }
+
+    /// <summary>The vehicle whose held surveys this fact may explain; null where it explains none.</summary>
+    private static string? Explains(FactRow row, FactContext context) => row switch
+    {
+        { Kind: FactKind.Fitting } => row.VehicleId,
+        { Kind: FactKind.Survey, Replaces: not null } => row.VehicleId,
+        { Kind: FactKind.Withdrawal, Retracts: { } taken } when context.Known(row.Key(taken)) is { Kind: FactKind.Survey or FactKind.Fitting } fact => fact.VehicleId,
+        _ => null,
+    };
 
     private static void Correction(ReadFact item, FactContext context, Judgement judgement)
     {
@@ -86,7 +96,14 @@ internal sealed class RecordFacts(IngestFacts facts, TimeProvider clock)
         new() { Id = item.Sent.Id, Outcome = outcome, Known = known, Remarks = { remarks.Select(ToContract) } };
 
     public static Remark ToContract(Storage.Facts.Remark remark) =>
-        new() { Code = remark.Code, Field = remark.Field, Message = remark.Message, Safety = remark.Safety };
+        new()
+        {
+            Code = remark.Code,
+            Field = remark.Field,
+            Message = remark.Message,
+            Safety = remark.Safety,
+            Choices = { (remark.Choices ?? []).Select(c => new Choice { Answer = c.Answer, Words = c.Words, Probability = c.Probability }) },
+        };
 }
 
 /// <summary>A fact read by its converter, with what is wrong in itself.</summary>
@@ -101,7 +118,7 @@ internal sealed record ReadFact(Fact Sent, FactRow Row, FactBody? Body, IReadOnl
         problems.Id(sent.DepotId, "depot_id");
         problems.OptionalId(sent.Replaces, "replaces");
         problems.Text(sent.RecordedBy, "recorded_by");
-        var body = Read(sent, problems);
+        var body = Read(sent, problems, now);
         if (body is null) problems.Refuse("missing", "body", "the fact holds nothing this version knows");
         var row = new FactRow
         {
@@ -119,12 +136,13 @@ internal sealed record ReadFact(Fact Sent, FactRow Row, FactBody? Body, IReadOnl
             Replaces = sent.Replaces.Length > 0 ? sent.Replaces : null,
             Retracts = body?.Retracts,
             Releases = body?.Releases,
+            About = body?.About,
             RecordedBy = Storable(sent.RecordedBy),
         };
         return new ReadFact(sent, row, body, problems.Refusals);
     }
 
-    private static FactBody? Read(Fact sent, Problems p) => sent.BodyCase switch
+    private static FactBody? Read(Fact sent, Problems p, DateTimeOffset now) => sent.BodyCase switch
     {
         Fact.BodyOneofCase.Depot => Vehicles.Depot(sent.Depot, sent.DepotId, p),
         Fact.BodyOneofCase.Vehicle => Vehicles.Vehicle(sent.Vehicle, sent.DepotId, p),
@@ -141,6 +159,7 @@ internal sealed record ReadFact(Fact Sent, FactRow Row, FactBody? Body, IReadOnl
         Fact.BodyOneofCase.Setting => Decisions.Setting(sent.Setting, p),
         Fact.BodyOneofCase.Decision => Decisions.Decision(sent.Decision, p),
         Fact.BodyOneofCase.Withdrawal => Decisions.Withdrawal(sent.Withdrawal, p),
+        Fact.BodyOneofCase.UnreadRow => UnreadRows.Row(sent.UnreadRow, p, now),
         _ => null,
     };
 
@@ -160,7 +179,7 @@ internal sealed record ReadFact(Fact Sent, FactRow Row, FactBody? Body, IReadOnl
     public static BatchScope Scope(IReadOnlyList<ReadFact> items)
     {
         var sound = items.Where(i => i.Refusals.Count == 0).Select(i => i.Row).ToList();
-        string?[] Others(FactRow row) => [row.Id, row.Replaces, row.Retracts, row.Releases];
+        string?[] Others(FactRow row) => [row.Id, row.Replaces, row.Retracts, row.Releases, row.About];
         return new BatchScope
         {
             Keys = sound.SelectMany(r => Others(r).OfType<string>().Select(id => new FactKey(r.Depot, id))).Concat(items.Select(i => i.Key)).Distinct().ToList(),
@@ -168,7 +187,9 @@ internal sealed record ReadFact(Fact Sent, FactRow Row, FactBody? Body, IReadOnl
             Depots = sound.Select(r => r.Depot).Distinct().ToList(),
             Tyres = sound.Select(r => r.TyreId).OfType<string>().Distinct().ToList(),
             TouchesSettings = sound.Any(r => r.VehicleId is null && r.Kind != FactKind.Tyre || r.Kind == FactKind.Decision),
-            Earliest = sound.Where(r => r.Kind == FactKind.Survey).Select(r => r.At).DefaultIfEmpty(DateTimeOffset.MaxValue).Min(),
+            // What is taken back may lie anywhere, and so may what it explained.
+            Earliest = sound.Any(r => r.Retracts is not null) ? DateTimeOffset.MinValue
+                : sound.Where(r => r.Kind is FactKind.Survey or FactKind.Fitting).Select(r => r.At).DefaultIfEmpty(DateTimeOffset.MaxValue).Min(),
         };
     }
 }

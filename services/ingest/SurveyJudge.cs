@@ -7,28 +7,30 @@ namespace WearWatch.Ingest;
 /// <summary>The instant answer to a survey: put before the diagnosis library with what is known of the vehicle.</summary>
 internal static class SurveyJudge
 {
+    /// <summary>Walks before it that a survey is held against: tyres that the last one did not reach were read in one of these.</summary>
+    private const int Earlier = 5;
+
     public static void Judge(TreadSurvey survey, FactContext context, Judgement judgement)
     {
         judgement.NeedsVehicle(context, survey.VehicleId, "survey.vehicle_id");
         if (context.Vehicle(survey.VehicleId, survey.At) is not { } vehicle) return;
         var others = context.Surveys(survey.VehicleId).Where(s => s.FactId != judgement.Replaces).ToList();
-        var previous = others.LastOrDefault(s => s.At <= survey.At)?.Body;
+        List<TreadSurvey> earlier = [.. others.Where(s => s.At <= survey.At).TakeLast(Earlier).Select(s => s.Body)];
         var next = others.FirstOrDefault(s => s.At > survey.At)?.Body;
-        foreach (var issue in Check(survey, vehicle, previous, context, judgement.Depot)) Say(issue, judgement);
+        foreach (var issue in Check(survey, vehicle, earlier, context, judgement.Depot)) Say(issue, judgement);
         if (next is null) return;
         // A late survey's distance must also lie below that of the one after it.
-        foreach (var issue in Check(survey, vehicle, next, context, judgement.Depot).Where(i => i.Field == "distance_km" && i.Weight == IssueWeight.Hold))
+        foreach (var issue in Check(survey, vehicle, [next], context, judgement.Depot).Where(i => i.Field == "distance_km" && i.Weight == IssueWeight.Hold))
             Say(issue, judgement);
     }
 
-    private static IReadOnlyList<ReadingIssue> Check(TreadSurvey survey, Vehicle vehicle, TreadSurvey? other, FactContext context, string depotId)
+    private static IReadOnlyList<ReadingIssue> Check(TreadSurvey survey, Vehicle vehicle, IReadOnlyList<TreadSurvey> others, FactContext context, string depotId)
     {
         var fittings = context.Fittings(vehicle.VehicleId).Where(f => f.At <= survey.At).Select(f => f.Body).ToList();
-        var since = other is null ? [] : fittings.Where(f => f.At > other.At).ToList();
         var depot = context.Depot(vehicle.Depot) ?? context.Depot(depotId);
         var limits = depot is null ? [] : context.Limits(depot.DepotId);
         var on = DateOnly.FromDateTime(survey.At.UtcDateTime);
-        return SurveyCheck.Check(survey, vehicle, other, since,
+        return SurveyCheck.Check(survey, vehicle, others, fittings,
             position => NewDepth(fittings, position, context),
             position => DepthLimits.For(depot?.Jurisdiction ?? "", vehicle, position, Last(fittings, position)?.Winter ?? false, on, limits));
     }
@@ -46,10 +48,13 @@ internal static class SurveyJudge
         switch (issue.Weight)
         {
             case IssueWeight.Refuse: judgement.Refuse(issue.Code, field, issue.Message); break;
-            case IssueWeight.Hold: judgement.Hold(issue.Code, field, issue.Message); break;
-            default: judgement.Tell(issue.Code, field, issue.Message, safety: issue.Code is "below_limit" or "unsafe_seen"); break;
+            case IssueWeight.Hold: judgement.Hold(issue.Code, field, issue.Message, Choices(issue)); break;
+            default: judgement.Tell(issue.Code, field, issue.Message, issue.Code is "below_limit" or "unsafe_seen", Choices(issue)); break;
         }
     }
+
+    private static List<RemarkChoice>? Choices(ReadingIssue issue) =>
+        issue.Choices.Count == 0 ? null : [.. issue.Choices.Select(c => new RemarkChoice(ExplanationText.Write(c.Explanation), c.Explanation.Answer, Math.Round(c.Weight, 3)))];
 
     /// <summary>The library names fields of its record; a sender knows those of the contract.</summary>
     private static string FieldOf(string field) => "survey." + field

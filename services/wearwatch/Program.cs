@@ -10,7 +10,13 @@ app.Configure(config =>
     config.AddCommand<ServeCommand>("serve").WithDescription("Run the services until stopped.").WithExample("serve").WithExample("serve", "--only", "ingest", "--port", "7421");
     config.AddCommand<ImportCommand>("import").WithDescription("Send a folder of plain files through the gRPC door and analyse it; can be run again.").WithExample("import", "my-fleet");
     config.AddCommand<WorklistCommand>("worklist").WithDescription("The vehicles that need alignment, and why.").WithExample("worklist", "--depot", "north").WithExample("worklist", "--csv");
-    config.AddCommand<VehicleCommand>("vehicle").WithDescription("Everything on one vehicle, with the evidence.").WithExample("vehicle", "V017", "--json");
+    config.AddCommand<VehicleCommand>("vehicle").WithDescription("Everything on one vehicle, with the evidence.").WithExample("vehicle", "V017", "--json").WithExample("vehicle", "V017", "--as-of", "2026-10-15");
+    config.AddCommand<ReadersCommand>("readers").WithDescription("Bias and repeatability of technicians' hands and of gauges over the fleet.").WithExample("readers", "--json");
+    config.AddCommand<HeldCommand>("held").WithDescription("Surveys that wait for an answer, with their questions; or what was refused and why.").WithExample("held").WithExample("held", "--refused");
+    config.AddCommand<AnswerCommand>("answer").WithDescription("Answer what a survey was asked, by number or in words.").WithExample("answer", "S0123", "1").WithExample("answer", "S0123", "tyre_changed", "1L");
+    config.AddCommand<CorrectCommand>("correct").WithDescription("Send a survey anew with figures corrected.").WithExample("correct", "S0123", "2LO.2=7.1");
+    config.AddCommand<ReleaseCommand>("release").WithDescription("Let a held survey through as it is.").WithExample("release", "S0123", "--who", "MK");
+    config.AddCommand<RetractCommand>("retract").WithDescription("Take a fact back; it stays on record.").WithExample("retract", "S0123", "--reason", "wrong vehicle");
     config.AddCommand<StatusCommand>("status").WithDescription("Where the services are and how far they have come.").WithExample("status", "--json");
     config.SetExceptionHandler((problem, _) =>
     {

@@ -40,6 +40,8 @@ public sealed record TreadSurvey
     /// <summary>The counter was replaced since the survey before: its distance starts anew.</summary>
     public bool CounterReplaced { get; init; }
     public bool Finished { get; init; } = true;
+    /// <summary>Someone has said what it means; it is read as it now stands and not explained any further.</summary>
+    public bool Confirmed { get; init; }
     public required IReadOnlyList<TyreReadings> Tyres { get; init; }
 }
 

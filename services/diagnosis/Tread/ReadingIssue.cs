@@ -19,4 +19,8 @@ public enum IssueWeight
 /// <param name="Message">A plain sentence for a technician who stands in the cold.</param>
 /// <param name="Position">Tyre, where it is about one.</param>
 /// <param name="Groove">Groove, where it is about one.</param>
-public sealed record ReadingIssue(string Code, IssueWeight Weight, string Field, string Message, Position? Position = null, int? Groove = null);
+public sealed record ReadingIssue(string Code, IssueWeight Weight, string Field, string Message, Position? Position = null, int? Groove = null)
+{
+    /// <summary>What may have happened, likeliest first: then the message is a question, and one of these its answer.</summary>
+    public IReadOnlyList<WeighedExplanation> Choices { get; init; } = [];
+}

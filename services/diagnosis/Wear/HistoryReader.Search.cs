@@ -88,6 +88,7 @@ internal sealed partial class HistoryReader
     {
         var e = _explanation[s];
         if (e.Kind == ExplanationKind.AsWritten) return 0;
+        if (_surveys[s].Survey.Confirmed) return -1e9; // Someone has said what it means.
         int axles = 0, figures = 0;
         double log = 0;
         for (var p = 0; p < _positions.Length; p++)

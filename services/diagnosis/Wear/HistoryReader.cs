@@ -114,7 +114,7 @@ internal sealed partial class HistoryReader
                 {
                     var s = within[i];
                     int? without = null;
-                    if (mistyped is not null && mistyped.TryGetValue(i, out var odd))
+                    if (mistyped is not null && mistyped.TryGetValue(i, out var odd) && !_surveys[s].Survey.Confirmed)
                     {
                         without = odd.Groove;
                         Odd(s).Add(new(new(odd.Kind, Position: _positions[p], Groove: odd.Groove), odd.Probability));
@@ -280,7 +280,7 @@ internal sealed partial class HistoryReader
             _expected[p] = Expected(s, p);
             behind = Math.Max(behind, _expected[p].Surveys);
         }
-        if (axles == 0 || behind == 0) return;
+        if (axles == 0 || behind == 0 || _surveys[s].Survey.Confirmed) return;
         var set = Set(axles);
         // The fleet's fit takes what is plain at its word; one vehicle's answer states the weights.
         if (!_context.Thorough && _explanation[s].Kind == ExplanationKind.AsWritten && PlainSurvey.Fits(set, _seen, _expected, _context.TechnicianSdMm, _surveys[s].Survey.ResolutionMm)) return;
@@ -421,7 +421,7 @@ internal sealed partial class HistoryReader
             for (var k = evidence.Started ? 1 : 0; n > 2 && k < n - 1; k++)
             {
                 var gain = evidence.Without(k) + evidence.Of(k, k + 1) - whole + s_logMisread;
-                if (gain > best.Gain) best = (gain, Misread(p, points[k].Survey, gain));
+                if (gain > best.Gain && !_surveys[points[k].Survey].Survey.Confirmed) best = (gain, Misread(p, points[k].Survey, gain));
             }
         }
     }

@@ -56,6 +56,10 @@ public sealed record TyreFigures
     public string? LimitSource { get; init; }
     /// <summary>Distance from the last survey to the limit at the governing groove, km, 90 %.</summary>
     public Interval? RemainingKm { get; init; }
+    /// <summary>The operator's own depth for taking a tyre off, mm; null where none was set.</summary>
+    public double? ChangeAtMm { get; init; }
+    /// <summary>Distance from the last survey to that depth at the groove that reaches it first, km, 90 %.</summary>
+    public Interval? ToChangeKm { get; init; }
     /// <summary>The tread across at the last survey, from the outboard side.</summary>
     public IReadOnlyList<GrooveMean> Across { get; init; } = [];
     /// <summary>Depth at the governing groove at each survey of the tyre now on, oldest first.</summary>

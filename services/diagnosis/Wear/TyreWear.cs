@@ -33,6 +33,7 @@ internal sealed class TyreWear(VehicleTread vehicle, FleetWear fleet, DateOnly a
             NewDepthMm = fitting.NewDepthMm,
             LimitMm = limit.LimitMm,
             LimitSource = limit.Source,
+            ChangeAtMm = vehicle.ChangeAtMm(asOf),
         };
         var before = fitting.Points.Count == 0 ? EarlierHere(fitting) : [];
         if (fitting.Points.Count == 0) return Evidence(figures with { RateMmPer1000Km = RatePosterior.Of(null, normal).Rate, RateBorrowed = true }, normal, null, null, null, before);
@@ -145,7 +146,7 @@ internal sealed class TyreWear(VehicleTread vehicle, FleetWear fleet, DateOnly a
         var bias = fleet.BiasOf(history.Surveys[last.Survey].Survey).Sd;
         var edgeTotal = Shrunk(edge, EdgePerMm(normal, fitting.Position), normal.EdgeBetweenSd, rate.Value);
         var shoulderTotal = Shrunk(shoulder, normal.ShoulderPerMm, normal.ShoulderBetweenSd, rate.Value);
-        var until = Grooves(fitting, limit).Select(g => ToLimit(fitting, g, rate, edgeTotal, shoulderTotal, limit.LimitMm)).OfType<Interval>().OrderBy(i => i.Value).ToList();
+        Interval? Until(double mm) => Grooves(fitting, limit).Select(g => ToLimit(fitting, g, rate, edgeTotal, shoulderTotal, mm)).OfType<Interval>().OrderBy(i => i.Value).Select(i => (Interval?)i).FirstOrDefault();
         return figures with
         {
             RemainingMm = new(judged.GoverningMm, Math.Sqrt(readingSd * readingSd + bias * bias)),
@@ -153,7 +154,8 @@ internal sealed class TyreWear(VehicleTread vehicle, FleetWear fleet, DateOnly a
             Across = [.. last.Shape!.ByGroove.Where(g => g.Groove > 0)],
             Points = [.. fitting.Points.Select(p => (p.Km, Groove: p.Shape!.ByGroove.FirstOrDefault(g => g.Groove == judged.Groove), Bias: fleet.BiasOf(history.Surveys[p.Survey].Survey).Mm))
                 .Where(p => p.Groove.Places > 0).Select(p => new WearPoint(p.Km, p.Groove.DepthMm - p.Bias))],
-            RemainingKm = !judged.Legal ? new Interval(0, 0, 0) : until.Count > 0 ? until[0] : null,
+            RemainingKm = !judged.Legal ? new Interval(0, 0, 0) : Until(limit.LimitMm),
+            ToChangeKm = figures.ChangeAtMm is not { } at ? null : judged.GoverningMm <= at ? new Interval(0, 0, 0) : Until(at),
         };
     }
 

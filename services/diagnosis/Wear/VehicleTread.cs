@@ -18,4 +18,10 @@ public sealed record VehicleTread
     public DateTimeOffset? AdjustedAt { get; init; }
     /// <summary>Operator's limits over the built-in ones.</summary>
     public IReadOnlyList<DepthLimitFact> Limits { get; init; } = [];
+    /// <summary>Operator's settings; the depth at which tyres are changed is among them where the operator has one.</summary>
+    public IReadOnlyList<OperatorSetting> Settings { get; init; } = [];
+
+    /// <summary>The operator's own depth for taking a tyre off on a day, mm; null where none was set.</summary>
+    public double? ChangeAtMm(DateOnly on) => Settings.Where(s => s.Name == SettingName.ChangeAtDepth && s.From <= on && (s.Class is null || s.Class == Vehicle.Class))
+        .OrderByDescending(s => s.Class is not null).ThenByDescending(s => s.From).FirstOrDefault()?.Value;
 }

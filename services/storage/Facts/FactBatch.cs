@@ -162,7 +162,7 @@ public sealed class FactBatch : IAsyncDisposable
         await batch.ExecuteNonQueryAsync(cancel);
     }
 
-    // An id that was refused before is settled when it comes corrected. Served by the primary key.
+    // An id that was refused before is settled when it comes corrected, and when it is withdrawn. Served by the primary key.
     private const string SettleSql = """
         UPDATE ingest.set_aside s SET settled_at = now()
         FROM unnest(@depots, @ids) AS k(depot, id)
@@ -172,8 +172,9 @@ public sealed class FactBatch : IAsyncDisposable
     private async Task Settle(CancellationToken cancel)
     {
         await using var command = Command(SettleSql);
-        command.Parameters.AddWithValue("depots", _stored.Select(s => s.Row.Depot).ToArray());
-        command.Parameters.AddWithValue("ids", _stored.Select(s => s.Row.Id).ToArray());
+        var settled = _stored.SelectMany(s => new[] { s.Row.Id, s.Row.Retracts }.OfType<string>().Select(s.Row.Key)).ToList();
+        command.Parameters.AddWithValue("depots", settled.Select(k => k.Depot).ToArray());
+        command.Parameters.AddWithValue("ids", settled.Select(k => k.Id).ToArray());
         await command.ExecuteNonQueryAsync(cancel);
     }
 
@@ -208,7 +209,8 @@ public sealed class FactBatch : IAsyncDisposable
     private static NpgsqlParameter Json(string name, string value) => new(name, NpgsqlDbType.Jsonb) { Value = value };
 }
 
-internal static class FactRows
+/// <summary>Keys of facts that a fact names.</summary>
+public static class FactRows
 {
     /// <summary>Key of another fact of the same depot.</summary>
     public static FactKey Key(this FactRow row, string id) => new(row.Depot, id);

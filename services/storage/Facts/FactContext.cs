@@ -16,6 +16,8 @@ public sealed class FactContext
     private readonly Dictionary<FactKey, object> _bodies = [];
     private readonly Dictionary<FactKey, (DateTimeOffset At, object Body)> _held = [];
     private readonly List<(string Depot, Dated<DepthLimitFact> Limit)> _limits = [];
+    private readonly Dictionary<string, List<Dated<Decision>>> _decisions = [];
+    private readonly HashSet<FactKey> _setAside = [];
 
     public KnownFact? Known(FactKey key) => _known.GetValueOrDefault(key);
 
@@ -30,11 +32,27 @@ public sealed class FactContext
 
     public bool VehicleIsKnown(string vehicleId) => _vehicles.TryGetValue(vehicleId, out var records) && records.Count > 0;
 
-    /// <summary>Surveys that hold, by time, from a few before the batch's earliest on.</summary>
-    public IReadOnlyList<Dated<TreadSurvey>> Surveys(string vehicleId) => _surveys.GetValueOrDefault(vehicleId) ?? [];
+    /// <summary>Surveys that hold, by time, from a few before the batch's earliest on, read as they were answered.</summary>
+    public IReadOnlyList<Dated<TreadSurvey>> Surveys(string vehicleId) => Answered(vehicleId).Surveys;
 
-    /// <summary>Fittings that hold, by time.</summary>
-    public IReadOnlyList<Dated<FittingRecord>> Fittings(string vehicleId) => _fittings.GetValueOrDefault(vehicleId) ?? [];
+    /// <summary>Fittings that hold, by time, and those that answers told of.</summary>
+    public IReadOnlyList<Dated<FittingRecord>> Fittings(string vehicleId) => Answered(vehicleId).Fittings;
+
+    private AnsweredSurveys Answered(string vehicleId) =>
+        AnsweredSurveys.Of(_surveys.GetValueOrDefault(vehicleId) ?? [], [], _fittings.GetValueOrDefault(vehicleId) ?? [], Decisions(vehicleId));
+
+    /// <summary>Decisions on a vehicle, by time.</summary>
+    public IReadOnlyList<Dated<Decision>> Decisions(string vehicleId) => _decisions.GetValueOrDefault(vehicleId) ?? [];
+
+    /// <summary>Surveys of a vehicle that wait held, by time, with the depot that sent each.</summary>
+    public IReadOnlyList<(string Depot, Dated<TreadSurvey> Survey)> HeldSurveys(string vehicleId) =>
+        [.. _held.Where(h => h.Value.Body is TreadSurvey s && s.VehicleId == vehicleId).OrderBy(h => h.Value.At).ThenBy(h => h.Key.Id, StringComparer.Ordinal)
+            .Select(h => (h.Key.Depot, new Dated<TreadSurvey>(h.Key.Id, h.Value.At, (TreadSurvey)h.Value.Body)))];
+
+    /// <summary>Something refused under this id still waits to be looked at.</summary>
+    public bool IsSetAside(FactKey key) => _setAside.Contains(key);
+
+    internal void RememberSetAside(FactKey key) => _setAside.Add(key);
 
     public Tyre? Tyre(string tyreId) => _tyres.GetValueOrDefault(tyreId);
 
@@ -59,6 +77,7 @@ public sealed class FactContext
             case TreadSurvey survey: Insert(_surveys, survey.VehicleId, new(key.Id, at, survey)); break;
             case FittingRecord fitting: Insert(_fittings, fitting.VehicleId, new(key.Id, at, fitting)); break;
             case Tyre tyre: _tyres[tyre.TyreId] = tyre; break;
+            case Decision { VehicleId: { } on } decision: Insert(_decisions, on, new(key.Id, at, decision)); break;
             case DepthLimitFact limit: _limits.Add((key.Depot, new(key.Id, at, limit))); break;
         }
     }
@@ -73,6 +92,7 @@ public sealed class FactContext
             case Vehicle vehicle: _vehicles[vehicle.VehicleId].RemoveAll(v => v.FactId == key.Id && ReferenceEquals(v.Body, body)); break;
             case TreadSurvey survey: _surveys[survey.VehicleId].RemoveAll(s => ReferenceEquals(s.Body, body)); break;
             case FittingRecord fitting: _fittings[fitting.VehicleId].RemoveAll(f => ReferenceEquals(f.Body, body)); break;
+            case Decision { VehicleId: { } on }: _decisions[on].RemoveAll(d => ReferenceEquals(d.Body, body)); break;
             case DepthLimitFact: _limits.RemoveAll(l => ReferenceEquals(l.Limit.Body, body)); break;
         }
     }

@@ -6,7 +6,7 @@ public static class FactKind
     public const string Depot = "depot", Vehicle = "vehicle", Coupling = "coupling", Tyre = "tyre", Fitting = "fitting", Survey = "survey",
         DriverReport = "driver_report", WorkshopRecord = "workshop_record", UsualRoute = "usual_route", Price = "price",
         DepthLimit = "depth_limit", Tolerance = "tolerance", Setting = "setting", Decision = "decision", Withdrawal = "withdrawal",
-        SteeringChunk = "steering_chunk";
+        SteeringChunk = "steering_chunk", UnreadRow = "unread_row";
 }
 
 /// <summary>Why something was held or refused, or what the sender should know at once.</summary>
@@ -14,7 +14,14 @@ public static class FactKind
 /// <param name="Field">Path of the field inside what was sent; empty where it is the whole.</param>
 /// <param name="Message">A plain sentence.</param>
 /// <param name="Safety">Must be shown at once.</param>
-public sealed record Remark(string Code, string Field, string Message, bool Safety = false);
+public sealed record Remark(string Code, string Field, string Message, bool Safety = false)
+{
+    /// <summary>What may have happened, where the message is a question.</summary>
+    public IReadOnlyList<RemarkChoice>? Choices { get; init; }
+}
+
+/// <summary>One answer to a question: the words an answer is recorded in, a plain sentence, and its probability from the readings alone.</summary>
+public sealed record RemarkChoice(string Answer, string Words, double Probability);
 
 /// <summary>A withdrawal: an earlier fact taken back, or a held one let through.</summary>
 public sealed record Withdrawal
@@ -46,6 +53,8 @@ public sealed record FactRow
     public string? Replaces { get; init; }
     public string? Retracts { get; init; }
     public string? Releases { get; init; }
+    /// <summary>Fact that a decision is about; known to the batch, not stored apart.</summary>
+    public string? About { get; init; }
     public string RecordedBy { get; init; } = "";
 }
 

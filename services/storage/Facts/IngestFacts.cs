@@ -114,7 +114,16 @@ public sealed class IngestFacts(NpgsqlDataSource source)
                 Remarks = FactJson.Read<List<Remark>>(row.Remarks),
             });
         }
+        foreach (var (depot, id) in await connection.QueryAsync<(string, string)>(Command(SetAsideSql, new { depots = scope.Keys.Select(k => k.Depot).ToArray(), ids = scope.Keys.Select(k => k.Id).ToArray() }, cancel)))
+            context.RememberSetAside(new FactKey(depot, id));
     }
+
+    // Served by the primary key.
+    private const string SetAsideSql = """
+        SELECT DISTINCT s.depot, s.id
+        FROM unnest(@depots, @ids) AS k(depot, id)
+        JOIN ingest.set_aside s ON s.depot = k.depot AND s.id = k.id AND s.settled_at IS NULL
+        """;
 
     // Surveys from five before the batch's earliest on; everything else of the vehicles whole.
     // Served by fact_vehicle, fact_tyre and fact_kind.
@@ -122,7 +131,7 @@ public sealed class IngestFacts(NpgsqlDataSource source)
         SELECT f.id AS fact_id, f.depot, f.kind, f.vehicle_id, f.tractor_id, f.tyre_id, f.at, f.seq, false AS held, f.body::text AS body
         FROM ingest.current_fact f
         WHERE f.vehicle_id = ANY(@vehicles)
-          AND (f.kind IN ('vehicle', 'fitting') OR f.kind = 'survey' AND f.at >= coalesce((
+          AND (f.kind IN ('vehicle', 'fitting', 'decision') OR f.kind = 'survey' AND f.at >= coalesce((
             SELECT s.at FROM ingest.fact s
             WHERE s.vehicle_id = f.vehicle_id AND s.kind = 'survey' AND s.at < @earliest
             ORDER BY s.at DESC OFFSET 4 LIMIT 1), '-infinity'))
@@ -156,6 +165,7 @@ public sealed class IngestFacts(NpgsqlDataSource source)
                 FactKind.Fitting => FactJson.Read<FittingRecord>(row.Body),
                 FactKind.Tyre => FactJson.Read<Tyre>(row.Body),
                 FactKind.Depot => FactJson.Read<Depot>(row.Body),
+                FactKind.Decision => FactJson.Read<Decision>(row.Body),
                 _ => FactJson.Read<DepthLimitFact>(row.Body),
             };
             context.Take(new FactKey(row.Depot, row.FactId), new DateTimeOffset(DateTime.SpecifyKind(row.At, DateTimeKind.Utc)), body, row.Held);

@@ -15,21 +15,24 @@ internal static class VehicleAssembly
         var vehicle = vehicles.LastOrDefault(v => v.Body.From is not { } from || from <= today) ?? vehicles[0];
         var depot = List<Depot>(rows, FactKind.Depot).LastOrDefault(d => d.Body.DepotId == vehicle.Body.Depot);
         if (depot is null) return null;
+        var decisions = List<Decision>(rows, FactKind.Decision);
+        var tread = AnsweredSurveys.Of(List<TreadSurvey>(rows, FactKind.Survey), List<TreadSurvey>(rows, FactKind.Survey, held: true), List<FittingRecord>(rows, FactKind.Fitting), decisions);
 
         return new VehicleFacts
         {
             Vehicle = vehicle.Body,
             Depot = depot.Body,
             Revision = revision.Revision,
-            Surveys = List<TreadSurvey>(rows, FactKind.Survey),
-            HeldSurveys = List<TreadSurvey>(rows, FactKind.Survey, held: true),
-            Fittings = List<FittingRecord>(rows, FactKind.Fitting),
+            Surveys = tread.Surveys,
+            HeldSurveys = tread.Held,
+            Fittings = tread.Fittings,
+            Answers = tread.Answers,
             Tyres = List<Tyre>(rows, FactKind.Tyre),
             DriverReports = List<DriverReport>(rows, FactKind.DriverReport),
             WorkshopRecords = List<WorkshopRecord>(rows, FactKind.WorkshopRecord),
             Routes = List<UsualRoute>(rows, FactKind.UsualRoute),
             Couplings = List<Coupling>(rows, FactKind.Coupling),
-            Decisions = List<Decision>(rows, FactKind.Decision),
+            Decisions = decisions,
             FactsThrough = Newest(rows, revision.ChunksThrough),
         };
     }

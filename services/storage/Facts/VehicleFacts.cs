@@ -25,6 +25,8 @@ public sealed record VehicleFacts
     public IReadOnlyList<Dated<Coupling>> Couplings { get; init; } = [];
     /// <summary>Decisions on this vehicle.</summary>
     public IReadOnlyList<Dated<Decision>> Decisions { get; init; } = [];
+    /// <summary>What people have answered about surveys; surveys and fittings here are read that way.</summary>
+    public IReadOnlyList<SurveyAnswered> Answers { get; init; } = [];
     /// <summary>Time of the newest thing seen, measured or done; null where nothing has happened yet.</summary>
     public DateTimeOffset? FactsThrough { get; init; }
 

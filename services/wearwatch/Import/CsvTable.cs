@@ -5,7 +5,13 @@ using nietras.SeparatedValues;
 namespace WearWatch.Import;
 
 /// <summary>A row that could not be read: nothing of it was sent, and it says why.</summary>
-internal sealed record RowProblem(string File, int Line, string Column, string Message);
+internal sealed record RowProblem(string File, int Line, string Column, string Message)
+{
+    /// <summary>The row as text; empty where it is the file as a whole.</summary>
+    public string Text { get; init; } = "";
+    /// <summary>Id of the fact that the row would have been, where the row has one.</summary>
+    public string Id { get; init; } = "";
+}
 
 /// <summary>
 /// One CSV file of the import folder, read whole: rows of text with their line numbers. An unknown or missing column
@@ -115,7 +121,7 @@ internal sealed class CsvTable
             if (fields.Length == names.Count) rows.Add(new CsvRow(row.LineNumberFrom, fields));
             else problems.Add(new(file, row.LineNumberFrom, "", fields.Length > names.Count
                 ? $"the row has {fields.Length} fields, the header {names.Count}: a decimal comma? Use a point as the decimal mark"
-                : $"the row has {fields.Length} fields, the header {names.Count}"));
+                : $"the row has {fields.Length} fields, the header {names.Count}") { Text = string.Join(',', fields) });
         }
         return new CsvTable(file, names.Select((n, i) => (n, i)).ToDictionary(c => c.n, c => c.i, StringComparer.Ordinal), rows);
     }
@@ -184,7 +190,7 @@ internal sealed class CsvRow(int line, string[] fields)
 
     public T Fail<T>(string column, string message)
     {
-        Problem ??= new(Table.File, line, column, message);
+        Problem ??= new(Table.File, line, column, message) { Text = AsText, Id = Text("id") };
         return default!;
     }
 }

@@ -61,7 +61,8 @@ internal sealed class FolderFacts(string folder)
     /// <summary>Home depot of a vehicle named in vehicles.csv; the first depot of the folder for one that is not.</summary>
     public string HomeDepot(string vehicleId) => _homeDepot.GetValueOrDefault(vehicleId, FirstDepot);
 
-    private string FirstDepot { get; set; } = "";
+    /// <summary>Depot that sends what belongs to no vehicle of the folder.</summary>
+    public string FirstDepot { get; private set; } = "";
 
     private void Depot(CsvRow row, Fact fact)
     {
@@ -293,7 +294,7 @@ internal sealed class FolderFacts(string folder)
         foreach (var group in children.Where(g => !known.Contains(g.Key)))
         {
             var first = group.First();
-            Problems.Add(new(first.Table.File, first.Line, column, $"'{group.Key}' is not in {parentFile} ({group.Count()} rows)"));
+            Problems.Add(new(first.Table.File, first.Line, column, $"'{group.Key}' is not in {parentFile} ({group.Count()} rows)") { Text = first.AsText });
         }
     }
 

@@ -22,6 +22,9 @@ internal static class ImportFolder
     /// <summary>Facts a call.</summary>
     private const int BatchFacts = 200;
 
+    /// <summary>Characters kept of a row that could not be read.</summary>
+    private const int TextMost = 500;
+
     /// <summary>Steering streams under way at once.</summary>
     private const int Streams = 2;
 
@@ -47,8 +50,25 @@ internal static class ImportFolder
             outcome.Refused++;
             outcome.Reasons.Add(problem.Line > 0 ? $"line {problem.Line}{Named(problem.Column)}: {problem.Message}" : problem.Message);
         }
+        await KeepUnread(facts, ingest, cancel);
         return outcomes;
     }
+
+    /// <summary>Rows that could not be read are sent as such, so that the service keeps them with their reasons.</summary>
+    private static async Task KeepUnread(FolderFacts facts, IngestService.IngestServiceClient ingest, CancellationToken cancel)
+    {
+        foreach (var batch in facts.Problems.Select(p => Unread(p, facts.FirstDepot)).Chunk(BatchFacts))
+            await ingest.RecordFactsAsync(new RecordFactsRequest { Facts = { batch } }, deadline: DateTime.UtcNow.AddMinutes(2), cancellationToken: cancel);
+    }
+
+    private static Fact Unread(RowProblem problem, string depot) => new()
+    {
+        Id = problem.Id.Length > 0 ? problem.Id : $"{Named(problem.File.Replace('/', ':'), problem.Line)}",
+        DepotId = depot,
+        UnreadRow = new UnreadRow { File = problem.File, Line = problem.Line, Column = problem.Column, Reason = problem.Message, Text = problem.Text.Length > TextMost ? problem.Text[..TextMost] : problem.Text },
+    };
+
+    private static string Named(string file, int line) => line > 0 ? $"{file}:{line}" : file;
 
     private static string Named(string column) => column.Length > 0 ? $", {column}" : "";
 

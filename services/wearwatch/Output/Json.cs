@@ -34,6 +34,7 @@ internal static class Json
             ["cannot_tell"] = List(d.CannotTell, c => new JsonObject { ["what"] = c.What, ["because"] = c.Because, ["would_help"] = c.WouldHelp }),
             ["below_limit"] = List(report.BelowLimit, Unsafe),
             ["survey_notes"] = List(d.SurveyNotes, n => new JsonObject { ["survey_id"] = n.SurveyId, ["note"] = n.Note }),
+            ["km_per_week"] = Range(d.KmPerWeek),
             ["straight_runs"] = d.StraightRuns,
             ["job_price"] = new JsonObject { ["value"] = d.JobPrice, ["currency"] = d.NetBenefit?.Unit, ["source"] = d.JobPriceSource },
             ["facts_through"] = d.FactsThrough?.ToDateTimeOffset().ToString("yyyy-MM-ddTHH:mm:ssZ"),
@@ -100,10 +101,17 @@ internal static class Json
         ["remaining_km"] = Range(t.RemainingKm),
         ["limit_mm"] = t.HasLimitMm ? t.LimitMm : null,
         ["limit_source"] = t.LimitSource,
+        ["limit_on"] = Dates(t.LimitOn),
+        ["change_at_mm"] = t.HasChangeAtMm ? t.ChangeAtMm : null,
+        ["to_change_km"] = Range(t.ToChangeKm),
+        ["change_on"] = Dates(t.ChangeOn),
+        ["gauge_step_mm"] = t.GaugeStepMm > 0 ? Round(t.GaugeStepMm) : null,
         ["governing_groove"] = t.HasGoverningGroove ? t.GoverningGroove : null,
         ["edge_slope_mm_per_1000_km"] = Range(t.EdgeSlopeMmPer1000Km),
         ["survey_ids"] = List(t.SurveyIds, id => JsonValue.Create(id)),
     };
+
+    private static JsonObject? Dates(DateRange? d) => d is null ? null : new() { ["likely"] = d.Likely, ["earliest"] = d.Earliest, ["latest"] = d.Latest };
 
     private static JsonObject Finding(Finding f) => new()
     {
@@ -161,7 +169,7 @@ internal static class Json
         ["shown_to"] = u.ShownTo.Length > 0 ? u.ShownTo : null,
     };
 
-    private static JsonObject? Range(Contracts.V1.Range? r) => r is null ? null : new() { ["value"] = Round(r.Value), ["low"] = Round(r.Low), ["high"] = Round(r.High), ["unit"] = r.Unit };
+    public static JsonObject? Range(Contracts.V1.Range? r) => r is null ? null : new() { ["value"] = Round(r.Value), ["low"] = Round(r.Low), ["high"] = Round(r.High), ["unit"] = r.Unit };
 
     private static JsonObject? Money(Contracts.V1.Range? r) => r is null ? null : new() { ["value"] = Math.Round(r.Value, 2), ["low"] = Math.Round(r.Low, 2), ["high"] = Math.Round(r.High, 2), ["currency"] = r.Unit };
 

@@ -87,14 +87,8 @@ internal static class Screen
 
     private static void Tyres(IAnsiConsole console, Contracts.V1.Diagnosis d)
     {
-        var table = new Table().Border(TableBorder.Simple).AddColumns("tyre", "depth at governing groove", "wear mm/1000 km", "to the limit km", "limit mm");
-        foreach (var t in d.Tyres)
-        {
-            table.AddRow(t.Position, t.DepthMm is null ? "not known" : string.Create(CultureInfo.InvariantCulture, $"{t.DepthMm.Value:0.0} mm at groove {t.GoverningGroove}"),
-                t.RateMmPer1000Km is null ? "not known" : string.Create(CultureInfo.InvariantCulture, $"{t.RateMmPer1000Km.Value:0.000} ({t.RateMmPer1000Km.Low:0.000} to {t.RateMmPer1000Km.High:0.000}){(t.RateBorrowed ? ", mostly the fleet's" : "")}"),
-                t.RemainingKm is null ? "not known" : string.Create(CultureInfo.InvariantCulture, $"{t.RemainingKm.Value:#,0} ({t.RemainingKm.Low:#,0} to {t.RemainingKm.High:#,0})"), t.HasLimitMm ? $"{t.LimitMm:0.0#}" : "");
-        }
-        if (table.Rows.Count > 0) console.Write(table);
+        foreach (var line in TyreTable.Lines(d)) console.WriteLine(line);
+        console.WriteLine();
         foreach (var line in d.Tyres.SelectMany(t => TreadDrawing.Lines(t, TreadDrawing.DeepestMm(d.Tyres)))) console.WriteLine(line);
     }
 
@@ -137,6 +131,8 @@ internal static class Screen
             foreach (var reason in o.Reasons.Take(reasonsPerFile)) console.MarkupLineInterpolated($"  {o.File}: {reason}");
             if (o.Reasons.Count > reasonsPerFile) console.MarkupLineInterpolated($"  {o.File}: ... and {o.Reasons.Count - reasonsPerFile} more");
         }
+        if (outcomes.Any(o => o.Held > 0)) console.WriteLine("What was held waits for an answer: wearwatch held");
+        if (outcomes.Any(o => o.Refused > 0)) console.WriteLine("What was refused is kept with its reason: wearwatch held --refused");
     }
 
     private static string Words(string name) => name.Replace('_', ' ');

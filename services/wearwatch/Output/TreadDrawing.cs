@@ -23,18 +23,18 @@ internal static class TreadDrawing
         return lines;
     }
 
-    /// <summary>Bars from the outboard to the inboard side; <c>|</c> is the legal limit.</summary>
+    /// <summary>Width from the outboard to the inboard side; <c>|</c> is the legal limit.</summary>
     private static IEnumerable<string> Across(TyreDiagnosis tyre, double deepestMm)
     {
         if (tyre.Grooves.Count == 0) yield break;
         var perMm = Width / Math.Max(deepestMm, tyre.HasLimitMm ? tyre.LimitMm : 0);
-        yield return $"{tyre.Position} across, {Number(perMm)} columns a mm{(tyre.HasLimitMm ? $", | the limit of {Number(tyre.LimitMm)} mm" : "")}";
+        yield return $"{tyre.Position} across, from the outboard side{(Depths.IsInches(tyre.GaugeStepMm) ? "; gauge reads 1/32 in" : ", mm")}{(tyre.HasLimitMm ? $"; | the limit of {Number(tyre.LimitMm)} mm" : "")}";
         foreach (var groove in tyre.Grooves)
         {
             var bar = new string('=', Math.Clamp((int)Math.Round(groove.DepthMm * perMm), 0, Width)).PadRight(Width).ToCharArray();
             if (tyre.HasLimitMm) bar[Math.Clamp((int)Math.Round(tyre.LimitMm * perMm) - 1, 0, Width - 1)] = '|';
             var side = groove == tyre.Grooves[0] ? "out" : groove == tyre.Grooves[^1] ? "in" : "";
-            yield return $"{side,4}{groove.Groove,3} {new string(bar).TrimEnd()} {Number(groove.DepthMm)}";
+            yield return $"{side,4}{groove.Groove,3} {new string(bar).TrimEnd()} {Depths.Gauge(groove.DepthMm, tyre.GaugeStepMm)}";
         }
     }
 
@@ -61,7 +61,7 @@ internal static class TreadDrawing
         yield return $"{tyre.Position} wear{(tyre.GoverningGroove > 0 ? $" at groove {tyre.GoverningGroove}" : "")}: o measured, * to come, : 90 % fan, - limit";
         for (var r = 0; r < Height; r++)
         {
-            var label = r == Row(tyre.LimitMm) ? Number(tyre.LimitMm) : r == 0 ? Number(top) : "";
+            var label = r == Row(tyre.LimitMm) ? Number(tyre.LimitMm) : r == 0 ? top.ToString("0.0", CultureInfo.InvariantCulture) : "";
             yield return $"{label,Left - 2} {new string([.. Enumerable.Range(0, Width).Select(c => canvas[r, c])])}".TrimEnd();
         }
         var (from, to) = (Km(first), Km(end));

@@ -35,7 +35,7 @@ public class SurveyCheckTests
     };
 
     private static IReadOnlyList<ReadingIssue> Check(TreadSurvey survey, TreadSurvey? previous = null, IReadOnlyList<FittingRecord>? fittings = null, double? newDepth = 16) =>
-        SurveyCheck.Check(survey, s_truck, previous, fittings ?? [], _ => newDepth, p => DepthLimits.For("DE", s_truck, p, false, DateOnly.FromDateTime(survey.At.UtcDateTime), []));
+        SurveyCheck.Check(survey, s_truck, previous is null ? [] : [previous], fittings ?? [], _ => newDepth, p => DepthLimits.For("DE", s_truck, p, false, DateOnly.FromDateTime(survey.At.UtcDateTime), []));
 
     private static TreadSurvey With(TreadSurvey survey, int tyre, Func<TyreReadings, TyreReadings> change) =>
         survey with { Tyres = [.. survey.Tyres.Select((t, i) => i == tyre ? change(t) : t)] };

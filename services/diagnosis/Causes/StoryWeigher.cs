@@ -144,7 +144,7 @@ public sealed class StoryWeigher
         Point[] points = [.. Enumerable.Range(0, onsets * cells).Select(at =>
             new Point(at / cells, at % cells, Math.Log(story.Cells[at % cells].Share) + (onsets > 1 ? Math.Log(Onsets.Shares[at / cells]) : 0)))];
         int[] own = [.. Enumerable.Range(0, onsets).Where(o => _asOnset[o] == o)];
-        int[] all = [.. Enumerable.Range(0, cells)], some = [.. all.Where(i => cells <= 6 || i % 3 == 0 || i == cells - 1 || i == cells / 2 - 1 || i == cells / 2)];
+        int[] all = [.. Enumerable.Range(0, cells)], some = [.. all.Where(i => cells <= 6 || Math.Min(i, cells - 1 - i) % 3 == 0 || i == cells / 2 - 1 || i == cells / 2)];
         var best = double.NegativeInfinity;
         for (var n = 0; n < own.Length; n += 2)
         {

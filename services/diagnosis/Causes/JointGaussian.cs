@@ -28,7 +28,7 @@ public sealed class JointGaussian
     /// <summary>SD of a wild slope about a sound tyre's, share of the normal rate.</summary>
     private const double WildSlopeSd = 2;
 
-    private static readonly double LogGood = Math.Log(1 - Sensitivities.WildShare), LogWildShare = Math.Log(Sensitivities.WildShare);
+    private static readonly double LogGood = Math.Log(1 - Sensitivities.WildShare), LogWildShare = Math.Log(Sensitivities.WildShare), LogWildPlaceShare = Math.Log(Sensitivities.WildPlaceShare);
 
     private readonly VehicleModel _model;
     private readonly IReadOnlyList<Observable> _single;
@@ -194,7 +194,7 @@ public sealed class JointGaussian
         _wild.Clear();
         Solve(_ordinarySd, inFull: true);
         // What a wild reading is worth hangs on the rest of the vehicle by the surveys' shared errors alone.
-        sound.LogWild = [.. _single.Select(s => LogWildShare + LogNormal(s.Value, s.WildSd * s.WildSd)), .. Enumerable.Range(0, _wear.Length).Select(w => LogWildShare + LogWildPlace(w))];
+        sound.LogWild = [.. _single.Select(s => LogWildShare + LogNormal(s.Value, s.WildSd * s.WildSd)), .. Enumerable.Range(0, _wear.Length).Select(w => LogWildPlaceShare + LogWildPlace(w))];
         (sound.Mean, sound.Variance) = ([.. _mean], [.. _variance]);
         At(nothing, _ordinarySd, gain, _ => { });
         sound.Wild = [.. _wild];

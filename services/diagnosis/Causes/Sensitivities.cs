@@ -86,6 +86,9 @@ public static class Sensitivities
     /// <summary>Chance that one reading is wild: wrong wheel, wrong unit, wrong tyre (from memory, 1 to 3 %).</summary>
     public const double WildShare = 0.02;
 
+    /// <summary>Chance that all that was read of a place tells of something else (another wheel throughout, a cupped tread), where its whole history is read; from memory.</summary>
+    public const double WildPlaceShare = 0.005;
+
     private static readonly Dictionary<VehicleClass, ClassSensitivities> Table = new()
     {
         [VehicleClass.Car] = new(0.22, 0.20, 0.045 / 16, 0.50, 0.35, 1.0, 0.015 / 16, 20, 16, 55e3, 0.15, 0.09, 0.06, 8),

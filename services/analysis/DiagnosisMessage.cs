@@ -75,7 +75,10 @@ internal static class DiagnosisMessage
             Probability = c.Probability,
         };
         if (c.Axle is { } axle) cause.Axle = axle;
+        if (c.Since is { } since) cause.Since = new DateRange { Likely = Day(since.Likely), Earliest = Day(since.Earliest), Latest = Day(since.Latest) };
         return cause;
+
+        static string Day(DateOnly? day) => day?.ToString("yyyy-MM-dd", System.Globalization.CultureInfo.InvariantCulture) ?? "";
     }
 
     private static Change Of(DatedChange c, bool published)

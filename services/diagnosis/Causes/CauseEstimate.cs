@@ -30,7 +30,7 @@ public static class CauseEstimate
         return new Verdict
         {
             MisalignedProbability = mixture.Misaligned,
-            Causes = Causes(mixture),
+            Causes = Causes(mixture, figures.AsOf),
             CannotTell = CannotTellWords.Of(model, mixture.Misaligned),
             Effects = Effects(model, mixture),
         };
@@ -45,11 +45,11 @@ public static class CauseEstimate
         foreach (var (angle, look) in pairs) mixture.Refine(angle, look, weigher.Weigh(mixture.Angles[angle].Story, mixture.Looks[look].Story));
     }
 
-    private static IReadOnlyList<Cause> Causes(Mixture mixture) =>
+    private static IReadOnlyList<Cause> Causes(Mixture mixture, DateOnly asOf) =>
     [
         .. Enumerable.Range(0, mixture.Angles.Count)
             .GroupBy(a => (mixture.Angles[a].Story.Quantity, mixture.Angles[a].Story.Axle, mixture.Angles[a].Story.Side))
-            .Select(ways => Named(mixture.Angles[ways.First()].Story, ways.Sum(mixture.AngleShare), Together(mixture, [.. ways])))
+            .Select(ways => Named(mixture.Angles[ways.First()].Story, ways.Sum(mixture.AngleShare), Together(mixture, [.. ways])) with { Since = Began(mixture, [.. ways], asOf) })
             .Concat(Enumerable.Range(0, mixture.Looks.Count).Select(l => Named(mixture.Looks[l].Story, mixture.LookShare(l), mixture.Looks[l].CellShares())))
             .OrderByDescending(c => c.Probability),
     ];
@@ -64,6 +64,19 @@ public static class CauseEstimate
             for (var i = 0; i < cells.Length; i++) cells[i] += share * own[i];
         }
         return cells;
+    }
+
+    /// <summary>Since when, over all ways in which the same angle came about.</summary>
+    private static Since? Began(Mixture mixture, int[] ways, DateOnly asOf)
+    {
+        var onsets = new double[mixture.Angles[ways[0]].ByOnset.Length];
+        if (onsets.Length == 1) return null;
+        foreach (var a in ways)
+        {
+            var (share, own) = (Math.Max(mixture.AngleShare(a), 1e-12), mixture.AngleOnsets(a));
+            for (var o = 0; o < onsets.Length; o++) onsets[o] += share * own[o];
+        }
+        return Since.Of(asOf, onsets);
     }
 
     private static Cause Named(Story story, double probability, double[] shares)

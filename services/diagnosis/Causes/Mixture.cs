@@ -73,6 +73,20 @@ public sealed class Mixture
         return cells;
     }
 
+    /// <summary>Posterior share of each onset of an angle story, given that it is out.</summary>
+    public double[] AngleOnsets(int angle)
+    {
+        var onsets = new double[Angles[angle].ByOnset.Length];
+        var total = AngleShare(angle);
+        for (var l = 0; l <= Looks.Count; l++)
+        {
+            var logs = (_pairs[angle, l] ?? Angles[angle]).ByOnset;
+            var all = StoryFit.LogSum(logs);
+            for (var o = 0; o < onsets.Length; o++) onsets[o] += Shares()[angle, l] / total * Math.Exp(logs[o] - all);
+        }
+        return onsets;
+    }
+
     private double[,] Shares()
     {
         if (_shares is not null) return _shares;

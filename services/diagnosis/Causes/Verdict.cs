@@ -1,5 +1,6 @@
 using WearWatch.Diagnosis.Facts;
 using WearWatch.Diagnosis.Statistics;
+using WearWatch.Diagnosis.Wear;
 
 namespace WearWatch.Diagnosis.Causes;
 
@@ -22,7 +23,35 @@ public sealed record Verdict
 /// <param name="OutsideTolerance">Whether the value lies beyond tolerance.</param>
 /// <param name="Probability">Posterior probability of this story.</param>
 /// <param name="TolerancePlusMinus">The tolerance used, in the same unit; null for look-alikes.</param>
-public sealed record Cause(Quantity Quantity, int? Axle, Side? Side, Interval Value, bool OutsideTolerance, double Probability, double? TolerancePlusMinus = null);
+/// <param name="Since">Since when, given that it is the cause; null for look-alikes and where nothing is dated.</param>
+public sealed record Cause(
+    Quantity Quantity, int? Axle, Side? Side, Interval Value, bool OutsideTolerance, double Probability, double? TolerancePlusMinus = null, Since? Since = null);
+
+/// <summary>When a fault began: as likely before as after <see cref="Likely"/>, with a 90 % range; null where it may have been there before anything that was measured.</summary>
+public sealed record Since(DateOnly? Likely, DateOnly? Earliest, DateOnly Latest)
+{
+    /// <param name="asOf">Day from which the onsets count back.</param>
+    /// <param name="shares">Posterior share of each of <see cref="Wear.Onsets.DaysAgo"/>.</param>
+    internal static Since Of(DateOnly asOf, IReadOnlyList<double> shares)
+    {
+        return new(Day(Ago(0.5)), Day(Ago(0.05)), Day(Ago(0.95)) ?? asOf);
+
+        DateOnly? Day(double daysAgo) => double.IsFinite(daysAgo) ? asOf.AddDays(-(int)Math.Round(daysAgo)) : null;
+        double Ago(double share)
+        {
+            var (total, before) = (shares.Sum(), 0.0);
+            for (var o = 0; o < shares.Count; o++)
+            {
+                var here = shares[o] / total;
+                var (latest, earliest) = Onsets.Stretch(o);
+                // Within the first stretch the date is open, unless the fault is certain to have begun before it ends.
+                if (before + here >= share && here > 0) return o == 0 ? (share > 0.9 ? latest : double.PositiveInfinity) : earliest - (share - before) / here * (earliest - latest);
+                before += here;
+            }
+            return 0;
+        }
+    }
+}
 
 /// <summary>Something the data cannot say, why, and what would help.</summary>
 public sealed record CannotTell(string What, string Because, string WouldHelp);

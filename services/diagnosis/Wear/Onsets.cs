@@ -15,15 +15,17 @@ public static class Onsets
     /// <summary>Prior share of each onset among faults: each stands for the stretch of time around it.</summary>
     public static IReadOnlyList<double> Shares { get; } = Share();
 
-    private static double[] Share()
+    /// <summary>
+    /// Days ago between which an onset stands: edges halfway between neighbours; the oldest finite one reaches as far beyond as
+    /// before, the first from there to ever.
+    /// </summary>
+    public static (double Latest, double Earliest) Stretch(int onset)
     {
-        var n = DaysAgo.Count;
-        var shares = new double[n];
-        // Edges halfway between neighbours; the oldest finite onset reaches as far beyond as before.
-        double From(int i) => i == n - 1 ? 0 : (DaysAgo[i] + DaysAgo[i + 1]) / 2;
-        double To(int i) => i == 1 ? 1.5 * DaysAgo[1] - 0.5 * DaysAgo[2] : From(i - 1);
-        for (var i = 1; i < n; i++) shares[i] = Math.Exp(-From(i) / MeanAgeDays) - Math.Exp(-To(i) / MeanAgeDays);
-        shares[0] = Math.Exp(-To(1) / MeanAgeDays);
-        return shares;
+        var oldest = 1.5 * DaysAgo[1] - 0.5 * DaysAgo[2];
+        double Edge(int i) => i == 0 ? oldest : i == DaysAgo.Count - 1 ? 0 : (DaysAgo[i] + DaysAgo[i + 1]) / 2;
+        return (Edge(onset), onset == 0 ? double.PositiveInfinity : Edge(onset - 1));
     }
+
+    private static double[] Share() =>
+        [.. Enumerable.Range(0, DaysAgo.Count).Select(i => Math.Exp(-Stretch(i).Latest / MeanAgeDays) - Math.Exp(-Stretch(i).Earliest / MeanAgeDays))];
 }

@@ -90,7 +90,10 @@ internal static class Json
         ["unit"] = c.Unit,
         ["outside_tolerance"] = c.OutsideTolerance,
         ["probability"] = Round(c.Probability),
+        ["since"] = c.Since is { } s ? new JsonObject { ["likely"] = Day(s.Likely), ["earliest"] = Day(s.Earliest), ["latest"] = Day(s.Latest) } : null,
     };
+
+    private static string? Day(string day) => day.Length > 0 ? day : null;
 
     private static JsonObject Tyre(TyreDiagnosis t) => new()
     {

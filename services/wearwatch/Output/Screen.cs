@@ -76,14 +76,21 @@ internal static class Screen
 
     private static void Causes(IAnsiConsole console, Contracts.V1.Diagnosis d)
     {
-        var table = new Table().Border(TableBorder.Simple).AddColumns("cause", "axle", "side", "if so: value (90 %)", "beyond tolerance", "probability");
+        var table = new Table().Border(TableBorder.Simple).AddColumns("cause", "axle", "side", "if so: value (90 %)", "beyond tolerance", "probability", "since");
         foreach (var c in d.Causes.Where(c => c.Probability >= 0.01).Take(8))
         {
             table.AddRow(Words(EnumWords.Word(c.Quantity)), c.HasAxle ? $"{c.Axle}" : "", c.Side switch { Side.Left => "left", Side.Right => "right", _ => "" },
-                string.Create(CultureInfo.InvariantCulture, $"{c.Value:0.00} ({c.Low:0.00} to {c.High:0.00}) {(c.Unit == "1" ? "" : c.Unit)}"), c.OutsideTolerance ? "yes" : "", $"{c.Probability:0.00}");
+                string.Create(CultureInfo.InvariantCulture, $"{c.Value:0.00} ({c.Low:0.00} to {c.High:0.00}) {(c.Unit == "1" ? "" : c.Unit)}"), c.OutsideTolerance ? "yes" : "", $"{c.Probability:0.00}", Since(c.Since));
         }
         if (table.Rows.Count > 0) console.Write(table);
     }
+
+    private static string Since(DateRange? since) => since switch
+    {
+        null => "",
+        { Earliest: "" } => $"by {since.Latest} at the latest",
+        _ => $"{since.Earliest} to {since.Latest}",
+    };
 
     private static void Tyres(IAnsiConsole console, Contracts.V1.Diagnosis d)
     {

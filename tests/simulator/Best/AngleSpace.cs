@@ -83,13 +83,16 @@ public sealed class AngleSpace
         }
     }
 
+    /// <summary>Distance of a quantity from its target, tolerances.</summary>
+    public double Ratio(Geometry g, int quantity) => Math.Abs(Value(g, quantity) - Quantities[quantity].Tolerance.Target) / Quantities[quantity].Tolerance.PlusMinus;
+
     /// <summary>The quantity farthest from its target and how far, tolerances.</summary>
     public (int Quantity, double Ratio) Worst(Geometry g)
     {
         var (worst, ratio) = (0, -1.0);
         for (var q = 0; q < Quantities.Length; q++)
         {
-            var r = Math.Abs(Value(g, q) - Quantities[q].Tolerance.Target) / Quantities[q].Tolerance.PlusMinus;
+            var r = Ratio(g, q);
             if (r > ratio) (worst, ratio) = (q, r);
         }
         return (worst, ratio);

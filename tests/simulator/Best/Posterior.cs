@@ -21,24 +21,29 @@ public sealed class Posterior
     private const double Degrees = 6; // of Student's t
     /// <summary>Draws for the sound vehicle, for each kind of fault, and again for those kinds that carry weight.</summary>
     private const int DrawsOfSound = 256, DrawsOfFault = 32, DrawsOfLikely = 256;
-    /// <summary>Kinds this far (in log) behind the best after a rough fit, and after a full one, are left out.</summary>
-    private const double RoughBehind = 14, Behind = 7.5;
+    /// <summary>Kinds this far (in log) behind the best after a rough fit, a nearer one and a full one are left out.</summary>
+    private const double RoughBehind = 25, NearBehind = 14, Behind = 7.5;
     /// <summary>Kinds this near the heaviest are sampled at length.</summary>
     private const double Likely = 3.5;
     private const double Step = 0.01;
+    /// <summary>Where the search is turned back, tolerances, and within how much.</summary>
+    private const double LimitFrom = 0.88, LimitWidth = 0.04;
 
     private readonly VehicleModel _model;
     private readonly FaultLaw _law;
     private readonly RandomStream _random;
     private readonly int _angles;
     private readonly double[] _errors, _trial;
-    private readonly double[][] _jacobian;
+    private readonly double[][] _jacobian, _soundSlopes;
+    private readonly double[] _soundProducts;
 
     private Posterior(VehicleModel model, FaultLaw law, RandomStream random)
     {
         (_model, _law, _random, _angles) = (model, law, random, model.Angles.Count);
-        (_errors, _trial) = (new double[model.Residuals], new double[model.Residuals]);
-        _jacobian = [.. Enumerable.Range(0, _angles + 3).Select(_ => new double[model.Residuals])];
+        var n = model.Residuals + model.Angles.Quantities.Length;
+        (_errors, _trial) = (new double[n], new double[n]);
+        (_soundSlopes, _soundProducts) = (new double[_angles][], new double[_angles * _angles]);
+        _jacobian = [.. Enumerable.Range(0, _angles + 3).Select(_ => new double[n])];
     }
 
     /// <summary>A kind of fault with its most probable point.</summary>
@@ -60,27 +65,31 @@ public sealed class Posterior
         var kinds = _law.Of(_model).ToList();
         var sound = new Fit(kinds[0], new double[_angles]);
         Improve(sound, 12);
-        var rough = new List<Fit>();
-        foreach (var kind in kinds.Skip(1))
-        {
-            double[] start = [.. sound.Point, .. ((double[])[-0.5, 0, 0])[..kind.Unknowns]];
-            var fit = new Fit(kind, start);
-            Improve(fit, 3);
-            rough.Add(fit);
-        }
-        var best = Math.Max(sound.LogWeight, rough.Count == 0 ? double.NegativeInfinity : rough.Max(f => f.LogWeight));
-        var close = rough.Where(f => f.LogWeight > best - RoughBehind).ToList();
-        foreach (var fit in close) Improve(fit, 8);
-        best = Math.Max(sound.LogWeight, close.Count == 0 ? double.NegativeInfinity : close.Max(f => f.LogWeight));
+        KeepSoundSlopes(sound);
+        var fits = kinds.Skip(1).Select(kind => new Fit(kind, [.. sound.Point.Select(x => 0.7 * x), .. ((double[])[-0.5, 0, 0])[..kind.Unknowns]])).ToList();
+        foreach (var fit in fits) Improve(fit, 4, rough: true);
+        fits = Best(fits, sound, RoughBehind);
+        foreach (var fit in fits) Improve(fit, 2);
+        fits = Best(fits, sound, NearBehind);
+        foreach (var fit in fits) Improve(fit, 8);
+        var close = Best(fits, sound, Behind);
+        foreach (var fit in close.Append(sound)) Refresh(fit);
         var soundWeight = Sample(sound, DrawsOfSound).LogWeight;
-        var faulty = close.Where(f => f.LogWeight > best - Behind).Select(f => (Fit: f, Sample: Sample(f, DrawsOfFault))).ToList();
+        var faulty = close.Select(f => (Fit: f, Sample: Sample(f, DrawsOfFault))).ToList();
         var most = Math.Max(soundWeight, faulty.Count == 0 ? double.NegativeInfinity : faulty.Max(f => f.Sample.LogWeight));
-        return Tell(soundWeight, [.. faulty.Select(f => f.Sample.LogWeight > most - Likely ? Sample(f.Fit, DrawsOfLikely) : f.Sample)]);
+        return Tell(soundWeight, [.. faulty.Select(f => f.Sample.LogWeight > most - Likely ? SampleTwice(f.Fit) : f.Sample)]);
+    }
+
+    private static List<Fit> Best(List<Fit> fits, Fit sound, double behind)
+    {
+        var best = fits.Select(f => f.LogWeight).Append(sound.LogWeight).Max();
+        return [.. fits.Where(f => f.LogWeight > best - behind)];
     }
 
     private BestVerdict Tell(double soundWeight, Sampled[] faulty)
     {
         var most = faulty.Select(f => f.LogWeight).Append(soundWeight).Max();
+        if (double.IsNegativeInfinity(most)) throw new InvalidOperationException($"no kind of fault explains what was read of {_model.Vehicle.Id}");
         var misaligned = faulty.Sum(f => Math.Exp(f.LogWeight - most));
         var all = Math.Exp(soundWeight - most) + misaligned;
         var causes = faulty.SelectMany(f => f.Outside).GroupBy(o => o.Quantity).Select(g =>
@@ -120,10 +129,18 @@ public sealed class Posterior
     /// <summary>Centre and standard deviation that stand in for the law of an unknown while a point is sought.</summary>
     private (double Centre, double Sd) Near(int unknown) => unknown < _angles ? (0, 1) : unknown == _angles ? (-0.9, 1.5) : (0, 1.8);
 
+    /// <summary>Errors of what was read, and how far the sound vehicle's angles lie beyond their limit, so steeply that the search stays within.</summary>
+    private void Errors(double[] errors)
+    {
+        _model.Errors(errors.AsSpan(0, _model.Residuals));
+        for (var q = 0; q < _model.Angles.Quantities.Length; q++)
+            errors[_model.Residuals + q] = Math.Max(0, _model.Angles.Ratio(_model.SoundAngles, q) - LimitFrom) / LimitWidth;
+    }
+
     private double CostAt(Supposition kind, double[] point, double[] errors)
     {
         Suppose(kind, point);
-        _model.Errors(errors);
+        Errors(errors);
         double cost = 0;
         foreach (var e in errors) cost += e * e / 2;
         for (var i = 0; i < point.Length; i++)
@@ -134,13 +151,14 @@ public sealed class Posterior
         return cost;
     }
 
-    private void Improve(Fit fit, int times)
+    /// <param name="rough">Take the errors' slopes against the sound angles to be those of the sound vehicle.</param>
+    private void Improve(Fit fit, int times, bool rough = false)
     {
         var n = fit.Point.Length;
         fit.Cost = CostAt(fit.Kind, fit.Point, _errors);
         for (var time = 0; time < times; time++)
         {
-            var slope = Curvature(fit, n);
+            var slope = Curvature(fit, n, rough ? _angles : 0);
             var better = false;
             for (var share = 1.0; share > 0.1 && !better; share /= 2)
             {
@@ -158,30 +176,53 @@ public sealed class Posterior
         }
     }
 
+    /// <summary>Slopes at the sound point, and the products of them, for rough fits of faults.</summary>
+    private void KeepSoundSlopes(Fit sound)
+    {
+        Suppose(sound.Kind, sound.Point);
+        Errors(_errors);
+        Curvature(sound, _angles, 0);
+        for (var i = 0; i < _angles; i++)
+        {
+            _soundSlopes[i] = (double[])_jacobian[i].Clone();
+            for (var j = 0; j <= i; j++) _soundProducts[i * _angles + j] = Dot(_jacobian[i], _jacobian[j]);
+        }
+    }
+
     /// <summary>Factors the curvature at a point (errors there are at hand); the step to the minimum is point − answer.</summary>
-    private double[] Curvature(Fit fit, int n)
+    /// <param name="known">Unknowns whose slopes are taken from the sound vehicle.</param>
+    private double[] Curvature(Fit fit, int n, int known)
     {
         var moved = (double[])fit.Point.Clone();
-        for (var i = 0; i < n; i++)
+        for (var i = known; i < n; i++)
         {
             moved[i] += Step;
             Suppose(fit.Kind, moved);
-            _model.Errors(_jacobian[i]);
+            Errors(_jacobian[i]);
             moved[i] = fit.Point[i];
             for (var r = 0; r < _errors.Length; r++) _jacobian[i][r] = (_jacobian[i][r] - _errors[r]) / Step;
         }
+        double[] Slopes(int i) => i < known ? _soundSlopes[i] : _jacobian[i];
         var (curvature, slope) = (new double[n * n], new double[n]);
         for (var i = 0; i < n; i++)
         {
             var (centre, sd) = Near(i);
-            slope[i] = Dot(_jacobian[i], _errors) + (fit.Point[i] - centre) / (sd * sd);
-            for (var j = 0; j <= i; j++) curvature[i * n + j] = curvature[j * n + i] = Dot(_jacobian[i], _jacobian[j]);
+            slope[i] = Dot(Slopes(i), _errors) + (fit.Point[i] - centre) / (sd * sd);
+            for (var j = 0; j <= i; j++)
+                curvature[i * n + j] = curvature[j * n + i] = i < known ? _soundProducts[i * _angles + j] : Dot(Slopes(i), Slopes(j));
             curvature[i * n + i] += 1 / (sd * sd);
         }
         Cholesky.Factor(curvature, n);
         Cholesky.Solve(curvature, n, slope);
         fit.Factor = curvature;
         return slope;
+    }
+
+    /// <summary>Takes the curvature at the point that was reached.</summary>
+    private void Refresh(Fit fit)
+    {
+        fit.Cost = CostAt(fit.Kind, fit.Point, _errors);
+        Curvature(fit, fit.Point.Length, 0);
     }
 
     private static double Dot(double[] a, double[] b)
@@ -195,13 +236,57 @@ public sealed class Posterior
     }
 
     /// <summary>Log weight of a kind by sampling, and what each draw says of the quantities beyond tolerance, at its share of that weight.</summary>
-    private sealed record Sampled(double LogWeight, List<(int Quantity, double Value, bool Largest, double LogWeight)> Outside);
+    private sealed record Sampled(double LogWeight, List<(int Quantity, double Value, bool Largest, double LogWeight)> Outside, List<(double[] Point, double LogWeight)> Points);
+
+    /// <summary>Samples at length, about what a first sample found rather than about its most probable point.</summary>
+    private Sampled SampleTwice(Fit fit)
+    {
+        var first = Sample(fit, DrawsOfLikely);
+        if (Gather(fit, first.Points) is { } gathered && Sample(gathered, DrawsOfLikely) is { Points.Count: > 0 } second && Effective(second.Points) > Effective(first.Points)) return second;
+        return first;
+    }
+
+    /// <summary>Effective number of draws (Kong 1992).</summary>
+    private static double Effective(List<(double[] Point, double LogWeight)> points)
+    {
+        if (points.Count == 0) return 0;
+        var most = points.Max(p => p.LogWeight);
+        return Math.Pow(points.Sum(p => Math.Exp(p.LogWeight - most)), 2) / points.Sum(p => Math.Exp(2 * (p.LogWeight - most)));
+    }
+
+    /// <summary>Mean and spread of a sample as the place to sample from; weights are flattened until a few draws per unknown carry them.</summary>
+    private static Fit? Gather(Fit fit, List<(double[] Point, double LogWeight)> points)
+    {
+        var n = fit.Point.Length;
+        if (points.Count < 5 * n) return null;
+        var flat = points;
+        for (var power = 0.8; Effective(flat) < 3 * n && power > 0.02; power *= 0.8) flat = [.. points.Select(p => (p.Point, power * p.LogWeight))];
+        var most = flat.Max(p => p.LogWeight);
+        var all = flat.Sum(p => Math.Exp(p.LogWeight - most));
+        var mean = new double[n];
+        foreach (var (point, log) in flat)
+            for (var i = 0; i < n; i++) mean[i] += Math.Exp(log - most) / all * point[i];
+        var spread = new double[n * n];
+        foreach (var (point, log) in flat)
+            for (var i = 0; i < n; i++)
+                for (var j = 0; j < n; j++) spread[i * n + j] += Math.Exp(log - most) / all * (point[i] - mean[i]) * (point[j] - mean[j]);
+        for (var i = 0; i < n; i++) spread[i * n + i] += 1e-12 + 1e-6 * spread[i * n + i];
+        Cholesky.Factor(spread, n);
+        var inverse = Cholesky.InverseOfFactor(spread, n);
+        var precision = new double[n * n];
+        for (var i = 0; i < n; i++)
+            for (var j = 0; j < n; j++)
+                for (var k = Math.Max(i, j); k < n; k++) precision[i * n + j] += inverse[k * n + i] * inverse[k * n + j];
+        Cholesky.Factor(precision, n);
+        return new(fit.Kind, mean) { Factor = precision };
+    }
 
     private Sampled Sample(Fit fit, int draws)
     {
         var (kind, n) = (fit.Kind, fit.Point.Length);
         var logs = new List<double>();
         var outside = new List<(int, double, bool, double)>();
+        var points = new List<(double[] Point, double LogWeight)>();
         var logFactor = Cholesky.LogDeterminant(fit.Factor, n) / 2;
         var point = new double[n];
         for (var d = 0; d < draws; d++)
@@ -221,13 +306,14 @@ public sealed class Posterior
                 + LogGamma((Degrees + n) / 2) - LogGamma(Degrees / 2) - n / 2.0 * Math.Log(Degrees * Math.PI);
             var prior = LogPrior(kind, point);
             if (double.IsNegativeInfinity(prior)) continue;
-            var log = prior + _model.LogLikelihood(_errors) - proposal;
+            var log = prior + _model.LogLikelihood(_errors.AsSpan(0, _model.Residuals)) - proposal;
             logs.Add(log);
+            points.Add(((double[])point.Clone(), log));
             if (kind.PerDeg is not null) AddOutside(outside, log - Math.Log(draws));
         }
-        if (logs.Count == 0) return new(double.NegativeInfinity, []);
+        if (logs.Count == 0) return new(double.NegativeInfinity, [], []);
         var most = logs.Max();
-        return new(most + Math.Log(logs.Sum(l => Math.Exp(l - most)) / draws), outside);
+        return new(most + Math.Log(logs.Sum(l => Math.Exp(l - most)) / draws), outside, points);
     }
 
     private void AddOutside(List<(int, double, bool, double)> list, double logWeight)

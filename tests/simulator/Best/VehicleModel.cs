@@ -123,10 +123,11 @@ public sealed class VehicleModel
     {
         var sum = new double[Tyre.Strips];
         var rates = new double[Tyre.Strips];
-        const int parts = 8;
+        // A week at a time, as earlier life was lived.
+        var parts = Math.Max(1, (int)Math.Ceiling((span.To - span.From) / 7));
         for (var i = 0; i < parts; i++)
         {
-            var (a, b) = (span.From + (span.To - span.From) * i / parts, span.From + (span.To - span.From) * (i + 1) / parts);
+            var (a, b) = (span.From + 7 * i, Math.Min(span.From + 7 * i + 7, span.To));
             var g = _v.GeometryAt((a + b) / 2);
             _sets[span.Set].OnRoads.Solve(g.Rolling(_v.Type), _slip[0]);
             Rates(span.Position, g, _slip[0][span.Position.Index], rates);

@@ -35,7 +35,7 @@ public static class OneEdgeWearRule
         var finAgrees = RuleLimits.Agrees(feather.Shared, sign) || (feather.Shared is null && RuleLimits.Agrees(feather.Worse, sign));
         var finContradicts = RuleLimits.Agrees(feather.Shared, -sign);
         var finClean = FeatherReading.Clean(pair.Left) && FeatherReading.Clean(pair.Right);
-        var roll = sign > 0 && !finAgrees ? Rolling(figures, axle) : [];
+        var roll = sign > 0 && !finAgrees && !finContradicts ? Rolling(figures, axle) : [];
         var causes = MirroredCauses(figures, axle, pair.Dual, sign, finAgrees, finContradicts, finClean, roll.Count > 0);
 
         var (workshopFor, workshopAgainst) = Witnesses.Workshop(figures);

@@ -3,13 +3,19 @@ using WearWatch.Diagnosis.Statistics;
 
 namespace WearWatch.Diagnosis.Unusual;
 
-/// <summary>Distances of one vehicle from its class; both are mean squares (about 1 on a usual vehicle) and grow with the square of a deviation.</summary>
-/// <param name="SquaredPredictionError">Per figure: what the common directions do not explain.</param>
-/// <param name="HotellingT2">Per direction: how far out along the common directions.</param>
-/// <param name="Errors">The larger of the two, in robust standard deviations of the class's cube roots.</param>
+/// <summary>
+/// Distances of one vehicle from its class; all grow with the square of a deviation. The first two are the textbook's; a vehicle is judged by
+/// the other three, whose tails the bulk of a fleet foretells: one figure far out counts in <see cref="Greatest"/> and not everywhere.
+/// </summary>
+/// <param name="SquaredPredictionError">Mean square per figure of what the common directions do not explain; about 1 on a usual vehicle.</param>
+/// <param name="HotellingT2">Mean square per direction of how far out along the common directions; about 1 on a usual vehicle.</param>
+/// <param name="Greatest">The greatest square among the residuals: one figure far out is not thinned by the many that are not.</param>
+/// <param name="Breadth">Mean square of the residuals, none counting for more than three spreads: many figures a little off.</param>
+/// <param name="Along">Mean square along the common directions, no figure counting for more than three spreads: out together, as the fleet varies, but further.</param>
+/// <param name="Errors">The largest of the three, in scales of the class's cube roots.</param>
 /// <param name="Standardised">Each figure less its class's centre over its spread; NaN where not known.</param>
-/// <param name="Residual">Each figure's part of the prediction error, standardised; NaN where not known.</param>
-public sealed record UnusualDistances(double SquaredPredictionError, double HotellingT2, double Errors, double[] Standardised, double[] Residual)
+/// <param name="Residual">Each figure's part that the common directions do not explain, standardised; NaN where not known.</param>
+public sealed record UnusualDistances(double SquaredPredictionError, double HotellingT2, double Greatest, double Breadth, double Along, double Errors, double[] Standardised, double[] Residual)
 {
     public bool BeyondLimit => Errors > DistanceSpread.LimitErrors;
 }
@@ -46,19 +52,28 @@ public sealed record UnusualFit
         for (var j = 0; j < z.Length; j++)
             if (findings is not null && UnusualFigures.IsNamed(UnusualFigures.All[j], figures.Vehicle, findings)) z[j] = double.NaN;
         if (!z.Any(double.IsFinite)) return null;
-        return Against(z, own.SquaredPredictionError, own.HotellingT2);
+        return Against(z, own);
     }
 
-    /// <summary>Distances of standardised figures (NaN where not known) against these spreads.</summary>
-    public UnusualDistances Against(double[] z, DistanceSpread speSpread, DistanceSpread t2Spread)
+    /// <summary>Distances of standardised figures (NaN where not known) against the spreads of a class.</summary>
+    public UnusualDistances Against(double[] z, ClassSpread own)
     {
-        var scores = PrincipalScores.Of(z, Components, ComponentVariance);
-        var residual = PrincipalScores.Residual(z, scores, Components);
-        for (var j = 0; j < residual.Length; j++) residual[j] /= ResidualScale[j];
-        var known = residual.Where(double.IsFinite).ToList();
-        var spe = known.Sum(r => r * r) / known.Count;
-        var t2 = Components.Length == 0 ? 0 : scores.Zip(ComponentVariance, (t, v) => t * t / v).Sum() / scores.Length;
-        return new(spe, t2, Math.Max(speSpread.Errors(spe), Components.Length == 0 ? double.NegativeInfinity : t2Spread.Errors(t2)), z, residual);
+        double T2(double[] scores) => Components.Length == 0 ? 0 : scores.Zip(ComponentVariance, (t, v) => t * t / v).Sum() / scores.Length;
+        double[] Residual(double[] scores)
+        {
+            var residual = PrincipalScores.Residual(z, scores, Components);
+            for (var j = 0; j < residual.Length; j++) residual[j] /= ResidualScale[j];
+            return residual;
+        }
+        double MeanSquare(double[] residual, double most) => residual.Where(double.IsFinite).Average(r => Math.Min(r * r, most));
+
+        var whole = PrincipalScores.Of(z, Components, ComponentVariance);
+        var held = PrincipalScores.Of(UnusualVehicles.Held(z), Components, ComponentVariance);
+        var left = Residual(held);
+        var (greatest, breadth, along) = (left.Where(double.IsFinite).Max(r => r * r), MeanSquare(left, UnusualVehicles.Winsor * UnusualVehicles.Winsor), T2(held));
+        var errors = Math.Max(own.Greatest.Errors(greatest), own.Breadth.Errors(breadth));
+        if (Components.Length > 0) errors = Math.Max(errors, own.Along.Errors(along));
+        return new(MeanSquare(Residual(whole), double.PositiveInfinity), T2(whole), greatest, breadth, along, errors, z, left);
     }
 
     /// <summary>A request for an inspection where a vehicle is unlike its class in ways that no rule names; null otherwise.</summary>

@@ -15,6 +15,9 @@ internal static class LineSolver
     private const int MaxSteps = 8;
     private const int OnStack = 64;
 
+    /// <summary>Readings up to which the first slope is the median of all pairs.</summary>
+    private const int MostAllPairs = 12;
+
     /// <summary>Null with fewer than two places.</summary>
     /// <param name="readings">In order of distance.</param>
     /// <param name="standardised">Receives the residuals in their own standard deviations.</param>
@@ -64,13 +67,15 @@ internal static class LineSolver
     private static (double Slope, double AtLast) MedianLine(ReadOnlySpan<LineReading> readings, double x0)
     {
         var n = readings.Length;
-        var most = n * (n - 1) / 2;
+        // Of many readings each is paired with the one half the way on (Theil's incomplete method, 1950): the start need not be more.
+        var half = n > MostAllPairs ? n / 2 : 1;
+        var most = n > MostAllPairs ? n - half : n * (n - 1) / 2;
         Span<double> slopes = most <= 512 ? stackalloc double[most] : new double[most];
         var count = 0;
         for (var i = 0; i < n; i++)
-            for (var j = i + 1; j < n; j++)
+            for (var j = i + half; j < (half > 1 ? Math.Min(n, i + half + 1) : n); j++)
                 if (readings[i].X != readings[j].X) slopes[count++] = (readings[j].Y - readings[i].Y) / (readings[j].X - readings[i].X);
-        var slope = Selection.Median(slopes[..count]);
+        var slope = count > 0 ? Selection.Median(slopes[..count]) : (readings[n - 1].Y - readings[0].Y) / Math.Max(1e-9, readings[n - 1].X - readings[0].X);
         Span<double> rest = n <= OnStack ? stackalloc double[n] : new double[n];
         for (var i = 0; i < n; i++) rest[i] = readings[i].Y - slope * (readings[i].X - x0);
         return (slope, Selection.Median(rest));

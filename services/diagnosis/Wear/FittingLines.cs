@@ -22,25 +22,60 @@ public sealed record NoiseFigures
 /// <summary>The figures of a tread that are followed over distance.</summary>
 internal enum TreadFigure { Mean, Edge, Shoulder }
 
-/// <summary>A point of a fitting as its lines need it.</summary>
-/// <param name="X">Distance, 1000 km.</param>
-/// <param name="KmSd">Its error, km.</param>
-/// <param name="Weight">0 to 1: how far the survey is believed.</param>
-/// <param name="Mean">Mean depth, mm.</param>
-/// <param name="Edge">Edge part, mm; NaN where it was not measured.</param>
-/// <param name="Shoulder">Shoulder part, mm; NaN where it was not measured.</param>
-/// <param name="Technician">Number of the technician; −1 for the start of the fitting and for an unnamed hand.</param>
-/// <param name="Gauge">Number of the gauge; −1 where there is none.</param>
-/// <param name="Measured">False for the start of the fitting, which is recorded and not measured.</param>
-internal readonly record struct LinePoint(double X, double KmSd, double Weight, Estimate Mean, Estimate Edge, Estimate Shoulder, int Technician, int Gauge, bool Measured)
+/// <summary>
+/// A point of a fitting as its lines need it: a fleet has millions, so errors and parts of the shape are kept in single precision
+/// (mm to seven digits).
+/// </summary>
+internal readonly record struct LinePoint
 {
+    private readonly double _meanMm;
+    private readonly float _meanSd, _edgeMm, _edgeSd, _shoulderMm, _shoulderSd, _kmSd, _weight;
+    private readonly short _technician, _gauge;
+    private readonly Half _resolution;
+
+    /// <summary>Distance, 1000 km.</summary>
+    public double X { get; private init; }
+    /// <summary>Survey of the vehicle, in order of time; all beyond 65 534 share the last number.</summary>
+    public ushort Survey { get; private init; }
+    /// <summary>False for the start of the fitting, which is recorded and not measured.</summary>
+    public bool Measured { get; private init; }
+
+    /// <summary>Error of the distance, km.</summary>
+    public double KmSd => _kmSd;
+    /// <summary>0 to 1: how far the survey is believed.</summary>
+    public double Weight => _weight;
+    /// <summary>Mean depth, mm.</summary>
+    public Estimate Mean
+    {
+        get => new(_meanMm, _meanSd);
+        init => (_meanMm, _meanSd) = (value.Value, (float)value.StandardError);
+    }
+    /// <summary>Edge part, mm; NaN where it was not measured.</summary>
+    public Estimate Edge => new(_edgeMm, _edgeSd);
+    /// <summary>Shoulder part, mm; NaN where it was not measured.</summary>
+    public Estimate Shoulder => new(_shoulderMm, _shoulderSd);
+    /// <summary>Step of the gauge, mm.</summary>
+    public double ResolutionMm => (double)_resolution;
+    /// <summary>Number of the technician; −1 for the start of the fitting and for an unnamed hand.</summary>
+    public int Technician => _technician;
+    /// <summary>Number of the gauge; −1 where there is none.</summary>
+    public int Gauge => _gauge;
+
     /// <summary>Precision of the mean depth with the tyre's wandering, before the fleet's own scale, mm⁻².</summary>
-    public double MeanPrecision { get; } = Weight / (Mean.StandardError * Mean.StandardError + FittingLines.WanderSdMm * FittingLines.WanderSdMm);
+    public double MeanPrecision => _weight / ((double)_meanSd * _meanSd + FittingLines.WanderSdMm * FittingLines.WanderSdMm);
 
-    private static readonly Estimate s_absent = new(double.NaN, double.NaN);
+    private LinePoint(FittingPoint p, int technician, int gauge, double resolutionMm)
+    {
+        (X, Survey, Measured) = (p.Km / 1000, (ushort)Math.Min(Math.Max(0, p.Survey), ushort.MaxValue), p.Survey >= 0);
+        (_meanMm, _meanSd, _kmSd, _weight) = (p.Mean.Value, (float)p.Mean.StandardError, (float)p.KmSd, (float)p.Weight);
+        (_edgeMm, _edgeSd) = p.Edge is { } e ? ((float)e.Value, (float)e.StandardError) : (float.NaN, float.NaN);
+        (_shoulderMm, _shoulderSd) = p.Shoulder is { } s ? ((float)s.Value, (float)s.StandardError) : (float.NaN, float.NaN);
+        _resolution = (Half)resolutionMm;
+        // Beyond 32 000 names a reader is one of the unnamed.
+        (_technician, _gauge) = (technician <= short.MaxValue ? (short)technician : (short)-1, gauge <= short.MaxValue ? (short)gauge : (short)-1);
+    }
 
-    public static LinePoint Of(FittingPoint p, int technician, int gauge) =>
-        new(p.Km / 1000, p.KmSd, p.Weight, p.Mean, p.Edge ?? s_absent, p.Shoulder ?? s_absent, technician, gauge, p.Survey >= 0);
+    public static LinePoint Of(FittingPoint p, int technician, int gauge, double resolutionMm = 0.1) => new(p, technician, gauge, resolutionMm);
 }
 
 /// <summary>Lines of one fitting against distance, per 1000 km; losses positive.</summary>

@@ -55,8 +55,16 @@ internal sealed class FleetTyre
     public required Estimate? Feather { get; init; }
     /// <summary>The first point is the start of a tyre fitted new.</summary>
     public required bool FittedNew { get; init; }
+    /// <summary>A measured point tells more than the mean.</summary>
+    public required bool Shaped { get; init; }
+    /// <summary>Where the points are kept.</summary>
+    public required ReadOnlyMemory<LinePoint> Kept { private get; init; }
+
     /// <summary>In order of distance.</summary>
-    public required LinePoint[] Points { get; init; }
+    public ReadOnlySpan<LinePoint> Points => Kept.Span;
+
+    /// <summary>Scatter of the readings, for the study of those who took them; null where there is none to be seen.</summary>
+    public TyreScatter? Scatter { get; set; }
 
     public KeptLine Mean { get; private set; }
     public KeptLine Edge { get; private set; }
@@ -76,19 +84,37 @@ internal sealed class FleetTyre
     [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private KeptLine Line(TreadFigure figure, LineFit? before, NoiseFigures noise, ReaderTable readers, double rate, ref NeighbourSums neighbours)
     {
-        var room = Points.Length <= 64;
-        Span<LineReading> readings = room ? stackalloc LineReading[Points.Length] : new LineReading[Points.Length];
-        Span<double> standardised = room ? stackalloc double[Points.Length] : new double[Points.Length];
+        var points = Points;
+        if (figure != TreadFigure.Mean && !Shaped) return default;
+        var room = points.Length <= 64;
+        Span<LineReading> readings = room ? stackalloc LineReading[points.Length] : new LineReading[points.Length];
+        Span<double> standardised = room ? stackalloc double[points.Length] : new double[points.Length];
         var count = 0;
-        var loss = FittedNew ? RunIn.MiddleLoss(Points) : 0;
-        foreach (ref readonly var raw in Points.AsSpan())
+        var loss = FittedNew ? RunIn.MiddleLoss(points) : 0;
+        foreach (ref readonly var raw in points)
         {
-            var p = FittedNew ? noise.RunIn.OnLine(raw, Points[0].Mean.Value, loss) : raw;
+            var p = FittedNew ? noise.RunIn.OnLine(raw, points[0].Mean.Value, loss) : raw;
             if (FittingLines.Reading(p, figure, noise, figure == TreadFigure.Mean ? readers.Bias(p) : default, rate) is { } reading) readings[count++] = reading;
         }
         var fit = LineSolver.Fit(readings[..count], standardised, before is { } b ? (b.Slope.Value, b.AtLast.Value) : null);
         if (fit is not null && figure != TreadFigure.Mean) neighbours.Add(standardised[..count]);
         return new(fit, count);
+    }
+}
+
+/// <summary>Room for the points of many fittings in few large arrays, which the collector of garbage neither moves nor looks into.</summary>
+internal sealed class PointStore
+{
+    private const int Slab = 4096;
+
+    private LinePoint[] _slab = [];
+    private int _used;
+
+    public Memory<LinePoint> Take(int count)
+    {
+        if (_slab.Length - _used < count) (_slab, _used) = (new LinePoint[Math.Max(Slab, count)], 0);
+        _used += count;
+        return _slab.AsMemory(_used - count, count);
     }
 }
 

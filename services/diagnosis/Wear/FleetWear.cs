@@ -44,7 +44,8 @@ public sealed record FleetWear
     {
         var technician = Technicians.FirstOrDefault(t => t.Reader == survey.Technician);
         var gauge = Gauges.FirstOrDefault(g => g.Reader == survey.Gauge);
-        var unknown = (technician is null ? Square(GaugeNoise.TechnicianSdMm) : 0) + (gauge is null && survey.Gauge is not null ? Square(GaugeNoise.GaugeSdMm) : 0);
+        var unknown = (technician is null ? Square(Readers.TechnicianSpreadMm?.Value ?? GaugeNoise.TechnicianSdMm) : 0)
+            + (gauge is null && survey.Gauge is not null ? Square(Readers.GaugeSpreadMm?.Value ?? GaugeNoise.GaugeSdMm) : 0);
         var own = unknown + Square(technician?.AgainstOthersSdMm ?? 0) + Square(gauge?.AgainstOthersSdMm ?? 0);
         var whole = unknown + Square(technician?.BiasMm.StandardError ?? 0) + Square(gauge?.BiasMm.StandardError ?? 0);
         return new((technician?.BiasMm.Value ?? 0) + (gauge?.BiasMm.Value ?? 0), Math.Sqrt(own), Math.Sqrt(Math.Max(0, whole - own)));

@@ -49,8 +49,8 @@ internal sealed class FleetWearFit
         var context = new HistoryContext((v, p) => s_builtIn[(v.Class, WearPrior.RoleOf(v, p.Axle), p.Dual)], _ => 0, GaugeNoise.RepeatSdMm, GaugeNoise.TechnicianSdMm);
         Parallel.For(0, blocks, k =>
         {
-            var tyres = new List<FleetTyre>();
-            for (var v = (int)((long)vehicles.Length * k / blocks); v < (int)((long)vehicles.Length * (k + 1) / blocks); v++) Read(VehicleHistory.Of(vehicles[v], asOf, context), v, tyres);
+            var (tyres, store) = (new List<FleetTyre>(), new PointStore());
+            for (var v = (int)((long)vehicles.Length * k / blocks); v < (int)((long)vehicles.Length * (k + 1) / blocks); v++) Read(VehicleHistory.Of(vehicles[v], asOf, context), v, tyres, store);
             _blocks[k] = [.. tyres];
         });
         _tyres = [.. _blocks.SelectMany(b => b)];
@@ -64,7 +64,7 @@ internal sealed class FleetWearFit
     {
         var fit = new FleetWearFit(fleet, asOf);
         for (var round = 0; round < Rounds && fit._tyres.Length > 0; round++) fit.Round();
-        return fit._fleet;
+        return fit._fleet with { Readers = ReaderStudy.Of(fit._blocks, fit._fleet.Technicians, fit._fleet.Gauges, fit._fleet.Readers) };
     }
 
     private static string[] Names(VehicleTread[] vehicles, DateTimeOffset end, Func<TreadSurvey, string?> of)
@@ -79,7 +79,7 @@ internal sealed class FleetWearFit
     private static int IndexOf(string[] names, string? name) => name is null ? -1 : Math.Max(-1, Array.BinarySearch(names, name, StringComparer.Ordinal));
 
     /// <summary>Keeps of a vehicle's history what its lines need; the rest may go.</summary>
-    private void Read(VehicleHistory history, int vehicle, List<FleetTyre> tyres)
+    private void Read(VehicleHistory history, int vehicle, List<FleetTyre> tyres, PointStore store)
     {
         var technicians = history.Surveys.Select(s => IndexOf(_technicians, s.Survey.Technician)).ToArray();
         var gauges = history.Surveys.Select(s => IndexOf(_gauges, s.Survey.Gauge)).ToArray();
@@ -87,8 +87,14 @@ internal sealed class FleetWearFit
         {
             var points = fitting.LinePoints;
             if (points.Count < 2 || points[^1].Km - points[0].Km < LeastKm) continue;
-            var kept = new LinePoint[points.Count];
-            for (var i = 0; i < kept.Length; i++) kept[i] = LinePoint.Of(points[i], points[i].Survey < 0 ? -1 : technicians[points[i].Survey], points[i].Survey < 0 ? -1 : gauges[points[i].Survey]);
+            var kept = store.Take(points.Count);
+            var shaped = false;
+            for (var i = 0; i < points.Count; i++)
+            {
+                var p = points[i];
+                shaped |= p.Survey >= 0 && p.Edge is not null;
+                kept.Span[i] = p.Survey < 0 ? LinePoint.Of(p, -1, -1) : LinePoint.Of(p, technicians[p.Survey], gauges[p.Survey], history.Surveys[p.Survey].Survey.ResolutionMm);
+            }
             tyres.Add(new FleetTyre
             {
                 Vehicle = vehicle,
@@ -98,7 +104,9 @@ internal sealed class FleetWearFit
                 Fall = NormalWear.FallSign(fitting.Position, history.Tread.Depot.TrafficSide),
                 Feather = fitting.Points.LastOrDefault(p => p.Shape?.FeatherMm is not null)?.Shape!.FeatherMm,
                 FittedNew = points[0].New,
-                Points = kept,
+                Shaped = shaped,
+                Kept = kept,
+                Scatter = shaped ? TyreScatter.OfGrooves(points, kept.Span) : null,
             });
         }
     }
@@ -123,8 +131,9 @@ internal sealed class FleetWearFit
         _fleet = _fleet with { Noise = _fleet.Noise with { RunIn = RunIn.Of(_tyres, _fleet.Noise, readers, Rate) } };
         _fleet = _fleet with { Normals = Normals() };
         normals = _fleet.Normals.ToDictionary(n => (n.Class, n.Role, n.Dual), n => n.RateMmPer1000Km);
-        var (technicians, gauges) = ReaderBiases.Fit(_blocks, t => new(Rate(t), Rate(t) * OwnRateShare), _fleet.Noise.MeanScale, _technicians, _gauges);
-        _fleet = _fleet with { Technicians = technicians, Gauges = gauges };
+        var spread = new ReaderSpread(_fleet.Readers.TechnicianSpreadMm?.Value ?? GaugeNoise.TechnicianSdMm, _fleet.Readers.GaugeSpreadMm?.Value ?? GaugeNoise.GaugeSdMm);
+        var (technicians, gauges) = ReaderBiases.Fit(_blocks, t => new(Rate(t), Rate(t) * OwnRateShare), _fleet.Noise.MeanScale, _technicians, _gauges, spread);
+        _fleet = _fleet with { Technicians = technicians, Gauges = gauges, Readers = ReaderSpread.Seen(technicians, gauges) };
     }
 
     private NormalWear[] Normals()

@@ -282,6 +282,8 @@ internal sealed partial class HistoryReader
         }
         if (axles == 0 || behind == 0 || _surveys[s].Survey.Confirmed) return;
         var set = Set(axles);
+        // The fleet's fit takes what is plain at its word; one vehicle's answer states the weights.
+        if (!_context.Thorough && _explanation[s].Kind == ExplanationKind.AsWritten && PlainSurvey.Fits(set, _seen, _expected, _context.TechnicianSdMm, _surveys[s].Survey.ResolutionMm)) return;
         _weighed[s] = SurveyExplanation.Weigh(set, _seen, _expected, _context.TechnicianSdMm, _surveys[s].Survey.ResolutionMm);
     }
 

@@ -1,4 +1,5 @@
 using System.Runtime.CompilerServices;
+using MathNet.Numerics.Distributions;
 using MathNet.Numerics.LinearAlgebra;
 using WearWatch.Diagnosis.Statistics;
 using WearWatch.Diagnosis.Tread;
@@ -11,6 +12,26 @@ namespace WearWatch.Diagnosis.Wear;
 /// <param name="AgainstOthersSdMm">Standard error of the bias against the mean of all readers, mm: what matters to a rate.</param>
 /// <param name="Readings">Tyre readings behind it.</param>
 public sealed record ReaderBias(string Reader, Estimate BiasMm, double AgainstOthersSdMm, int Readings);
+
+/// <summary>Standard deviations of the biases of technicians and of gauges, mm.</summary>
+internal readonly record struct ReaderSpread(double TechnicianMm, double GaugeMm)
+{
+    /// <summary>Readers with which the spreads assumed at first count.</summary>
+    private const double PriorReaders = 5;
+
+    /// <summary>Spreads as the biases found show them: one step of expectation and maximisation (Laird and Ware 1982), taken each round.</summary>
+    public static ReaderStudy Seen(IReadOnlyList<ReaderBias> technicians, IReadOnlyList<ReaderBias> gauges) =>
+        new() { TechnicianSpreadMm = Of(technicians, GaugeNoise.TechnicianSdMm), GaugeSpreadMm = Of(gauges, GaugeNoise.GaugeSdMm) };
+
+    private static Interval? Of(IReadOnlyList<ReaderBias> readers, double assumedMm)
+    {
+        if (readers.Count == 0) return null;
+        var squares = PriorReaders * assumedMm * assumedMm;
+        foreach (var r in readers) squares += r.BiasMm.Value * r.BiasMm.Value + r.BiasMm.StandardError * r.BiasMm.StandardError;
+        var freedom = PriorReaders + readers.Count;
+        return new(Math.Sqrt(squares / freedom), Math.Sqrt(squares / ChiSquared.InvCDF(freedom, 0.95)), Math.Sqrt(squares / ChiSquared.InvCDF(freedom, 0.05)));
+    }
+}
 
 /// <summary>
 /// Crossed random effects of technicians and gauges on the depths of the whole fleet, against each fitting's own line
@@ -35,21 +56,23 @@ internal sealed class ReaderBiases
     private readonly Func<FleetTyre, Estimate> _rateMmPer1000Km;
     private readonly double _scale;
     private readonly int _technicians, _size;
+    private readonly ReaderSpread _spread;
 
-    private ReaderBiases(FleetTyre[][] blocks, Func<FleetTyre, Estimate> rateMmPer1000Km, double meanScale, int technicians, int size) =>
-        (_blocks, _rateMmPer1000Km, _scale, _technicians, _size) = (blocks, rateMmPer1000Km, meanScale * meanScale, technicians, size);
+    private ReaderBiases(FleetTyre[][] blocks, Func<FleetTyre, Estimate> rateMmPer1000Km, double meanScale, int technicians, int size, ReaderSpread spread) =>
+        (_blocks, _rateMmPer1000Km, _scale, _technicians, _size, _spread) = (blocks, rateMmPer1000Km, meanScale * meanScale, technicians, size, spread);
 
     /// <param name="blocks">The fleet's tyres in a fixed partition, so that the sums do not depend on who adds them up.</param>
     /// <param name="rateMmPer1000Km">What the fleet expects of a tyre's rate.</param>
     /// <param name="meanScale">Scale of the errors of the means.</param>
     /// <param name="technicians">Names by number.</param>
     /// <param name="gauges">Names by number.</param>
+    /// <param name="spread">How far biases differ.</param>
     public static (ReaderBias[] Technicians, ReaderBias[] Gauges) Fit(
-        FleetTyre[][] blocks, Func<FleetTyre, Estimate> rateMmPer1000Km, double meanScale, IReadOnlyList<string> technicians, IReadOnlyList<string> gauges)
+        FleetTyre[][] blocks, Func<FleetTyre, Estimate> rateMmPer1000Km, double meanScale, IReadOnlyList<string> technicians, IReadOnlyList<string> gauges, ReaderSpread spread)
     {
         var size = technicians.Count + gauges.Count;
         if (size == 0) return ([], []);
-        var work = new ReaderBiases(blocks, rateMmPer1000Km, meanScale, technicians.Count, size);
+        var work = new ReaderBiases(blocks, rateMmPer1000Km, meanScale, technicians.Count, size, spread);
         var (information, counts) = work.Information();
         var factor = Matrix<double>.Build.DenseOfColumnMajor(size, size, information).Cholesky();
         var beta = new double[size];
@@ -85,7 +108,7 @@ internal sealed class ReaderBiases
             foreach (var tyre in _blocks[k]) AddInformation(tyre, columns, parts[k].Sum, parts[k].Counts);
         });
         var (information, counts) = (new double[_size * _size], new int[_size]);
-        for (var i = 0; i < _size; i++) information[i * _size + i] = 1 / (i < _technicians ? GaugeNoise.TechnicianSdMm * GaugeNoise.TechnicianSdMm : GaugeNoise.GaugeSdMm * GaugeNoise.GaugeSdMm);
+        for (var i = 0; i < _size; i++) information[i * _size + i] = 1 / (i < _technicians ? _spread.TechnicianMm * _spread.TechnicianMm : _spread.GaugeMm * _spread.GaugeMm);
         foreach (var (sum, count) in parts)
         {
             for (var i = 0; i < sum.Length; i++) information[i] += sum[i];
@@ -114,7 +137,7 @@ internal sealed class ReaderBiases
 
     private double Precision(in LinePoint p) => p.MeanPrecision / _scale;
 
-    private static ReadOnlySpan<LinePoint> Points(FleetTyre tyre) => tyre.Points.AsSpan(tyre.FittedNew ? 1 : 0);
+    private static ReadOnlySpan<LinePoint> Points(FleetTyre tyre) => tyre.Points[(tyre.FittedNew ? 1 : 0)..];
 
     private static double Centre(ReadOnlySpan<LinePoint> points)
     {

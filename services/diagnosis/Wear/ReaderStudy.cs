@@ -39,4 +39,54 @@ public sealed record ReaderStudy
     public Interval? GaugeSpreadMm { get; init; }
     /// <summary>Repeatability over all readers, mm.</summary>
     public Interval? RepeatabilityMm { get; init; }
+
+    /// <summary>The study from the biases found and from the scatter about the tyres' lines.</summary>
+    /// <param name="blocks">The fleet's tyres with their lines.</param>
+    /// <param name="technicians">Biases by number.</param>
+    /// <param name="gauges">Biases by number.</param>
+    /// <param name="spreads">Carries the spreads of the biases.</param>
+    internal static ReaderStudy Of(FleetTyre[][] blocks, IReadOnlyList<ReaderBias> technicians, IReadOnlyList<ReaderBias> gauges, ReaderStudy spreads)
+    {
+        if (technicians.Count + gauges.Count == 0) return spreads;
+        Parallel.ForEach(blocks, block =>
+        {
+            foreach (var tyre in block) tyre.Scatter ??= OfMeans(tyre, technicians, gauges);
+        });
+        var byTechnician = ReaderRepeatability.Of(blocks, technicians.Count, byGauge: false);
+        var byGauge = ReaderRepeatability.Of(blocks, gauges.Count, byGauge: true);
+        return spreads with
+        {
+            Technicians = Rows(technicians, byTechnician.ByReader),
+            Gauges = Rows(gauges, byGauge.ByReader),
+            RepeatabilityMm = byTechnician.All.RepeatabilityMm,
+        };
+    }
+
+    /// <summary>Where one depth stands for a tyre; means over grooves hold too little of a single reading.</summary>
+    private static TyreScatter? OfMeans(FleetTyre tyre, IReadOnlyList<ReaderBias> technicians, IReadOnlyList<ReaderBias> gauges)
+    {
+        var points = tyre.Points;
+        if (tyre.Shaped) return null;
+        Span<double> bias = points.Length <= 256 ? stackalloc double[points.Length] : new double[points.Length];
+        for (var i = 0; i < bias.Length; i++)
+            bias[i] = (points[i].Technician >= 0 ? technicians[points[i].Technician].BiasMm.Value : 0) + (points[i].Gauge >= 0 ? gauges[points[i].Gauge].BiasMm.Value : 0);
+        return TyreScatter.OfMeans(points, bias);
+    }
+
+    /// <summary>Biases against the mean of their kind: what all share cannot show.</summary>
+    private static ReaderRow[] Rows(IReadOnlyList<ReaderBias> biases, RepeatabilityFigures[] figures)
+    {
+        var middle = biases.Count > 0 ? biases.Average(b => b.BiasMm.Value) : 0;
+        return [.. biases.Select((b, i) => new ReaderRow
+        {
+            Reader = b.Reader,
+            Readings = figures[i].Readings,
+            Surveys = figures[i].Surveys,
+            BiasMm = b.BiasMm.Value - middle,
+            BiasStandardError = b.AgainstOthersSdMm,
+            RepeatabilityMm = figures[i].RepeatabilityMm.Value,
+            RepeatabilityLow = figures[i].RepeatabilityMm.Low,
+            RepeatabilityHigh = figures[i].RepeatabilityMm.High,
+        })];
+    }
 }

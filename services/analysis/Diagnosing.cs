@@ -16,7 +16,7 @@ namespace WearWatch.Analysis;
 internal sealed partial class Diagnosing(FactReader facts, FleetFitStore fits, DiagnosisStore store, RunStore runs, FleetFitting fitting, TimeProvider clock, ILogger<Diagnosing> log)
 {
     /// <summary>Raised when any stage of the diagnosis changes, so that every vehicle becomes due.</summary>
-    public const string Method = "diagnosis-3";
+    public const string Method = "diagnosis-4";
 
     private const int Batch = 16;
 
@@ -76,7 +76,7 @@ internal sealed partial class Diagnosing(FactReader facts, FleetFitStore fits, D
         var wear = VehicleWear.Estimate(tread, fleet.Wear, day);
         var changes = VehicleChangesOf.Vehicle(vehicle, tread, fleet, since, study, day);
         var figures = VehicleFiguresOf.Figures(vehicle, settings, wear, fleet.Roads.Of(vehicle.Vehicle.VehicleId), day, changes);
-        var verdict = CauseEstimate.Judge(figures, FaultPriors.Default);
+        var verdict = CauseEstimate.Judge(figures, fleet.Faults.Of(vehicle.Vehicle.Class));
         var inputs = MoneyInputs.For(vehicle.Vehicle, vehicle.Depot, [.. settings?.Prices.Select(p => p.Body) ?? []], [.. settings?.Settings.Select(s => s.Body) ?? []], day);
         var cost = CostOfWaiting.Of(figures, verdict, inputs);
         IEnumerable<Finding> findings = GeometryRules.Find(figures);

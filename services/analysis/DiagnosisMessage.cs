@@ -39,6 +39,8 @@ internal static class DiagnosisMessage
         };
         if (d.FactsThrough is { } through) message.FactsThrough = Timestamp.FromDateTimeOffset(through);
         message.Causes.Add(d.Verdict.Causes.Select(Of));
+        message.Odds.Add(d.Verdict.Odds);
+        if (d.Verdict.ByWitness is { } alone) (message.MisalignedByTread, message.MisalignedBySteering) = (alone.Tread, alone.Steering);
         message.Tyres.Add(d.Figures.Tyres.Select(t => TyreMessage.Of(t, d)));
         message.KmPerWeek = TyreMessage.Use(d.Use);
         message.CannotTell.Add(d.Verdict.CannotTell.Select(c => new CannotTell { What = c.What, Because = c.Because, WouldHelp = c.WouldHelp }));

@@ -1,5 +1,9 @@
+using System.Security.Cryptography;
+using System.Text;
+using WearWatch.Diagnosis.Causes;
 using WearWatch.Diagnosis.Facts;
 using WearWatch.Diagnosis.Roads;
+using WearWatch.Diagnosis.Rules;
 using WearWatch.Diagnosis.Statistics;
 using WearWatch.Diagnosis.Steering;
 using WearWatch.Diagnosis.Unusual;
@@ -14,6 +18,9 @@ internal sealed class FleetFitting(FactReader facts, RunStore runs, TimeProvider
 {
     /// <summary>Workshop records older than this, in days before the as-of date, no longer anchor the steering's zero.</summary>
     private const int InOrderDays = 180;
+
+    /// <summary>Vehicles of a class from which its fault rates are learnt, at most.</summary>
+    private const int FaultSample = 150;
 
     /// <summary>Straight runs that suffice to tell how a vehicle steers now.</summary>
     private const int PresentRuns = 20;
@@ -50,8 +57,16 @@ internal sealed class FleetFitting(FactReader facts, RunStore runs, TimeProvider
         var figures = fleet.AsParallel().AsOrdered()
             .Select((v, i) => VehicleFiguresOf.Figures(v, settings.GetValueOrDefault(v.Depot.DepotId), VehicleWear.Estimate(tread[i], wear, day), roads.Of(v.Vehicle.VehicleId), day))
             .ToList();
-        return new FleetSnapshot { AsOf = day, Wear = wear, Roads = roads, Unusual = UnusualVehicles.Fit(figures), Changes = VehicleChangesOf.Fleet(fleet, straight.ToLookup(r => r.VehicleId), torque, roads, studies.ToLookup(s => s.VehicleId)) };
+        return new FleetSnapshot { AsOf = day, Wear = wear, Roads = roads, Unusual = UnusualVehicles.Fit(figures), Faults = Faults(figures), Changes = VehicleChangesOf.Fleet(fleet, straight.ToLookup(r => r.VehicleId), torque, roads, studies.ToLookup(s => s.VehicleId)) };
     }
+
+    /// <summary>Fault rates from a sample of each class, the same whatever the order of the fleet.</summary>
+    private static FaultRates Faults(IReadOnlyList<VehicleFigures> figures) => FaultRates.Fit(
+    [
+        .. figures.GroupBy(f => f.Vehicle.Class)
+            .SelectMany(c => c.OrderBy(f => SHA256.HashData(Encoding.UTF8.GetBytes(f.Vehicle.VehicleId)), Comparer<byte[]>.Create((a, b) => a.AsSpan().SequenceCompareTo(b))).Take(FaultSample))
+            .AsParallel().AsOrdered().Select(f => (f.Vehicle.Class, CauseEstimate.Judge(f, FaultPriors.Default))),
+    ]);
 
     /// <summary>
     /// Roads keep their bank, a vehicle does not keep its alignment. So each vehicle enters twice: as it is now (the last

@@ -1,3 +1,4 @@
+using WearWatch.Diagnosis.Causes;
 using WearWatch.Diagnosis.Changes;
 using WearWatch.Diagnosis.Roads;
 using WearWatch.Diagnosis.Unusual;
@@ -15,6 +16,8 @@ internal sealed record FleetSnapshot
     public required FleetWear Wear { get; init; }
     public required RoadFit Roads { get; init; }
     public required UnusualFit Unusual { get; init; }
+    /// <summary>How common faults are in this fleet.</summary>
+    public FaultRates Faults { get; init; } = FaultRates.None;
     /// <summary>Changes of steering pull and off-centre angle, by vehicle.</summary>
     public IReadOnlyList<VehicleChanges> Changes { get; init; } = [];
 }

@@ -1,3 +1,4 @@
+using System.Globalization;
 using WearWatch.Diagnosis.Rules;
 using WearWatch.Diagnosis.Statistics;
 
@@ -16,9 +17,46 @@ public static class CauseEstimate
     /// <summary>Share of posterior below which a cell is left out of what the money needs.</summary>
     private const double LeastEffect = 1e-4;
 
+    /// <summary>Probabilities between which it is worth asking each witness alone, and those at which one says yes and the other no.</summary>
+    private const double Open = 0.12, Settled = 0.88, SaysYes = 0.5, SaysNo = 0.12;
+
     public static Verdict Judge(VehicleFigures figures, FaultPriors priors)
     {
         var model = new VehicleModel(figures);
+        var mixture = Weigh(model, priors);
+        var causes = Causes(mixture, figures.AsOf);
+        var alone = mixture.Misaligned is > Open and < Settled ? EachAlone(figures, priors) : null;
+        return new Verdict
+        {
+            MisalignedProbability = mixture.Misaligned,
+            Causes = causes,
+            Odds = OddsWords.Of(causes, mixture.Misaligned),
+            ByWitness = alone,
+            CannotTell = [.. Disagreement(alone), .. CannotTellWords.Of(model, mixture.Misaligned)],
+            Effects = Effects(model, mixture),
+        };
+    }
+
+    /// <summary>What the tread says without the steering, and the steering without the tread.</summary>
+    private static (double Tread, double Steering)? EachAlone(VehicleFigures figures, FaultPriors priors)
+    {
+        if (figures.Steering is not { } steering || (steering.SteeringPullNm is null && steering.OffCentreDeg is null) || figures.Tyres.All(t => t.LogRateRatio is null && t.EdgeSlopeMmPer1000Km is null)) return null;
+        return (Weigh(new(figures with { Steering = null, DriverReports = [] }), priors).Misaligned, Weigh(new(figures with { Tyres = [], Wear = null }), priors).Misaligned);
+    }
+
+    private static IEnumerable<CannotTell> Disagreement((double Tread, double Steering)? alone)
+    {
+        if (alone is not { } said) yield break;
+        if (said is { Tread: >= SaysYes, Steering: <= SaysNo })
+            yield return new("Which witness is right", $"the tread says out of alignment with {Share(said.Tread)}, the steering with {Share(said.Steering)}", "another tread survey with hand rubs, taken by someone else");
+        if (said is { Tread: <= SaysNo, Steering: >= SaysYes })
+            yield return new("Which witness is right", $"the steering says out of alignment with {Share(said.Steering)}, the tread with {Share(said.Tread)}", "the front tyres swapped left to right, and pressures checked: what follows the tyres is no angle");
+
+        static string Share(double p) => p.ToString("0.00", CultureInfo.InvariantCulture);
+    }
+
+    private static Mixture Weigh(VehicleModel model, FaultPriors priors)
+    {
         var weigher = new StoryWeigher(model);
         var stories = Stories.Of(model, priors);
         var inOrder = weigher.InOrder();
@@ -27,13 +65,7 @@ public static class CauseEstimate
         var looks = alone.Where(f => !f.Story.IsAngle).ToArray();
         var mixture = new Mixture(angles, looks, inOrder, priors.MisalignedShare);
         WeighPairs(weigher, mixture);
-        return new Verdict
-        {
-            MisalignedProbability = mixture.Misaligned,
-            Causes = Causes(mixture, figures.AsOf),
-            CannotTell = CannotTellWords.Of(model, mixture.Misaligned),
-            Effects = Effects(model, mixture),
-        };
+        return mixture;
     }
 
     private static void WeighPairs(StoryWeigher weigher, Mixture mixture)

@@ -11,6 +11,10 @@ public sealed record Verdict
     public required double MisalignedProbability { get; init; }
     /// <summary>Every cause considered, alignment quantities and look-alikes, most probable first.</summary>
     public required IReadOnlyList<Cause> Causes { get; init; }
+    /// <summary>The most probable angle against its rivals, in words.</summary>
+    public IReadOnlyList<string> Odds { get; init; } = [];
+    /// <summary>Probability of misalignment by the tread alone and by the steering alone; null where one of them is missing or the case is clear.</summary>
+    public (double Tread, double Steering)? ByWitness { get; init; }
     public IReadOnlyList<CannotTell> CannotTell { get; init; } = [];
     /// <summary>What an alignment would save under each story and magnitude, for the cost of waiting; the rest of the probability saves nothing.</summary>
     public IReadOnlyList<StoryEffect> Effects { get; init; } = [];

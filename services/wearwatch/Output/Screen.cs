@@ -83,6 +83,9 @@ internal static class Screen
                 string.Create(CultureInfo.InvariantCulture, $"{c.Value:0.00} ({c.Low:0.00} to {c.High:0.00}) {(c.Unit == "1" ? "" : c.Unit)}"), c.OutsideTolerance ? "yes" : "", $"{c.Probability:0.00}", Since(c.Since));
         }
         if (table.Rows.Count > 0) console.Write(table);
+        if (d.Odds.Count > 0) console.MarkupLineInterpolated($"{string.Join("; ", d.Odds)}.");
+        if (d.HasMisalignedByTread) console.MarkupLineInterpolated($"By the tread alone {d.MisalignedByTread:0.00}, by the steering alone {d.MisalignedBySteering:0.00}.");
+        console.WriteLine();
     }
 
     private static string Since(DateRange? since) => since switch

@@ -82,14 +82,16 @@ internal sealed class FleetFitting(FactReader facts, RunStore runs, TimeProvider
             var now = RoadVehicle(v, torque.GetValueOrDefault(v.Vehicle.VehicleId), day);
             vehicles.Add(now);
             var since = PresentSince(v, byVehicle[now.VehicleId], day);
-            var before = now with { VehicleId = now.VehicleId + AsItWas, FoundInOrder = false };
+            var before = now with { VehicleId = now.VehicleId + AsItWas, FoundInOrder = false, SameAs = now.VehicleId };
             foreach (var run in byVehicle[now.VehicleId]) runs.Add(run.Start >= since ? run : run with { VehicleId = before.VehicleId });
             if (byVehicle[now.VehicleId].Any(r => r.Start < since)) vehicles.Add(before);
         }
         var fit = RoadModel.Fit(runs, vehicles);
         var was = fit.Vehicles.Where(v => v.VehicleId.EndsWith(AsItWas, StringComparison.Ordinal)).ToDictionary(v => v.VehicleId);
-        return fit with { Vehicles = [.. fit.Vehicles.Where(v => !was.ContainsKey(v.VehicleId)).Select(v => was.TryGetValue(v.VehicleId + AsItWas, out var before) ? Changed(v, before, DaysAgo(byVehicle[v.VehicleId].Min(r => r.Start), day)) : v)] };
+        return fit with { Vehicles = [.. fit.Vehicles.Where(v => !was.ContainsKey(v.VehicleId)).Select(AtLastTrip).Select(v => was.TryGetValue(v.VehicleId + AsItWas, out var before) ? Changed(v, before, DaysAgo(byVehicle[v.VehicleId].Min(r => r.Start), day)) : v)] };
     }
+
+    private static SteeringFigures AtLastTrip(SteeringFigures v) => v with { SteeringPullNm = v.SteeringPullLatestNm, OffCentreDeg = v.OffCentreLatestDeg };
 
     private static double DaysAgo(DateTimeOffset time, DateOnly day) => (new DateTimeOffset(day, TimeOnly.MinValue, TimeSpan.Zero) - time).TotalDays;
 

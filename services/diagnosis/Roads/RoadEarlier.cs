@@ -72,6 +72,24 @@ internal sealed class RoadEarlier
         }
     }
 
+    /// <summary>Takes off the new runs what a vehicle's own gain, as the earlier fit found it, makes of the bank beyond its class's.</summary>
+    public void TakeOwnGains(RoadProblem p, RoadSolve solve, double[] centre)
+    {
+        var s = solve.System;
+        for (var v = 0; v < p.Vehicles.Length; v++)
+        {
+            if (!_vehicles.TryGetValue(p.Vehicles[v].VehicleId, out var known)) continue;
+            var at = s.GainAt + RoadProblem.Lanes * p.GainOf[v];
+            var (pull, angle) = ((float)((known.PullPerSineNm?.Value ?? centre[at]) - centre[at]), (float)((known.OffCentrePerSineDeg?.Value ?? centre[at + 1]) - centre[at + 1]));
+            for (var e = p.Graph.VehicleFrom[v]; e < p.Graph.VehicleFrom[v + 1]; e++)
+                for (var i = p.Graph.SightingFrom[e]; i < p.Graph.SightingFrom[e + 1]; i++)
+                {
+                    p.Values[RoadProblem.Witnesses * i] -= pull * (float)s.Bank[p.Graph.CellOf[e]];
+                    p.Values[RoadProblem.Witnesses * i + 1] -= angle * (float)s.Bank[p.Graph.CellOf[e]];
+                }
+        }
+    }
+
     /// <summary>The whole earlier fit with the touched vehicles and cells replaced, marked provisional.</summary>
     public RoadFit Forward(RoadFit update)
     {
@@ -106,11 +124,16 @@ internal sealed class RoadEarlier
     {
         if (before.Runs == 0) return now;
         var (pull, angle, bias) = _sharedOfVehicle.GetValueOrDefault(before.VehicleId);
+        var (pullNow, angleNow) = (Whole(now.SteeringPullNm, before.SteeringPullNm, pull), Whole(now.OffCentreDeg, before.OffCentreDeg, angle));
         return before with
         {
-            SteeringPullNm = Whole(now.SteeringPullNm, before.SteeringPullNm, pull),
-            OffCentreDeg = Whole(now.OffCentreDeg, before.OffCentreDeg, angle),
+            SteeringPullNm = pullNow,
+            OffCentreDeg = angleNow,
+            SteeringPullLatestNm = pullNow,
+            OffCentreLatestDeg = angleNow,
             BankReadingBias = Whole(now.BankReadingBias, before.BankReadingBias, bias),
+            PullPerSineNm = before.PullPerSineNm ?? now.PullPerSineNm,
+            OffCentrePerSineDeg = before.OffCentrePerSineDeg ?? now.OffCentrePerSineDeg,
             BrakePullNm = before.BrakePullNm ?? now.BrakePullNm,
             DrivePullNm = before.DrivePullNm ?? now.DrivePullNm,
             Runs = before.Runs + now.Runs,

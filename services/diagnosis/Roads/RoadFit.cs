@@ -22,6 +22,9 @@ public enum TorqueKind
 /// </summary>
 public sealed record RoadVehicle(string VehicleId, VehicleClass Class, TrafficSide TrafficSide, TorqueKind Torque, bool FoundInOrder = false)
 {
+    /// <summary>The vehicle this is another time of: its alignment may differ, its gains are the same. Null where it enters once.</summary>
+    public string? SameAs { get; init; }
+
     /// <summary>The two kinds that are read as N·m.</summary>
     [JsonIgnore]
     public bool TorqueUsable => Torque is TorqueKind.Total or TorqueKind.TorsionBar;
@@ -59,7 +62,7 @@ public sealed record WitnessSpread(Witness Witness, double RunSd, double TripSd)
 /// <summary>Fleet-wide snapshot: vehicles, gains, crowns and cells from the same solve. A function of the runs and vehicles alone.</summary>
 public sealed record RoadFit
 {
-    public const string MethodVersion = "road-2";
+    public const string MethodVersion = "road-3";
 
     public string Method { get; init; } = MethodVersion;
     public required IReadOnlyList<SteeringFigures> Vehicles { get; init; }
@@ -67,6 +70,8 @@ public sealed record RoadFit
     public required IReadOnlyList<UsualCrown> Crowns { get; init; }
     public required IReadOnlyList<CellBank> Cells { get; init; }
     public required IReadOnlyList<WitnessSpread> Spreads { get; init; }
+    /// <summary>One standard deviation of the zeros of the bank readings, sine, as found.</summary>
+    public double ReadingZeroSpread { get; init; } = RoadPriors.AccelerometerBias;
     /// <summary>Groups of vehicles that no shared cell joins.</summary>
     public required int Components { get; init; }
     public required int Iterations { get; init; }

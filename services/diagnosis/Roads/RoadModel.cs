@@ -72,6 +72,7 @@ public static class RoadModel
             Crowns = Crowns(problem, solve, variance).ToArray(),
             Cells = Cells(problem, solve, bankVariance),
             Spreads = Enum.GetValues<Witness>().Select(w => new WitnessSpread(w, solve.Noise[(int)w].Run, solve.Noise[(int)w].Trip)).ToArray(),
+            ReadingZeroSpread = solve.ReadingSpread,
             Components = problem.Components,
             Iterations = solve.Iterations,
             Converged = solve.Converged,

@@ -7,16 +7,26 @@ public static class RoadPriors
 {
     /// <summary>Usual fall of the road to the side traffic keeps to: 2 %, surveys 1.5 to 3 % (AASHTO; FHWA toll-plaza survey).</summary>
     public const double Crown = 0.02;
-    /// <summary>One standard deviation of what 'usual' is in a country (the surveys' spread).</summary>
-    public const double CrownError = 0.005;
+    /// <summary>
+    /// One standard deviation of what a fleet's roads usually fall by. The surveys' half per cent is that of crowned roads; one-plane roads and
+    /// far lanes draw the mean of what is driven towards zero, so a fleet's own bank readings must be able to overrule it.
+    /// </summary>
+    public const double CrownError = 0.01;
     /// <summary>One standard deviation of a cell's bank about the usual crown (design §6.5).</summary>
     public const double CellWidth = 0.01;
     /// <summary>One standard deviation of a whole road network's mean bank about the usual crown (from memory).</summary>
     public const double NetworkError = 0.005;
-    /// <summary>Zero of a lateral accelerometer, over g: 0.2 m/s² (from memory).</summary>
+    /// <summary>One standard deviation of the mean bank of one vehicle's usual roads about its network's: a handful of roads, some of which fall one way (from memory).</summary>
+    public const double VehicleRoads = 0.008;
+    /// <summary>One standard deviation of the mean bank of the roads that so many vehicles share about the usual crown: the fewer they are, the further these roads may be from what is usual.</summary>
+    public static double LevelError(int vehicles) => Math.Sqrt(NetworkError * NetworkError + VehicleRoads * VehicleRoads / Math.Max(1, vehicles));
+
+    /// <summary>Zero of a lateral accelerometer, over g, before its spread is estimated: 0.2 m/s² (from memory).</summary>
     public const double AccelerometerBias = 0.02;
     /// <summary>Relative standard deviation of a class's gain about its starting value: hardly known.</summary>
     public const double GainSpread = 0.75;
+    /// <summary>Relative standard deviation of the vehicles' own gains about their class's, before it is estimated: tyres, pressure and load move the understeer gradient by as much (from memory).</summary>
+    public const double OwnGainSpread = 0.3;
     /// <summary>Share of the torque a driver holds himself where the assist is not logged (from memory).</summary>
     public const double TorsionBarShare = 0.4;
 
@@ -53,4 +63,7 @@ public static class RoadPriors
         Witness.Angle => (0.4, 0.3),
         _ => (0.002, 0.001),
     };
+
+    /// <summary>What a figure's wandering adds to its variance in a day before it is estimated: 0.03 N·m and 0.1 deg in a month (from memory).</summary>
+    public static double WalkPerDay(Witness witness) => witness == Witness.Torque ? 0.03 * 0.03 / 30 : 0.1 * 0.1 / 30;
 }

@@ -47,6 +47,8 @@ internal sealed class RoadProblem
         for (int at = 0, i = 0; i < Order.Length; i++)
             if (_cellOfRun[i] >= 0) (place[at], cell[at++]) = (i, _cellOfRun[i]);
         (ComponentOfVehicle, Components) = RoadGraph.Join(Vehicles.Length, sightingFrom, cell, _cells.Count);
+        VehiclesOf = new int[Components];
+        for (var v = 0; v < Vehicles.Length; v++) if (Vehicles[v].SameAs is null) VehiclesOf[ComponentOfVehicle[v]]++;
         CellComponent = SortCells(cell);
         new RoadParts(sightingFrom).Each((_, from, to) =>
         {
@@ -79,6 +81,8 @@ internal sealed class RoadProblem
     public int[] TripFrom { get; }
     public int[] ComponentOfVehicle { get; }
     public int Components { get; }
+    /// <summary>Vehicles of each component, one that enters at several times once.</summary>
+    public int[] VehiclesOf { get; }
     public int[] CellComponent { get; }
     public RoadGraph Graph { get; }
     /// <summary>Place in the order of each sighting of the graph.</summary>

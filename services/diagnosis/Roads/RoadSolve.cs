@@ -39,12 +39,15 @@ internal sealed class RoadSolve
         Roads();
         Scale();
         earlier?.Hold(problem, this, _centre, _scale, _held);
+        earlier?.TakeOwnGains(problem, this, _centre);
         _centre.CopyTo(System.U, 0);
     }
 
     public RoadSystem System { get; }
     public double[] PullSpread { get; }
     public double[] OffCentreSpread { get; }
+    /// <summary>One standard deviation of the zeros of the bank readings.</summary>
+    public double ReadingSpread { get; private set; } = RoadPriors.AccelerometerBias;
     public (double Run, double Trip)[] Noise { get; } = [RoadPriors.Noise(Witness.Torque), RoadPriors.Noise(Witness.Angle), RoadPriors.Noise(Witness.BankReading)];
     public int Iterations { get; private set; }
     public bool Converged { get; private set; }
@@ -87,22 +90,26 @@ internal sealed class RoadSolve
         return left > 1e-6 * own ? new(System.U[unknown] / variance / left, Math.Sqrt(1 / left)) : null;
     }
 
+    /// <summary>Whether an earlier fit holds the figure.</summary>
+    public bool Held(int vehicle, Witness witness) => _held[Lanes * vehicle + (int)witness];
+
     /// <summary>Spread of a class: the median size of its vehicles' figures less their errors, drawn to the prior by four vehicles' worth.</summary>
     public void UpdateSpreads(double[] variance)
     {
         for (var g = 0; g < _p.Gains.Length; g++)
         {
-            PullSpread[g] = Spread(Witness.Torque, g, variance, RoadPriors.PullSpread(_p.Gains[g].Class));
-            OffCentreSpread[g] = Spread(Witness.Angle, g, variance, RoadPriors.OffCentreSpread);
+            PullSpread[g] = Spread(Witness.Torque, v => _p.GainOf[v] == g && !_p.Vehicles[v].FoundInOrder, variance, RoadPriors.PullSpread(_p.Gains[g].Class));
+            OffCentreSpread[g] = Spread(Witness.Angle, v => _p.GainOf[v] == g && !_p.Vehicles[v].FoundInOrder, variance, RoadPriors.OffCentreSpread);
         }
+        ReadingSpread = Spread(Witness.BankReading, v => _p.Vehicles[v].SameAs is null, variance, RoadPriors.AccelerometerBias);
         Scale();
     }
 
-    private double Spread(Witness witness, int gain, double[] variance, double prior)
+    private double Spread(Witness witness, Func<int, bool> counts, double[] variance, double prior)
     {
         var figures = new List<Estimate>();
         for (var v = 0; v < _p.Vehicles.Length; v++)
-            if (_p.GainOf[v] == gain && !_p.Vehicles[v].FoundInOrder && Unshrunk(v, witness, variance[Lanes * v + (int)witness]) is { } figure) figures.Add(figure);
+            if (counts(v) && Unshrunk(v, witness, variance[Lanes * v + (int)witness]) is { } figure) figures.Add(figure);
         if (figures.Count == 0) return prior;
         var size = 1.4826 * RobustMean.Median(figures.Select(e => Math.Abs(e.Value)).Order().ToArray());
         var error = RobustMean.Median(figures.Select(e => e.StandardError).Order().ToArray());
@@ -128,9 +135,9 @@ internal sealed class RoadSolve
             var (g, anchored) = (_p.GainOf[v], _p.Vehicles[v].FoundInOrder);
             _scale[Lanes * v] = anchored ? RoadPriors.AnchoredPull : PullSpread[g];
             _scale[Lanes * v + 1] = anchored ? RoadPriors.AnchoredOffCentre : OffCentreSpread[g];
-            _scale[Lanes * v + 2] = RoadPriors.AccelerometerBias;
+            _scale[Lanes * v + 2] = ReadingSpread;
         }
-        for (var k = 0; k < _p.Components; k++) _scale[System.LevelAt + k] = RoadPriors.NetworkError;
+        for (var k = 0; k < _p.Components; k++) _scale[System.LevelAt + k] = RoadPriors.LevelError(_p.VehiclesOf[k]);
         for (var g = 0; g < _p.Gains.Length; g++)
         {
             var at = System.GainAt + Lanes * g;

@@ -13,6 +13,9 @@ public sealed record SteeringFigures
     public Estimate? SteeringPullNm { get; init; }
     /// <summary>Steering-wheel angle when travelling straight on a flat road, deg, + left.</summary>
     public Estimate? OffCentreDeg { get; init; }
+    /// <summary>The same two where they stand at the vehicle's last trip, their wandering followed; null with them.</summary>
+    public Estimate? SteeringPullLatestNm { get; init; }
+    public Estimate? OffCentreLatestDeg { get; init; }
     /// <summary>Steering pull now less what it was before the last weeks, N·m; a sensor's zero does not move, a bent arm does.</summary>
     public Estimate? SteeringPullChangeNm { get; init; }
     /// <summary>Off-centre angle now less what it was before the last weeks, deg.</summary>
@@ -25,6 +28,12 @@ public sealed record SteeringFigures
     public Estimate? DrivePullNm { get; init; }
     /// <summary>Bias of the bank reading, sine: the lateral accelerometer's zero over g.</summary>
     public Estimate? BankReadingBias { get; init; }
+    /// <summary>What one unit of the bank's sine brings this vehicle, N·m and deg: its class's gain and what its own runs say beyond; null with the figure.</summary>
+    public Estimate? PullPerSineNm { get; init; }
+    public Estimate? OffCentrePerSineDeg { get; init; }
+    /// <summary>Mean sine of the bank under the runs that the pull and the off-centre angle rest on, + left side higher; 0 without.</summary>
+    public double PullMeanBank { get; init; }
+    public double OffCentreMeanBank { get; init; }
     /// <summary>Standard error of the mean bank of the vehicle's road network, sine; it moves all vehicles of that network alike.</summary>
     public double? RoadLevelError { get; init; }
     public required int Runs { get; init; }

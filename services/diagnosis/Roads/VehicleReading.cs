@@ -12,9 +12,12 @@ internal sealed class VehicleReading(RoadProblem problem, RoadSolve solve, doubl
     private const int Lanes = RoadProblem.Lanes;
 
     private readonly RoadSystem _system = solve.System;
+    private readonly OwnGains _gains = new(problem, solve);
+    private PresentLevels? _levels;
 
     public IReadOnlyList<SteeringFigures> All()
     {
+        _levels = new(problem, solve, _gains);
         var companions = new int[problem.Components];
         foreach (var k in problem.ComponentOfVehicle) companions[k]++;
         var all = new SteeringFigures[problem.Vehicles.Length];
@@ -30,13 +33,20 @@ internal sealed class VehicleReading(RoadProblem problem, RoadSolve solve, doubl
         var (from, to) = (problem.RunFrom[v], problem.RunFrom[v + 1]);
         var seconds = 0.0;
         for (var i = from; i < to; i++) seconds += problem.Run(i).Seconds;
-        var pull = solve.Unshrunk(v, Witness.Torque, variance[Lanes * v]);
+        var pull = Figure(v, Witness.Torque);
+        var angle = Figure(v, Witness.Angle);
         var reads = problem.Present[Lanes * v + (int)Witness.BankReading];
         var figures = new SteeringFigures
         {
             VehicleId = problem.Vehicles[v].VehicleId,
             SteeringPullNm = pull,
-            OffCentreDeg = solve.Unshrunk(v, Witness.Angle, variance[Lanes * v + 1]),
+            OffCentreDeg = angle,
+            SteeringPullLatestNm = pull is { } p ? _levels!.Of(v, Witness.Torque, p) : null,
+            OffCentreLatestDeg = angle is { } a ? _levels!.Of(v, Witness.Angle, a) : null,
+            PullPerSineNm = Gain(v, Witness.Torque),
+            OffCentrePerSineDeg = Gain(v, Witness.Angle),
+            PullMeanBank = _gains.MeanBank(v, Witness.Torque),
+            OffCentreMeanBank = _gains.MeanBank(v, Witness.Angle),
             BrakePullNm = pull is null ? null : Extra(v, RunMode.Brake),
             DrivePullNm = pull is null || problem.TakesDriven[v] ? null : Extra(v, RunMode.Drive),
             BankReadingBias = reads ? new(_system.U[Lanes * v + 2], Math.Sqrt(variance[Lanes * v + 2])) : null,
@@ -48,6 +58,22 @@ internal sealed class VehicleReading(RoadProblem problem, RoadSolve solve, doubl
             EvidenceRuns = Evidence(v),
         };
         return figures with { NotPossible = NotPossible(v, figures).ToArray() };
+    }
+
+    /// <summary>The fit's figure, put right for the vehicle's own gain.</summary>
+    private Estimate? Figure(int v, Witness witness)
+    {
+        if (solve.Unshrunk(v, witness, variance[Lanes * v + (int)witness]) is not { } figure) return null;
+        if (solve.Held(v, witness)) return figure; // an earlier fit's, which saw to it
+        var (shift, more) = _gains.Of(v, witness);
+        return new(figure.Value + shift, Math.Sqrt(figure.StandardError * figure.StandardError + more));
+    }
+
+    private Estimate? Gain(int v, Witness witness)
+    {
+        if (!problem.Present[Lanes * v + (int)witness]) return null;
+        var (own, error) = _gains.Departure(v, witness);
+        return new(_system.U[_system.GainAt + Lanes * problem.GainOf[v] + (int)witness] + own, Math.Sqrt(error));
     }
 
     /// <summary>Runs that carry most weight; those of different witnesses are made comparable by the spread of their class.</summary>

@@ -55,11 +55,11 @@ public class RoadErrorsTests
     public void Standard_errors_match_a_bootstrap_on_a_small_graph()
     {
         // Mean bank of a network about the usual: the country's own departure and the network's.
-        var level = Math.Sqrt(RoadPriors.CrownError * RoadPriors.CrownError + RoadPriors.NetworkError * RoadPriors.NetworkError);
+        var level = Math.Sqrt(RoadPriors.CrownError * RoadPriors.CrownError + Math.Pow(RoadPriors.LevelError(10), 2));
         var (pull, angle, pullError, angleError) = (new List<double>(), new List<double>(), new List<double>(), new List<double>());
         for (var world = 0; world < 150; world++)
         {
-            var fleet = new RoadFleet(1000 + world) { Vehicles = 10, Cells = 25, RunsPerTrip = 8, LevelSd = level }.Drive();
+            var fleet = new RoadFleet(1000 + world) { Vehicles = 10, Cells = 25, RunsPerTrip = 8, LevelSd = level, GainSd = RoadPriors.OwnGainSpread }.Drive();
             foreach (var v in RoadModel.Fit(fleet.Runs, fleet.Fleet).Vehicles)
             {
                 pull.Add(v.SteeringPullNm!.Value.Value - fleet.Truth[v.VehicleId].Pull);

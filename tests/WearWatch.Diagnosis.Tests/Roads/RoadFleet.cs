@@ -22,12 +22,15 @@ internal sealed class RoadFleet
     public bool Acceleration { get; init; } = true;
     /// <summary>One standard deviation of the roads' mean bank, sine, from world to world.</summary>
     public double LevelSd { get; init; } = 0.005;
+    /// <summary>One standard deviation of the vehicles' own gains, as a share.</summary>
+    public double GainSd { get; init; }
     /// <summary>+1, or −1 for the mirror image of the whole fleet and its roads.</summary>
     public double Hand { get; init; } = 1;
 
     public List<StraightRun> Runs { get; } = [];
     public List<RoadVehicle> Fleet { get; } = [];
     public Dictionary<string, (double Pull, double OffCentre)> Truth { get; } = [];
+    public Dictionary<string, (double Torque, double Angle)> Gains { get; } = [];
 
     public RoadFleet(int seed) => _random = new(seed);
 
@@ -42,6 +45,8 @@ internal sealed class RoadFleet
     private void Drive(int v, double[] banks)
     {
         var (id, pull, off, bias) = ($"v{v:00}", 0.5 * Normal(), 3 * Normal(), 0.02 * Normal());
+        var (ownTorque, ownAngle) = GainSd > 0 ? (55 * (1 + GainSd * Normal()), 18 * (1 + GainSd * Normal())) : (55, 18);
+        Gains[id] = (ownTorque, ownAngle);
         Truth[id] = (Hand * pull, Hand * off);
         Fleet.Add(new(id, VehicleClass.Van, Hand > 0 ? TrafficSide.Right : TrafficSide.Left, TorqueKind.Total));
         for (var t = 0; t < Trips; t++)
@@ -61,8 +66,8 @@ internal sealed class RoadFleet
                     Mode = RunMode.Coast,
                     SpeedKmH = 85,
                     TorqueIncludesAssist = true,
-                    TorqueNm = Reading(pull + 55 * b + windTorque, 0.08, 0.08),
-                    AngleDeg = Reading(off + 18 * b + windAngle, 0.3, 0.3),
+                    TorqueNm = Reading(pull + ownTorque * b + windTorque, 0.08, 0.08),
+                    AngleDeg = Reading(off + ownAngle * b + windAngle, 0.3, 0.3),
                     BankReading = Acceleration ? Reading(1.07 * b + bias + load, 0.001, 0.002) : null,
                     RoadCell = Position ? $"cell{cell:000}" : null,
                 });

@@ -70,13 +70,13 @@ public class RoadModelDenseTests
                 var (pull, angle) = (fit.Gains[0].PullSpreadNm, fit.Gains[0].OffCentreSpreadDeg);
                 Row(0, pull * pull, Huber(x[3 * v] / pull), (3 * v, 1));
                 Row(0, angle * angle, Huber(x[3 * v + 1] / angle), (3 * v + 1, 1));
-                Row(0, 0.02 * 0.02, 1, (3 * v + 2, 1));
+                Row(0, fit.ReadingZeroSpread * fit.ReadingZeroSpread, 1, (3 * v + 2, 1));
             }
             for (var c = 0; c < _cells; c++) Row(0, 0.01 * 0.01, 1, (3 * _vehicles + c, 1), (Gain + 2, -1), (Gain + 3, -1));
             Row(61, Math.Pow(0.75 * 61, 2), 1, (Gain, 1));
             Row(20, Math.Pow(0.75 * 20, 2), 1, (Gain + 1, 1));
-            Row(0.02, 0.005 * 0.005, 1, (Gain + 2, 1));
-            Row(0, 0.005 * 0.005, 1, (Gain + 3, 1));
+            Row(0.02, RoadPriors.CrownError * RoadPriors.CrownError, 1, (Gain + 2, 1));
+            Row(0, Math.Pow(RoadPriors.LevelError(_vehicles), 2), 1, (Gain + 3, 1));
             return (Matrix<double>.Build.DenseOfRowArrays(rows), Vector<double>.Build.DenseOfEnumerable(targets));
         }
 
@@ -91,6 +91,10 @@ public class RoadModelDenseTests
         public int CellAt(int cell) => 3 * _vehicles + cell;
         public int GainAt => Gain;
     }
+
+    /// <summary>The figure as it was before the vehicle's own gain put it right.</summary>
+    private static Estimate OnClassGain(Estimate figure, Estimate own, Estimate class_, double bank) =>
+        new(figure.Value + (own.Value - class_.Value) * bank, Math.Sqrt(Math.Pow(figure.StandardError, 2) - Math.Pow(own.StandardError * bank, 2)));
 
     [Theory]
     [InlineData(11)]
@@ -109,8 +113,9 @@ public class RoadModelDenseTests
         }
         for (var v = 0; v < fit.Vehicles.Count; v++)
         {
-            Same(dense.Unshrunk(x, covariance, v, 0), fit.Vehicles[v].SteeringPullNm!.Value);
-            Same(dense.Unshrunk(x, covariance, v, 1), fit.Vehicles[v].OffCentreDeg!.Value);
+            var (f, gain) = (fit.Vehicles[v], fit.Gains[0]);
+            Same(dense.Unshrunk(x, covariance, v, 0), OnClassGain(f.SteeringPullNm!.Value, f.PullPerSineNm!.Value, gain.TorqueNmPerSine!.Value, f.PullMeanBank));
+            Same(dense.Unshrunk(x, covariance, v, 1), OnClassGain(f.OffCentreDeg!.Value, f.OffCentrePerSineDeg!.Value, gain.AngleDegPerSine!.Value, f.OffCentreMeanBank));
             Same(new(x[3 * v + 2], Math.Sqrt(covariance[3 * v + 2, 3 * v + 2])), fit.Vehicles[v].BankReadingBias!.Value);
         }
         Estimate At(int i) => new(x[i], Math.Sqrt(covariance[i, i]));

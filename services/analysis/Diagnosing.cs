@@ -69,13 +69,18 @@ internal sealed partial class Diagnosing(FactReader facts, FleetFitStore fits, D
             ? await runs.Since(vehicleId, depots, then.Now.Min(n => n.Through).UtcDateTime, cancel)
             : [];
 
-    private static VehicleDiagnosis Of(VehicleFacts vehicle, DepotSettings? settings, FleetSnapshot fleet, long fit, IReadOnlyList<StraightRun> since, VehicleSteeringStudy? study)
+    private static VehicleDiagnosis Of(VehicleFacts recorded, DepotSettings? settings, FleetSnapshot fleet, long fit, IReadOnlyList<StraightRun> since, VehicleSteeringStudy? study)
     {
+        var (vehicle, problems) = VehicleFiguresOf.Checked(recorded, settings);
         var day = vehicle.FactsThrough is { } through && DateOnly.FromDateTime(through.UtcDateTime) > fleet.AsOf && fit != 0 ? DateOnly.FromDateTime(through.UtcDateTime) : fleet.AsOf;
         var tread = VehicleFiguresOf.Tread(vehicle, settings);
         var wear = VehicleWear.Estimate(tread, fleet.Wear, day);
         var changes = VehicleChangesOf.Vehicle(vehicle, tread, fleet, since, study, day);
-        var figures = VehicleFiguresOf.Figures(vehicle, settings, wear, fleet.Roads.Of(vehicle.Vehicle.VehicleId), day, changes);
+        var figures = VehicleFiguresOf.Figures(vehicle, settings, wear, fleet.Roads.Of(vehicle.Vehicle.VehicleId), day, changes) with
+        {
+            Study = study,
+            Tyres = HandRubs.Weighed(wear.Tyres, tread, fleet.Rubs),
+        };
         var verdict = CauseEstimate.Judge(figures, fleet.Faults.Of(vehicle.Vehicle.Class));
         var inputs = MoneyInputs.For(vehicle.Vehicle, vehicle.Depot, [.. settings?.Prices.Select(p => p.Body) ?? []], [.. settings?.Settings.Select(s => s.Body) ?? []], day);
         var cost = CostOfWaiting.Of(figures, verdict, inputs);
@@ -84,6 +89,7 @@ internal sealed partial class Diagnosing(FactReader facts, FleetFitStore fits, D
         return new VehicleDiagnosis
         {
             Figures = figures,
+            ChassisProblems = problems,
             Wear = wear,
             Verdict = verdict,
             Cost = cost,

@@ -37,7 +37,7 @@ internal sealed class FleetFitting(FactReader facts, RunStore runs, TimeProvider
         var day = asOf ?? AsOf(fleet);
         var straight = await runs.Fleet(day.AddDays(1).ToDateTime(TimeOnly.MinValue, DateTimeKind.Utc), cancel);
         var studies = await runs.Studies(cancel);
-        var snapshot = await Task.Run(() => Fit(fleet, settings, straight, studies, day), cancel);
+        var snapshot = await Task.Run(() => Fit([.. fleet.Select(v => VehicleFiguresOf.Checked(v, settings.GetValueOrDefault(v.Depot.DepotId)).Vehicle)], settings, straight, studies, day), cancel);
         return (snapshot, fleet.Count, straight.Count);
     }
 
@@ -57,7 +57,7 @@ internal sealed class FleetFitting(FactReader facts, RunStore runs, TimeProvider
         var figures = fleet.AsParallel().AsOrdered()
             .Select((v, i) => VehicleFiguresOf.Figures(v, settings.GetValueOrDefault(v.Depot.DepotId), VehicleWear.Estimate(tread[i], wear, day), roads.Of(v.Vehicle.VehicleId), day))
             .ToList();
-        return new FleetSnapshot { AsOf = day, Wear = wear, Roads = roads, Unusual = UnusualVehicles.Fit(figures), Faults = Faults(figures), Changes = VehicleChangesOf.Fleet(fleet, straight.ToLookup(r => r.VehicleId), torque, roads, studies.ToLookup(s => s.VehicleId)) };
+        return new FleetSnapshot { AsOf = day, Wear = wear, Roads = roads, Unusual = UnusualVehicles.Fit(figures), Faults = Faults(figures), Rubs = HandRubs.Fit(tread), Changes = VehicleChangesOf.Fleet(fleet, straight.ToLookup(r => r.VehicleId), torque, roads, studies.ToLookup(s => s.VehicleId)) };
     }
 
     /// <summary>Fault rates from a sample of each class, the same whatever the order of the fleet.</summary>

@@ -12,6 +12,8 @@ namespace WearWatch.Analysis;
 internal sealed record VehicleDiagnosis
 {
     public required VehicleFigures Figures { get; init; }
+    /// <summary>Chassis data that contradict themselves, and what was taken instead.</summary>
+    public IReadOnlyList<CannotTell> ChassisProblems { get; init; } = [];
     public required VehicleWearResult Wear { get; init; }
     public required Verdict Verdict { get; init; }
     public required CostOfWaiting Cost { get; init; }

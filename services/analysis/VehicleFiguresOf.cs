@@ -1,4 +1,6 @@
+using WearWatch.Diagnosis.Causes;
 using WearWatch.Diagnosis.Changes;
+using WearWatch.Diagnosis.Chassis;
 using WearWatch.Diagnosis.Facts;
 using WearWatch.Diagnosis.Roads;
 using WearWatch.Diagnosis.Rules;
@@ -10,6 +12,13 @@ namespace WearWatch.Analysis;
 /// <summary>Brings a vehicle's facts into the form the computation takes.</summary>
 internal static class VehicleFiguresOf
 {
+    /// <summary>The vehicle as the computation takes it: what contradicts itself in its chassis data is replaced, and said.</summary>
+    public static (VehicleFacts Vehicle, IReadOnlyList<CannotTell> Problems) Checked(VehicleFacts v, DepotSettings? settings)
+    {
+        var check = ChassisCheck.Of(v.Vehicle, [.. settings?.Tolerances.Select(t => t.Body) ?? []]);
+        return (v with { Vehicle = check.Vehicle }, check.Problems);
+    }
+
     public static VehicleTread Tread(VehicleFacts v, DepotSettings? settings) => new()
     {
         Vehicle = v.Vehicle,
@@ -37,6 +46,6 @@ internal static class VehicleFiguresOf
         Route = v.Route,
         DriverReports = [.. v.DriverReports.Select(r => r.Body)],
         WorkshopRecords = [.. v.WorkshopRecords.Select(r => r.Body)],
-        Tolerances = [.. settings?.Tolerances.Select(t => t.Body).Where(t => t.From <= asOf) ?? []],
+        Tolerances = [.. settings?.Tolerances.Select(t => t.Body).Where(t => t.From <= asOf && t.PlusMinus > 0) ?? []],
     };
 }

@@ -31,7 +31,7 @@ internal static class WorklistReason
 
     /// <summary>The strongest finding that speaks for this very cause.</summary>
     private static Finding? Supporting(Contracts.V1.Diagnosis d, Cause cause) => d.Findings
-        .Where(f => f.AlignmentMends && f.Causes.Take(2).Contains(cause.Quantity) && (!f.HasAxle || !cause.HasAxle || f.Axle == cause.Axle || cause.Quantity == Quantity.TandemSkew) && (f.Side == Side.Unspecified || cause.Side == Side.Unspecified || f.Side == cause.Side))
+        .Where(f => f.Causes.Take(2).Contains(cause.Quantity) && (!f.HasAxle || !cause.HasAxle || f.Axle == cause.Axle || cause.Quantity == Quantity.TandemSkew) && (f.Side == Side.Unspecified || cause.Side == Side.Unspecified || f.Side == cause.Side))
         .MaxBy(f => f.Strength);
 
     private static string Rounded(double? money) => ((money is > -0.5 and < 0 ? 0 : money) ?? 0).ToString("0", CultureInfo.InvariantCulture);

@@ -71,24 +71,32 @@ internal static class Screen
         foreach (var note in d.SurveyNotes) console.MarkupLineInterpolated($"{(note.SurveyId.Length > 0 ? $"Survey {note.SurveyId}: " : "")}{note.Note}");
         foreach (var gap in d.CannotTell) console.MarkupLineInterpolated($"Cannot tell {gap.What}: {gap.Because}. Would help: {gap.WouldHelp}.");
         console.WriteLine();
+        Drawings(console, d);
         console.MarkupLineInterpolated($"[italic]{report.Notice}[/]");
     }
 
     private static void Causes(IAnsiConsole console, Contracts.V1.Diagnosis d)
     {
-        var table = new Table().Border(TableBorder.Simple).AddColumns("cause", "axle", "side", "if so: value (90 %)", "beyond tolerance", "probability");
-        foreach (var c in d.Causes.Where(c => c.Probability >= 0.01).Take(8))
+        var causes = d.Causes.Where(c => c.Probability >= 0.01).Take(8).ToList();
+        if (causes.Count == 0) return;
+        console.WriteLine("probability  cause                                    if so (90 %)");
+        foreach (var c in causes)
         {
-            table.AddRow(Words(EnumWords.Word(c.Quantity)), c.HasAxle ? $"{c.Axle}" : "", c.Side switch { Side.Left => "left", Side.Right => "right", _ => "" },
-                string.Create(CultureInfo.InvariantCulture, $"{c.Value:0.00} ({c.Low:0.00} to {c.High:0.00}) {(c.Unit == "1" ? "" : c.Unit)}"), c.OutsideTolerance ? "yes" : "", $"{c.Probability:0.00}");
+            var place = $"{Words(EnumWords.Word(c.Quantity))}{(c.HasAxle ? $", axle {c.Axle}" : "")}{c.Side switch { Side.Left => " left", Side.Right => " right", _ => "" }}";
+            var beyond = c.OutsideTolerance ? "beyond tolerance, " : "";
+            console.WriteLine(string.Create(CultureInfo.InvariantCulture, $"{c.Probability,11:0.00}  {place,-39}  {beyond}{c.Value:0.##}{(c.Unit == "1" ? "" : $" {c.Unit}")} ({c.Low:0.##} to {c.High:0.##})"));
         }
-        if (table.Rows.Count > 0) console.Write(table);
+        console.WriteLine();
     }
 
     private static void Tyres(IAnsiConsole console, Contracts.V1.Diagnosis d)
     {
         foreach (var line in TyreTable.Lines(d)) console.WriteLine(line);
         console.WriteLine();
+    }
+
+    private static void Drawings(IAnsiConsole console, Contracts.V1.Diagnosis d)
+    {
         foreach (var line in d.Tyres.SelectMany(t => TreadDrawing.Lines(t, TreadDrawing.DeepestMm(d.Tyres)))) console.WriteLine(line);
     }
 

@@ -79,12 +79,12 @@ internal static class Screen
     {
         var causes = d.Causes.Where(c => c.Probability >= 0.01).Take(8).ToList();
         if (causes.Count == 0) return;
-        console.WriteLine("probability  cause                                    if so (90 %)");
+        console.WriteLine("probability  cause                           if so (90 %); out: beyond tolerance");
         foreach (var c in causes)
         {
             var place = $"{Words(EnumWords.Word(c.Quantity))}{(c.HasAxle ? $", axle {c.Axle}" : "")}{c.Side switch { Side.Left => " left", Side.Right => " right", _ => "" }}";
-            var beyond = c.OutsideTolerance ? "beyond tolerance, " : "";
-            console.WriteLine(string.Create(CultureInfo.InvariantCulture, $"{c.Probability,11:0.00}  {place,-39}  {beyond}{c.Value:0.##}{(c.Unit == "1" ? "" : $" {c.Unit}")} ({c.Low:0.##} to {c.High:0.##})"));
+            var beyond = c.OutsideTolerance ? "out: " : "";
+            console.WriteLine(string.Create(CultureInfo.InvariantCulture, $"{c.Probability,11:0.00}  {place,-30}  {beyond}{c.Value:0.##}{(c.Unit == "1" ? "" : $" {c.Unit}")} ({c.Low:0.##} to {c.High:0.##})"));
         }
         console.WriteLine();
     }

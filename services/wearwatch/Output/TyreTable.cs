@@ -9,7 +9,7 @@ internal static class TyreTable
     public static IEnumerable<string> Lines(Contracts.V1.Diagnosis d)
     {
         if (d.Tyres.Count == 0) yield break;
-        yield return "tyre  depth     wear/1000 km  km to the limit (90 %)     about (90 %)";
+        yield return "tyre  depth,gr  wear/1000 km  km to the limit (90 %)     about (90 %)";
         foreach (var t in d.Tyres)
         {
             yield return $"{t.Position,-4}  {Depth(t),-8}  {Wear(t),-12}  {Distance(t.RemainingKm),-25}  {Date(t.LimitOn)}".TrimEnd();
@@ -22,9 +22,9 @@ internal static class TyreTable
             yield return $"Limit {Number(limit.Key.LimitMm)} mm{(limit.Count() == d.Tyres.Count ? "" : $" ({string.Join(", ", limit.Select(t => t.Position))})")}: {limit.Key.LimitSource}. Current local law comes first.";
     }
 
-    /// <summary><c>7.3 gr 2</c>; a single depth has no groove.</summary>
+    /// <summary><c>7.3 g2</c>; a single depth has no groove.</summary>
     private static string Depth(TyreDiagnosis t) =>
-        t.DepthMm is null ? "not read" : $"{Depths.Gauge(t.DepthMm.Value, t.GaugeStepMm)}{(t.GoverningGroove > 0 ? $" gr {t.GoverningGroove}" : "")}";
+        t.DepthMm is null ? "not read" : $"{Depths.Gauge(t.DepthMm.Value, t.GaugeStepMm)}{(t.GoverningGroove > 0 ? $" g{t.GoverningGroove}" : "")}";
 
     private static string Wear(TyreDiagnosis t) => t.RateMmPer1000Km is not { } r ? "not known"
         : string.Create(CultureInfo.InvariantCulture, $"{(t.RateBorrowed ? "~" : "")}{r.Value:0.000}±{(r.High - r.Low) / 2:0.000}");
@@ -46,7 +46,7 @@ internal static class TyreTable
         var year = on.Likely[..4];
         return $"{Month(on.Likely)} {year} ({Near(on.Earliest)}-{Near(on.Latest)})";
 
-        string Near(string day) => day[..4] == year ? Month(day) : $"{Month(day)}'{day[2..4]}";
+        string Near(string day) => day[..4] == year ? Month(day) : $"{Month(day)}{day[2..4]}";
         static string Month(string day) => DateOnly.ParseExact(day, "yyyy-MM-dd", CultureInfo.InvariantCulture).ToString("MMM", CultureInfo.InvariantCulture);
     }
 

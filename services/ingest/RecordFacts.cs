@@ -64,8 +64,9 @@ internal sealed class RecordFacts(IngestFacts facts, TimeProvider clock)
         Correction(item, batch.Context, judgement);
         item.Body!.Judge?.Invoke(batch.Context, judgement);
         if (judgement.Refused) return Refuse(item, batch, judgement.Remarks);
-        batch.Store(item.Row with { Releases = judgement.Releases ?? item.Row.Releases }, judgement.Held, judgement.Remarks);
-        if (!judgement.Held && Explains(item.Row, batch.Context) is { } vehicle) JudgeAgain.Held(item.Row, vehicle, batch, now, judgement);
+        var row = item.Row with { Releases = judgement.Releases ?? item.Row.Releases };
+        batch.Store(row, judgement.Held, judgement.Remarks);
+        if (!judgement.Held && Explains(row, batch.Context) is { } vehicle) JudgeAgain.Held(row, vehicle, batch, now, judgement);
         return Answered(item, judgement.Held ? Outcome.Held : Outcome.Stored, judgement.Remarks);
     }
 
@@ -74,6 +75,9 @@ internal sealed class RecordFacts(IngestFacts facts, TimeProvider clock)
     {
         { Kind: FactKind.Fitting } => row.VehicleId,
         { Kind: FactKind.Survey, Replaces: not null } => row.VehicleId,
+        // What was let through is compared with from now on; whoever answered for one walk should not have to for the next.
+        { Kind: FactKind.Decision, Releases: not null } => row.VehicleId,
+        { Kind: FactKind.Withdrawal, Releases: { } let } => context.Known(row.Key(let))?.VehicleId,
         { Kind: FactKind.Withdrawal, Retracts: { } taken } when context.Known(row.Key(taken)) is { Kind: FactKind.Survey or FactKind.Fitting } fact => fact.VehicleId,
         _ => null,
     };
@@ -188,7 +192,7 @@ internal sealed record ReadFact(Fact Sent, FactRow Row, FactBody? Body, IReadOnl
             Tyres = sound.Select(r => r.TyreId).OfType<string>().Distinct().ToList(),
             TouchesSettings = sound.Any(r => r.VehicleId is null && r.Kind != FactKind.Tyre || r.Kind == FactKind.Decision),
             // What is taken back may lie anywhere, and so may what it explained.
-            Earliest = sound.Any(r => r.Retracts is not null) ? DateTimeOffset.MinValue
+            Earliest = sound.Any(r => r.Retracts is not null || r.Releases is not null || r.About is not null) ? DateTimeOffset.MinValue
                 : sound.Where(r => r.Kind is FactKind.Survey or FactKind.Fitting).Select(r => r.At).DefaultIfEmpty(DateTimeOffset.MaxValue).Min(),
         };
     }

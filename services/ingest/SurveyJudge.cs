@@ -17,11 +17,31 @@ internal static class SurveyJudge
         var others = context.Surveys(survey.VehicleId).Where(s => s.FactId != judgement.Replaces).ToList();
         List<TreadSurvey> earlier = [.. others.Where(s => s.At <= survey.At).TakeLast(Earlier).Select(s => s.Body)];
         var next = others.FirstOrDefault(s => s.At > survey.At)?.Body;
-        foreach (var issue in Check(survey, vehicle, earlier, context, judgement.Depot)) Say(issue, judgement);
+        var issues = Check(survey, vehicle, earlier, context, judgement.Depot);
+        if (FitsHeld(survey, vehicle, others, issues, context, judgement) is { } fits) issues = fits;
+        foreach (var issue in issues) Say(issue, judgement);
         if (next is null) return;
         // A late survey's distance must also lie below that of the one after it.
         foreach (var issue in Check(survey, vehicle, [next], context, judgement.Depot).Where(i => i.Field == "distance_km" && i.Weight == IssueWeight.Hold))
             Say(issue, judgement);
+    }
+
+    /// <summary>
+    /// One walk that did not fit waits for its answer; the next one that fits it is not asked the same again, for two walks agree
+    /// against one.
+    /// </summary>
+    /// <returns>What is left to say of it beside the walks that wait; null where it fits those no better.</returns>
+    private static List<ReadingIssue>? FitsHeld(TreadSurvey survey, Vehicle vehicle, List<Dated<TreadSurvey>> others, IReadOnlyList<ReadingIssue> issues, FactContext context, Judgement judgement)
+    {
+        if (!issues.Any(Asks) || issues.Any(i => i.Weight == IssueWeight.Refuse)) return null;
+        var held = context.HeldSurveys(survey.VehicleId).Select(h => h.Survey).Where(h => h.At < survey.At && !ReferenceEquals(h.Body, survey) && h.FactId != judgement.Replaces).ToList();
+        if (held.Count == 0) return null;
+        List<TreadSurvey> earlier = [.. others.Where(s => s.At <= survey.At).Concat(held).OrderBy(s => s.At).TakeLast(Earlier).Select(s => s.Body)];
+        var beside = Check(survey, vehicle, earlier, context, judgement.Depot);
+        if (beside.Any(Asks)) return null;
+        return [.. beside, new ReadingIssue("fits_held", IssueWeight.Tell, "tyres", $"It fits the walk of {held[^1].At:yyyy-MM-dd}, which waits for an answer ({held[^1].FactId}).")];
+
+        static bool Asks(ReadingIssue issue) => issue.Weight == IssueWeight.Hold;
     }
 
     private static IReadOnlyList<ReadingIssue> Check(TreadSurvey survey, Vehicle vehicle, IReadOnlyList<TreadSurvey> others, FactContext context, string depotId)

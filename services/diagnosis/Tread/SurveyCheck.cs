@@ -103,6 +103,9 @@ public static class SurveyCheck
 
     internal static string Mm(double mm) => string.Create(CultureInfo.InvariantCulture, $"{mm:0.0#} mm");
 
+    /// <summary>A difference of two readings is known no better than a tenth.</summary>
+    internal static string Tenths(double mm) => string.Create(CultureInfo.InvariantCulture, $"{mm:0.0} mm");
+
     internal static string Km(double km) => string.Create(CultureInfo.InvariantCulture, $"{km:0} km");
 
     internal static string When(TreadSurvey survey) => survey.At.ToString("d MMMM yyyy", CultureInfo.InvariantCulture);

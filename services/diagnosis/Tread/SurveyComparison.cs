@@ -31,7 +31,7 @@ internal static class SurveyComparison
         if (MixUp(survey, vehicle, last, newDepthMm) is { } mixUp)
         {
             var best = mixUp.First(w => w.Explanation.Kind != ExplanationKind.AsWritten);
-            issues.Add(new(Code(best.Explanation.Kind), IssueWeight.Hold, "tyres", $"{best.Explanation.Sentence} Compared with {SurveyCheck.When(previous)} that fits better than the survey as written: {ExplanationWords.Ask(mixUp.Where((w, i) => i == 0 || w.Weight >= 0.02))}") { Choices = Offered(mixUp) });
+            issues.Add(new(Code(best.Explanation.Kind), IssueWeight.Hold, "tyres", $"{best.Explanation.Sentence} Compared with {SurveyCheck.When(previous)} that fits better than the survey as written: {ExplanationWords.Ask(mixUp.Where(w => w.Weight >= 0.02))}") { Choices = Offered(mixUp) });
             return; // One question is enough; the grooves that grew follow from it.
         }
         for (var i = 0; i < survey.Tyres.Count; i++)
@@ -74,13 +74,15 @@ internal static class SurveyComparison
         var asWritten = weighed.First(w => w.Explanation.Kind == ExplanationKind.AsWritten).Weight;
         // From even odds on it is worth a question; the survey waits only where it is clearly not as written.
         if (!grew && asWritten > 0.5) return;
-        var worst = grew ? most : growth.MaxBy(g => Math.Abs(g.Mm + loss.Value));
+        // The question names the groove that its likeliest answer is about.
+        var told = weighed.First(w => w.Explanation.Kind != ExplanationKind.AsWritten).Explanation.Groove;
+        var worst = growth.FirstOrDefault(g => g.Groove == told, grew ? most : growth.MaxBy(g => Math.Abs(g.Mm + loss.Value)));
         var weight = grew || asWritten <= 1 - SurveyExplanation.Clear ? IssueWeight.Hold : IssueWeight.Tell;
         var sameTime = survey.At - before.Survey.At < s_oneTime;
         var code = sameTime ? "same_time_differs" : grew ? "depth_grew" : "depth_unlikely";
         var place = worst.Groove == 0 ? $"{tyre.Position}" : $"Groove {worst.Groove} of {tyre.Position}";
         var than = sameTime ? "in the other survey of the same time" : $"on {SurveyCheck.When(before.Survey)}";
-        var reads = Math.Abs(worst.Mm) < 0.05 ? $"as deep as {than}" : $"{SurveyCheck.Mm(Math.Abs(worst.Mm))} {(worst.Mm > 0 ? "deeper" : "less")} than {than}";
+        var reads = Math.Abs(worst.Mm) < 0.05 ? $"as deep as {than}" : $"{SurveyCheck.Tenths(Math.Abs(worst.Mm))} {(worst.Mm > 0 ? "deeper" : "less")} than {than}";
         issues.RemoveAll(i => i.Code == "depth_above_new" && i.Position == tyre.Position); // This question includes that one.
         issues.Add(new(code, weight, $"tyres[{index}].depths[{worst.Index}].depth_mm", $"{place} reads {reads}: {ExplanationWords.Ask(Asked(weighed))}", tyre.Position, worst.Groove) { Choices = Offered(weighed) });
     }
@@ -157,7 +159,7 @@ internal static class SurveyComparison
             answers.Add(w.Explanation.CanBeDoneToTyres ? w with { Weight = w.Weight * (1 - MovedShare) } : w);
             if (w.Explanation.CanBeDoneToTyres) answers.Add(new(w.Explanation with { Moved = true }, w.Weight * MovedShare));
         }
-        return [.. answers.OrderByDescending(a => a.Explanation.Kind == ExplanationKind.AsWritten ? 0 : Math.Round(a.Weight, 12)).ThenBy(a => a.Explanation.Kind)];
+        return [.. answers.OrderByDescending(a => Math.Round(a.Weight, 12)).ThenBy(a => a.Explanation.Kind)];
     }
 
     /// <summary>Wear to be expected between two walks, mm, as uncertain as the usual rate itself.</summary>

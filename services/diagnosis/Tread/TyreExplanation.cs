@@ -6,7 +6,7 @@ namespace WearWatch.Diagnosis.Tread;
 /// <summary>
 /// Weighs what may lie behind the readings of one tyre beside its readings of an earlier walk: as written, one groove
 /// mistyped or read on a wear bar, another tyre, the same one regrooved or turned on its rim, its grooves counted from the
-/// wrong shoulder, or another wheel's. Every explanation is a normal law over the same grooves, whose errors have a part in
+/// wrong shoulder, another wheel's, or rightly read and wrong on the walk before. Every explanation is a normal law over the same grooves, whose errors have a part in
 /// common (wear in between, the two hands) and a part of each groove's own.
 /// </summary>
 public static class TyreExplanation
@@ -64,7 +64,10 @@ public static class TyreExplanation
         }
         var top = list.Max(l => l.Log);
         var total = list.Sum(l => Math.Exp(l.Log - top));
-        return [.. list.Select(l => new WeighedExplanation(l.Explanation, Math.Exp(l.Log - top) / total)).OrderByDescending(w => Math.Round(w.Weight, 12)).ThenBy(w => w.Explanation.Kind)];
+        // Where the walk before was the wrong one, this one stands as written.
+        var stands = list.Where(l => l.Explanation.Kind is ExplanationKind.AsWritten or ExplanationKind.ComparedSurveyWrong).Sum(l => Math.Exp(l.Log - top) / total);
+        return [.. list.Where(l => l.Explanation.Kind != ExplanationKind.ComparedSurveyWrong)
+            .Select(l => new WeighedExplanation(l.Explanation, l.Explanation.Kind == ExplanationKind.AsWritten ? stands : Math.Exp(l.Log - top) / total)).OrderByDescending(w => Math.Round(w.Weight, 12)).ThenBy(w => w.Explanation.Kind)];
     }
 
     /// <param name="Groove">Its number.</param>
@@ -87,7 +90,7 @@ public static class TyreExplanation
     private static Dictionary<int, (double Mean, int Places)> Means(TyreReadings tyre) =>
         tyre.Depths.Where(d => double.IsFinite(d.DepthMm)).GroupBy(d => d.Groove).ToDictionary(g => g.Key, g => (g.Average(d => d.DepthMm), g.Count()));
 
-    /// <summary>The rest of the tyre is as written, this groove is not.</summary>
+    /// <summary>The rest of the tyre is as written, this groove is not, now or on the walk before.</summary>
     private static void OneGroove(Pair[] both, int j, double common, double stepMm, Position position, Action<Explanation, double, double> add)
     {
         Pair[] rest = [.. both.Where((_, i) => i != j)];
@@ -101,7 +104,15 @@ public static class TyreExplanation
         var best = slips.OrderByDescending(s => s.Weight).FirstOrDefault();
         add(new(ExplanationKind.GrooveMistyped, Position: position, Groove: groove.Groove) { MeantMm = best.Weight > typed / 2 ? Math.Round(best.MeantMm, 3) : null }, MistypedPrior, others + Math.Log(typed));
         add(new(ExplanationKind.ReadOnWearBar, Position: position, Groove: groove.Groove), OnWearBarPrior, others + LineBelief.LogDensity(groove.Now + WearBarMm - expected, variance + Square(WearBarSdMm)));
+        // The walk before was wrong there: then this reading must suit the grooves beside it, and that one need not have.
+        var (here, then) = (Beside(groove.Now, rest, g => g.Now), Beside(groove.Expected, rest, g => g.Expected));
+        var wrong = MistypedPrior / AnyMm + OnWearBarPrior * Math.Exp(LineBelief.LogDensity(groove.Now - WearBarMm - expected, variance + Square(WearBarSdMm)));
+        add(new(ExplanationKind.ComparedSurveyWrong, Position: position, Groove: groove.Groove), 1, others + Math.Log(wrong) + here - then);
     }
+
+    /// <summary>Log density of a depth among those of the tyre's other grooves.</summary>
+    private static double Beside(double depth, Pair[] rest, Func<Pair, double> of) =>
+        rest.Length == 0 ? 0 : LineBelief.LogDensity(depth - rest.Average(of), Square(AnyProfileSdMm) * (1 + 1.0 / rest.Length));
 
     private static double Any(Pair[] both, double common)
     {

@@ -81,7 +81,7 @@ internal sealed class FolderFacts(string folder)
 
     private (string, IReadOnlyList<Fact>) Vehicles()
     {
-        var axles = CsvTable.Read(folder, "axles", "vehicle_id! axle! suspension steered driven lifting duals target_total_toe target_camber tolerance_total_toe tolerance_camber angle_unit tyre_size tyre_price pressure_kpa track_m", Problems);
+        var axles = CsvTable.Read(folder, "axles", "vehicle_id! axle! suspension steered driven lifting duals target_total_toe target_camber tolerance_total_toe tolerance_camber angle_unit tyre_size tyre_price pressure_kpa track_m toe_adjustable camber_adjustable caster_adjustable scrub_radius_mm trail_mm", Problems);
         var byVehicle = (axles?.Rows ?? []).ToLookup(r => r.Text("vehicle_id"));
         var facts = Rows("vehicles", Id + "vehicle_id! depot_id! class! from fleet_number registration vin km_per_week gross_mass_kg wheelbase_m steering_ratio assist consumption_per_100_km electric telematics_units leaves_on next_alignment_on", (row, fact) =>
         {
@@ -142,6 +142,12 @@ internal sealed class FolderFacts(string folder)
         if (row.Number("tyre_price") is { } price) axle.TyrePrice = price;
         if (row.Number("pressure_kpa") is { } pressure) axle.PressureKpa = pressure;
         if (row.Number("track_m") is { } track) axle.TrackM = track;
+        if (row.Number("scrub_radius_mm") is { } scrub) axle.ScrubRadiusMm = scrub;
+        if (row.Number("trail_mm") is { } trail) axle.TrailMm = trail;
+        // Left empty, the table of suspensions says what can be set.
+        if (row.Text("toe_adjustable").Length > 0) axle.ToeAdjustable = row.Flag("toe_adjustable");
+        if (row.Text("camber_adjustable").Length > 0) axle.CamberAdjustable = row.Flag("camber_adjustable");
+        if (row.Text("caster_adjustable").Length > 0) axle.CasterAdjustable = row.Flag("caster_adjustable");
         return axle;
     }
 

@@ -24,7 +24,7 @@ internal static class ReaderStudyOutput
         if (study.TechnicianSpread is { } hands) console.WriteLine($"Spread between technicians: {Figure(hands)}");
         if (study.GaugeSpread is { } gauges) console.WriteLine($"Spread between gauges: {Figure(gauges)}");
         if (study.Repeatability is { } repeat) console.WriteLine($"One reading repeated: {Figure(repeat)}");
-        if (study.Technicians.Concat(study.Gauges).Any(r => r.Few)) console.WriteLine("few: too few surveys to act on; the figure leans on the fleet's.");
+        if (study.Technicians.Concat(study.Gauges).Any(r => r.Few)) console.WriteLine("* too few surveys to act on; the figure leans on the fleet's.");
     }
 
     private static IEnumerable<string> Lines(string kind, IReadOnlyCollection<ReaderFigures> readers)
@@ -34,14 +34,14 @@ internal static class ReaderStudyOutput
             yield return $"No survey names a {kind}.";
             yield break;
         }
-        var width = Math.Clamp(readers.Max(r => r.Reader.Length), kind.Length, 20);
+        var width = Math.Clamp(readers.Max(r => r.Reader.Length), kind.Length, 16);
         yield return $"{kind.PadRight(width)}  surveys  readings  bias mm                 repeatability mm";
         foreach (var r in readers)
         {
             var name = r.Reader.Length > width ? r.Reader[..width] : r.Reader;
             var bias = string.Create(CultureInfo.InvariantCulture, $"{r.Bias.Value:+0.00;-0.00;0.00} ({r.Bias.Low:+0.00;-0.00;0.00} to {r.Bias.High:+0.00;-0.00;0.00})");
             var repeat = string.Create(CultureInfo.InvariantCulture, $"{r.Repeatability.Value:0.00} ({r.Repeatability.Low:0.00} to {r.Repeatability.High:0.00})");
-            yield return $"{name.PadRight(width)}  {r.Surveys,7}  {r.Readings,8}  {bias,-22}  {repeat}{(r.Few ? "  few" : "")}";
+            yield return $"{name.PadRight(width)}  {r.Surveys,6}{(r.Few ? "*" : " ")}  {r.Readings,8}  {bias,-22}  {repeat}";
         }
         yield return "";
     }

@@ -71,34 +71,43 @@ internal static class Screen
         foreach (var note in d.SurveyNotes) console.MarkupLineInterpolated($"{(note.SurveyId.Length > 0 ? $"Survey {note.SurveyId}: " : "")}{note.Note}");
         foreach (var gap in d.CannotTell) console.MarkupLineInterpolated($"Cannot tell {gap.What}: {gap.Because}. Would help: {gap.WouldHelp}.");
         console.WriteLine();
+        Drawings(console, d);
         console.MarkupLineInterpolated($"[italic]{report.Notice}[/]");
     }
 
     private static void Causes(IAnsiConsole console, Contracts.V1.Diagnosis d)
     {
-        var table = new Table().Border(TableBorder.Simple).AddColumns("cause", "axle", "side", "if so: value (90 %)", "beyond tolerance", "probability", "since");
-        foreach (var c in d.Causes.Where(c => c.Probability >= 0.01).Take(8))
+        var causes = d.Causes.Where(c => c.Probability >= 0.01).Take(8).ToList();
+        if (causes.Count == 0) return;
+        console.WriteLine("probability  cause                           if so (90 %); out: beyond tolerance");
+        foreach (var c in causes)
         {
-            table.AddRow(Words(EnumWords.Word(c.Quantity)), c.HasAxle ? $"{c.Axle}" : "", c.Side switch { Side.Left => "left", Side.Right => "right", _ => "" },
-                string.Create(CultureInfo.InvariantCulture, $"{c.Value:0.00} ({c.Low:0.00} to {c.High:0.00}) {(c.Unit == "1" ? "" : c.Unit)}"), c.OutsideTolerance ? "yes" : "", $"{c.Probability:0.00}", Since(c.Since));
+            var place = Place(c);
+            var beyond = c.OutsideTolerance ? "out: " : "";
+            console.WriteLine(string.Create(CultureInfo.InvariantCulture, $"{c.Probability,11:0.00}  {place,-30}  {beyond}{c.Value:0.##}{(c.Unit == "1" ? "" : $" {c.Unit}")} ({c.Low:0.##} to {c.High:0.##})"));
         }
-        if (table.Rows.Count > 0) console.Write(table);
-        if (d.Odds.Count > 0) console.MarkupLineInterpolated($"{string.Join("; ", d.Odds)}.");
-        if (d.HasMisalignedByTread) console.MarkupLineInterpolated($"By the tread alone {d.MisalignedByTread:0.00}, by the steering alone {d.MisalignedBySteering:0.00}.");
+        foreach (var c in causes.Where(c => c.Probability >= WorthDating && c.Since is not null))
+            console.MarkupLineInterpolated($"If {Place(c)}: {(c.Since.Earliest.Length == 0 ? $"began by {c.Since.Latest} at the latest" : $"began between {c.Since.Earliest} and {c.Since.Latest}")} (90 %).");
+        foreach (var odds in d.Odds) console.MarkupLineInterpolated($"{Sentence(odds)}.");
+        if (d.HasMisalignedByTread) console.MarkupLineInterpolated($"Out of alignment by the tread alone {d.MisalignedByTread:0.00}, by the steering alone {d.MisalignedBySteering:0.00}.");
         console.WriteLine();
     }
 
-    private static string Since(DateRange? since) => since switch
-    {
-        null => "",
-        { Earliest: "" } => $"by {since.Latest} at the latest",
-        _ => $"{since.Earliest} to {since.Latest}",
-    };
+    /// <summary>Causes less probable than this are not dated on the screen; JSON dates all.</summary>
+    private const double WorthDating = 0.2;
+
+    private static string Place(Cause c) => $"{Words(EnumWords.Word(c.Quantity))}{(c.HasAxle ? $", axle {c.Axle}" : "")}{c.Side switch { Side.Left => " left", Side.Right => " right", _ => "" }}";
+
+    private static string Sentence(string text) => char.ToUpperInvariant(text[0]) + text[1..];
 
     private static void Tyres(IAnsiConsole console, Contracts.V1.Diagnosis d)
     {
         foreach (var line in TyreTable.Lines(d)) console.WriteLine(line);
         console.WriteLine();
+    }
+
+    private static void Drawings(IAnsiConsole console, Contracts.V1.Diagnosis d)
+    {
         foreach (var line in d.Tyres.SelectMany(t => TreadDrawing.Lines(t, TreadDrawing.DeepestMm(d.Tyres)))) console.WriteLine(line);
     }
 

@@ -9,12 +9,12 @@ internal static class TyreTable
     public static IEnumerable<string> Lines(Contracts.V1.Diagnosis d)
     {
         if (d.Tyres.Count == 0) yield break;
-        yield return "tyre  depth      wear/1000 km  km to the limit            about (90 %)";
+        yield return "tyre  depth,gr  wear/1000 km  km to the limit (90 %)     about (90 %)";
         foreach (var t in d.Tyres)
         {
-            yield return $"{t.Position,-4}  {Depth(t),-9}  {Wear(t),-12}  {Distance(t.RemainingKm),-25}  {Date(t.LimitOn)}".TrimEnd();
+            yield return $"{t.Position,-4}  {Depth(t),-8}  {Wear(t),-12}  {Distance(t.RemainingKm),-25}  {Date(t.LimitOn)}".TrimEnd();
             if (t.HasChangeAtMm && t.ToChangeKm is not null)
-                yield return $"        to change at {Number(t.ChangeAtMm)} mm      {Distance(t.ToChangeKm),-25}  {Date(t.ChangeOn)}".TrimEnd();
+                yield return $"      {$"to change at {Number(t.ChangeAtMm)} mm",-22}  {Distance(t.ToChangeKm),-25}  {Date(t.ChangeOn)}".TrimEnd();
         }
         if (d.Tyres.Any(t => t.RateBorrowed)) yield return "~ mostly the fleet's rate, for want of readings of its own";
         if (d.KmPerWeek is { } use) yield return string.Create(CultureInfo.InvariantCulture, $"Dates at {use.Value:#,0} km a week (a single week {Math.Max(0, use.Low):#,0} to {use.High:#,0}).");
@@ -22,15 +22,15 @@ internal static class TyreTable
             yield return $"Limit {Number(limit.Key.LimitMm)} mm{(limit.Count() == d.Tyres.Count ? "" : $" ({string.Join(", ", limit.Select(t => t.Position))})")}: {limit.Key.LimitSource}. Current local law comes first.";
     }
 
-    /// <summary><c>7.3 gr 2</c>; a single depth has no groove.</summary>
+    /// <summary><c>7.3 g2</c>; a single depth has no groove.</summary>
     private static string Depth(TyreDiagnosis t) =>
-        t.DepthMm is null ? "not read" : $"{Depths.Gauge(t.DepthMm.Value, t.GaugeStepMm)}{(t.GoverningGroove > 0 ? $" gr {t.GoverningGroove}" : "")}";
+        t.DepthMm is null ? "not read" : $"{Depths.Gauge(t.DepthMm.Value, t.GaugeStepMm)}{(t.GoverningGroove > 0 ? $" g{t.GoverningGroove}" : "")}";
 
     private static string Wear(TyreDiagnosis t) => t.RateMmPer1000Km is not { } r ? "not known"
         : string.Create(CultureInfo.InvariantCulture, $"{(t.RateBorrowed ? "~" : "")}{r.Value:0.000}±{(r.High - r.Low) / 2:0.000}");
 
     private static string Distance(Contracts.V1.Range? km) => km is null ? "not known"
-        : km.High <= 0 ? "reached" : $"{Round(km.Value)} ({Round(km.Low)} to {Round(km.High)})";
+        : km.High <= 0 ? "reached" : $"{Round(km.Value)} ({Round(km.Low)}-{Round(km.High)})";
 
     /// <summary>Two digits and no more: a distance to come is known no better.</summary>
     private static string Round(double km)
@@ -43,9 +43,11 @@ internal static class TyreTable
     private static string Date(DateRange? on)
     {
         if (on is null) return "";
-        return $"{Month(on.Likely)} ({Month(on.Earliest)} to {Month(on.Latest)})";
+        var year = on.Likely[..4];
+        return $"{Month(on.Likely)} {year} ({Near(on.Earliest)}-{Near(on.Latest)})";
 
-        static string Month(string day) => DateOnly.ParseExact(day, "yyyy-MM-dd", CultureInfo.InvariantCulture).ToString("MMM yy", CultureInfo.InvariantCulture);
+        string Near(string day) => day[..4] == year ? Month(day) : $"{Month(day)}{day[2..4]}";
+        static string Month(string day) => DateOnly.ParseExact(day, "yyyy-MM-dd", CultureInfo.InvariantCulture).ToString("MMM", CultureInfo.InvariantCulture);
     }
 
     private static string Number(double mm) => mm.ToString("0.0#", CultureInfo.InvariantCulture);

@@ -135,4 +135,29 @@ public sealed class FolderTests : IDisposable
         Assert.Empty(folder.Problems);
         Assert.Equal("V1", report.VehicleId);
     }
+
+    [Fact]
+    public void What_could_not_be_read_keeps_its_text_and_the_id_of_the_fact_it_would_have_been()
+    {
+        Write("driver_reports.csv", "id,vehicle_id,at,symptom", "r1,V1,yesterday,shakes");
+        var problem = Assert.Single(Read().Problems);
+        Assert.Equal(("driver_reports.csv", 2, "at", "r1", "r1,V1,yesterday,shakes"), (problem.File, problem.Line, problem.Column, problem.Id, problem.Text));
+    }
+
+    [Theory]
+    [InlineData("2LO.2=7.1", null)]
+    [InlineData("2LO.2=", null)]
+    [InlineData("distance=5000", null)]
+    [InlineData("unit=1/32in", null)]
+    [InlineData("2LO.3=7.1", "the survey has no depth at 2LO.3; it has 2LO.1, 2LO.2")]
+    [InlineData("2LO.2=7,1", "'7,1' is not a number; use a point as the decimal mark")]
+    [InlineData("unit=furlong", "'furlong' is neither mm nor 1/32in")]
+    [InlineData("more", "'more' is not a change such as 2LO.2=7.1")]
+    public void A_correction_typed_by_hand_is_made_or_says_what_is_wrong(string change, string? wrong)
+    {
+        var survey = new Contracts.V1.TreadSurvey { DepthUnit = Contracts.V1.DepthUnit.Mm, Tyres = { Sample.Tyre("2LO", 6.1, 1.7) } };
+        Assert.Equal(wrong, Commands.CorrectCommand.Apply(survey, change));
+        if (change == "2LO.2=7.1") Assert.Equal([6.1, 7.1], survey.Tyres[0].Grooves.Select(g => g.Depth));
+        if (change == "2LO.2=") Assert.Equal([6.1], survey.Tyres[0].Grooves.Select(g => g.Depth));
+    }
 }

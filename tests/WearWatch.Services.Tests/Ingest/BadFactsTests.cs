@@ -148,6 +148,20 @@ public sealed class BadFactsTests(PostgresFixture postgres) : IngestTest(postgre
     }
 
     [Fact]
+    public Task Ten_thousand_grooves_on_one_tyre_are_refused_and_still_kept() => Refused(Good().With(f =>
+    {
+        f.Survey.Tyres[2].Grooves.Clear();
+        f.Survey.Tyres[2].Grooves.AddRange(Enumerable.Range(0, 10_000).Select(i => new GrooveDepth { Groove = i, Depth = 7 }));
+    }), "too_many", "survey.tyres[2].grooves");
+
+    [Fact]
+    public Task A_vehicle_without_axles_is_refused() =>
+        Refused(Sample.Van(Depot, $"{Depot}-V9").With(f => f.Vehicle.Axles.Clear()), "axles_count", "vehicle.axles");
+
+    [Fact]
+    public async Task A_vehicle_without_any_fitting_record_is_measured_like_any_other() => await Store(Good());
+
+    [Fact]
     public async Task One_bad_item_never_costs_the_good_ones_beside_it()
     {
         var answers = await Record(Good("a"), Good("b").With(f => f.Survey.VehicleId = "NOBODY"), Sample.Survey(Depot, Van, "c", Sample.Monday.AddDays(7), 40_600, 7.0, 7.1, 6.9));

@@ -46,8 +46,8 @@ public sealed class QuestionTests(PostgresFixture postgres) : IngestTest(postgre
         var question = Assert.Single(await Asked(s => Depth(s, 1, 2, 8.6)));
         Assert.Equal(("depth_grew", "survey.tyres[1].grooves[1].depth"), (question.Code, question.Field));
         Assert.Equal("Groove 2 of 1R reads 1.2 mm deeper than on 2 March 2026: typed wrong, or a new tyre?", question.Message);
-        Assert.StartsWith("groove_mistyped 1R 2", question.Choices[0].Answer);
-        Assert.Contains(question.Choices, c => c.Answer == "as_written 1R");
+        Assert.Contains(question.Choices, c => c.Answer.StartsWith("groove_mistyped 1R 2", StringComparison.Ordinal));
+        Assert.Contains(question.Choices, c => c.Answer == "as_written 1R"); // the walk before may have been read on a wear bar
         Assert.Equal(question.Choices.Select(c => c.Probability).OrderDescending(), question.Choices.Select(c => c.Probability));
         Assert.All(question.Choices, c => Assert.EndsWith(".", c.Words));
     }
@@ -94,6 +94,8 @@ public sealed class QuestionTests(PostgresFixture postgres) : IngestTest(postgre
         return Assert.Single(answer.Remarks, r => r.Choices.Count > 0);
     }
 
+    private static string Likeliest(Remark question) => question.Choices.First(c => c.Answer != "as_written").Answer;
+
     private static string Across(string p) => $"{p[0]}{(p[1] == 'L' ? 'R' : 'L')}";
 
     [Fact]
@@ -101,21 +103,22 @@ public sealed class QuestionTests(PostgresFixture postgres) : IngestTest(postgre
     {
         var question = await Whole(Distinct(Depot, Van, "s2", 4, 41_500, 0.2, Across));
         Assert.Equal("sides_swapped", question.Code);
-        Assert.Equal(["sides_swapped", "moved sides_swapped"], question.Choices.Take(2).Select(c => c.Answer));
+        // Of two walks that contradict each other either may be the wrong one.
+        Assert.Equal(["as_written", "moved sides_swapped", "sides_swapped"], question.Choices.Take(3).Select(c => c.Answer).Order(StringComparer.Ordinal));
         Assert.Contains("left and right exchanged on paper, or the tyres moved?", question.Message);
     }
 
     [Fact]
     public async Task Exchanged_axles_are_asked_about() =>
-        Assert.Equal("axles_swapped 1 2", (await Whole(Distinct(Depot, Van, "s2", 4, 41_500, 0.2, p => $"{(p[0] == '1' ? 2 : 1)}{p[1]}"))).Choices[0].Answer);
+        Assert.Equal("axles_swapped 1 2", Likeliest(await Whole(Distinct(Depot, Van, "s2", 4, 41_500, 0.2, p => $"{(p[0] == '1' ? 2 : 1)}{p[1]}"))));
 
     [Fact]
     public async Task Thirty_seconds_written_as_mm_are_asked_about() =>
-        Assert.Equal("thirty_seconds_taken_for_mm", (await Whole(Distinct(Depot, Van, "s2", 4, 41_500, 0.2, factor: 1 / 0.79375))).Choices[0].Answer);
+        Assert.Equal("thirty_seconds_taken_for_mm", Likeliest(await Whole(Distinct(Depot, Van, "s2", 4, 41_500, 0.2, factor: 1 / 0.79375))));
 
     [Fact]
     public async Task Grooves_counted_from_the_inboard_side_are_asked_about() =>
-        Assert.Equal("grooves_reversed", (await Whole(Distinct(Depot, Van, "s2", 4, 41_500, 0.2, reversed: true))).Choices[0].Answer);
+        Assert.Equal("grooves_reversed", Likeliest(await Whole(Distinct(Depot, Van, "s2", 4, 41_500, 0.2, reversed: true))));
 
     [Fact]
     public async Task An_answered_survey_is_let_through_and_read_as_answered()
@@ -129,6 +132,24 @@ public sealed class QuestionTests(PostgresFixture postgres) : IngestTest(postgre
         // The survey on record is the one that was sent, and the next one is held against what was answered.
         Assert.Equal(4.8, (await Client.GetFactAsync(new GetFactRequest { Id = "s2", DepotId = Depot })).Fact.Survey.Tyres[0].Grooves[0].Depth, 6);
         await Store(Distinct(Depot, Van, "s3", 8, 43_000, 0.4));
+    }
+
+    [Fact]
+    public async Task The_next_walk_that_fits_the_one_that_waits_is_not_asked_the_same_again()
+    {
+        await Asked(s => s.Tyres[0] = Sample.Tyre("1L", 8.9, 9.0, 9.0, 9.1));
+        var next = Assert.Single(await Store(Survey("s3", 8, 43_000, s_now).With(f => f.Survey.Tyres[0] = Sample.Tyre("1L", 8.7, 8.8, 8.8, 8.9))));
+        Assert.Equal("fits_held", Assert.Single(next.Remarks).Code);
+    }
+
+    [Fact]
+    public async Task An_answer_lets_a_later_walk_through_that_fits_what_was_answered()
+    {
+        await Whole(Distinct(Depot, Van, "s3", 8, 43_000, 0.4, Across));
+        Assert.Equal(Outcome.Held, Assert.Single(await Record(Distinct(Depot, Van, "s2", 4, 41_500, 0.2, Across))).Outcome); // came late
+        var answer = Assert.Single(await Store(Answer("a1", "s2", "moved sides_swapped")));
+        Assert.Equal("judged_again", Assert.Single(answer.Remarks).Code);
+        Assert.Equal(["s1", "s2", "s3"], (await Load()).Surveys.Select(s => s.FactId));
     }
 
     [Fact]

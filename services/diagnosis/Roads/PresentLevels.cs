@@ -36,15 +36,16 @@ internal sealed class PresentLevels
     public double[] Noise { get; } = new double[Read];
     public double[] PerDay { get; } = new double[Read];
 
-    /// <summary>The figure at the vehicle's last trip; what its error shares with other vehicles stays in.</summary>
+    /// <summary>
+    /// The figure at the vehicle's last trip. The error of the mean stays in and the level's comes on top: the roads of the last trips are
+    /// few, and what the vehicle's own gain makes of them is known less well than its spread from road to road tells.
+    /// </summary>
     /// <param name="vehicle">Number of the vehicle.</param>
     /// <param name="witness">Torque or angle.</param>
     /// <param name="figure">Its mean over all trips.</param>
     public Estimate Of(int vehicle, Witness witness, Estimate figure)
     {
         var lane = (int)witness;
-        var own = 1 / (_solve.System.Diagonal[Lanes * vehicle + lane] - _solve.System.PriorWeight[Lanes * vehicle + lane]);
-        var shared = Math.Max(0, figure.StandardError * figure.StandardError - own);
         var (level, variance, day) = (0.0, double.PositiveInfinity, 0.0);
         foreach (var trip in InTime(vehicle, lane))
         {
@@ -55,7 +56,7 @@ internal sealed class PresentLevels
             else (level, variance) = (level + expected / (expected + seen) * miss, expected * seen / (expected + seen));
             day = trip.Day;
         }
-        return double.IsFinite(variance) ? new(figure.Value + level, Math.Sqrt(shared + variance)) : figure;
+        return double.IsFinite(variance) ? new(figure.Value + level, Math.Sqrt(figure.StandardError * figure.StandardError + variance)) : figure;
     }
 
     private IEnumerable<TripMean> InTime(int vehicle, int lane)

@@ -355,6 +355,7 @@ internal sealed partial class HistoryReader
         if (cut.Record is not { } r || cut.Km is not { } km || _notThatTyre.Contains((p, cut.Survey))) return null;
         return r.Event switch
         {
+            FittingEvent.Fitted when StoodBefore(r) is { } before => Carried(before.Position, before.Fitting, p, km, flip: false, before.OffKm),
             FittingEvent.Fitted when _cuts.NewDepth(p, fitting) is { } n && r.RetreadCount >= 0 => NewTyre(p, fitting, n, km),
             FittingEvent.Regrooved when r.NewDepthMm is { } n => new FittingPoint { Survey = -1, Km = km, Mean = new(n, 2 * TreadShape.NewDepthSdMm) },
             FittingEvent.TurnedOnRim when fitting > 0 => Carried(p, fitting - 1, p, km, flip: true),
@@ -377,17 +378,37 @@ internal sealed partial class HistoryReader
         return start;
     }
 
+    /// <summary>Where a tyre of this number stood last before it was put on again, as the sets of a season do, and the distance at which it came off.</summary>
+    private (int Position, int Fitting, double OffKm)? StoodBefore(FittingRecord record)
+    {
+        if (record.TyreId is null) return null;
+        (int, int, double)? found = null;
+        var latest = DateTimeOffset.MinValue;
+        for (var q = 0; q < _positions.Length; q++)
+        {
+            var cuts = _cuts.At(q);
+            for (var f = 0; f < cuts.Count; f++)
+            {
+                if (cuts[f].Record is not { } r || r.At >= record.At || r.At <= latest || _cuts.Identity(q, f)?.TyreId != record.TyreId) continue;
+                latest = r.At;
+                found = f + 1 < cuts.Count && cuts[f + 1].Km is { } off ? (q, f, off) : null;
+            }
+        }
+        return found;
+    }
+
     private int LastBefore(int q, int survey) => survey == 0 ? -1 : _cuts.Of(q, survey - 1);
 
     /// <summary>The tyre as last read where it came from; a change between outer and inner dual turns the wheel round, so only the mean is carried.</summary>
-    private FittingPoint? Carried(int from, int fitting, int to, double km, bool flip)
+    private FittingPoint? Carried(int from, int fitting, int to, double km, bool flip, double? offKm = null)
     {
         if (fitting < 0) return null;
         for (var s = _surveys.Count - 1; s >= 0; s--)
         {
-            if (_km[s].Value > km + 1 || _cuts.Of(from, s) != fitting || Point(s, from) is not { } last) continue;
+            if (_km[s].Value > (offKm ?? km) + 1 || _cuts.Of(from, s) != fitting || Point(s, from) is not { } last) continue;
             var rate = _normal[from].RateMmPer1000Km / 1000;
-            var since = Math.Max(0, km - last.Km);
+            // In the rack a tyre does not wear.
+            var since = Math.Max(0, (offKm ?? km) - last.Km);
             var sd = Math.Sqrt(Square(last.Mean.StandardError) + Square(rate * since * 0.5));
             var sameKind = _positions[from].Dual == _positions[to].Dual;
             return new FittingPoint

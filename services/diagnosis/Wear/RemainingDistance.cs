@@ -10,11 +10,10 @@ internal static class RemainingDistance
     private const int Nodes = 15;
 
     /// <summary>
-    /// Standard deviations of the share by which the rate ahead differs from the rate measured, the vehicle's condition as it is:
-    /// season and weather, which half a year of surveys does not average out, and the slowing of a tread over the rest of its
-    /// life, which is not assumed but may be (both from memory; the fleet's own slow-down is admitted on evidence only).
+    /// Standard deviation of the share by which the rate ahead differs from the rate measured, the vehicle's condition as it is: season
+    /// and weather, which half a year of surveys does not average out (from memory).
     /// </summary>
-    private const double SeasonShareSd = 0.045, SlowDownShareSd = 0.05;
+    private const double SeasonShareSd = 0.06;
 
     /// <summary>Quantiles of the standard normal law at the middles of equal shares, brought to unit variance.</summary>
     private static readonly double[] s_nodes = StandardNodes();
@@ -26,22 +25,41 @@ internal static class RemainingDistance
         return [.. z.Select(v => v / sd)];
     }
 
-    /// <summary>Distance, km, with its 90 % interval; rate log-normal, depth normal given the rate.</summary>
-    /// <param name="depthMm">Depth now at the given rate, mm; its error without that of the rate.</param>
-    /// <param name="rateMmPer1000Km">Rate, above zero.</param>
-    /// <param name="broughtForwardKm">Mean distance over which the readings were brought forward at that rate: a faster tyre is also shallower now.</param>
+    /// <summary>One course that the wear of a groove may take to the limit.</summary>
+    /// <param name="Weight">Probability, 0 to 1.</param>
+    /// <param name="DepthMm">Depth now at the given rate, mm; its error without that of the rate.</param>
+    /// <param name="RateMmPer1000Km">Rate, above zero.</param>
+    /// <param name="BroughtForwardKm">Mean distance over which the readings were brought forward at that rate: a faster tyre is also shallower now.</param>
+    /// <param name="Ahead">Rate ahead over the rate measured, see <see cref="RunIn.RateAhead"/>.</param>
+    public readonly record struct Course(double Weight, Estimate DepthMm, Estimate RateMmPer1000Km, double BroughtForwardKm, Estimate Ahead);
+
+    /// <summary>Distance, km, with its 90 % interval; rate log-normal and depth normal given the rate in every course.</summary>
+    /// <param name="courses">At least one.</param>
     /// <param name="limitMm">Limit, mm.</param>
-    public static Interval Of(Estimate depthMm, Estimate rateMmPer1000Km, double broughtForwardKm, double limitMm)
+    public static Interval Of(IReadOnlyList<Course> courses, double limitMm)
     {
-        var logSd = Math.Sqrt(Math.Log(1 + Math.Pow(rateMmPer1000Km.StandardError / rateMmPer1000Km.Value, 2)));
-        var logMean = Math.Log(rateMmPer1000Km.Value) - logSd * logSd / 2;
-        // Of a fast rate ahead only the measured part was there in the past.
-        var aheadSd = Math.Sqrt(logSd * logSd + SeasonShareSd * SeasonShareSd + SlowDownShareSd * SlowDownShareSd);
-        var rates = s_nodes.Select(z => (Ahead: Math.Exp(logMean + aheadSd * z), Past: Math.Exp(logMean + logSd * logSd / aheadSd * z))).ToArray();
-        var sd = Math.Max(depthMm.StandardError, 1e-6);
-        double Reached(double km) => rates.Average(r => 0.5 * SpecialFunctions.Erfc(-((limitMm + (r.Ahead * km + (r.Past - rateMmPer1000Km.Value) * broughtForwardKm) / 1000 - depthMm.Value) / sd) / Constants.Sqrt2));
-        var most = 1000 * Math.Max(0, depthMm.Value - limitMm + 4 * sd + rateMmPer1000Km.Value * broughtForwardKm / 1000) / rates[0].Ahead + 1;
+        var (total, most) = (courses.Sum(c => c.Weight), 0.0);
+        var rates = new (double Ahead, double Past)[courses.Count][];
+        for (var i = 0; i < rates.Length; i++)
+        {
+            var c = courses[i];
+            rates[i] = Rates(c);
+            most = Math.Max(most, 1000 * Math.Max(0, c.DepthMm.Value - limitMm + 4 * c.DepthMm.StandardError + c.RateMmPer1000Km.Value * c.BroughtForwardKm / 1000) / rates[i][0].Ahead + 1);
+        }
         return new Interval(Quantile(0.5), Quantile(0.05), Quantile(0.95));
+
+        double Reached(double km)
+        {
+            double sum = 0;
+            for (var i = 0; i < rates.Length; i++)
+            {
+                var c = courses[i];
+                var sd = Math.Max(c.DepthMm.StandardError, 1e-6);
+                foreach (var (ahead, past) in rates[i])
+                    sum += c.Weight / Nodes * 0.5 * SpecialFunctions.Erfc(-((limitMm + (ahead * km + (past - c.RateMmPer1000Km.Value) * c.BroughtForwardKm) / 1000 - c.DepthMm.Value) / sd) / Constants.Sqrt2);
+            }
+            return sum / total;
+        }
 
         double Quantile(double share)
         {
@@ -55,5 +73,15 @@ internal static class RemainingDistance
             }
             return (low + high) / 2;
         }
+    }
+
+    private static (double Ahead, double Past)[] Rates(in Course c)
+    {
+        var logSd = Math.Sqrt(Math.Log(1 + Math.Pow(c.RateMmPer1000Km.StandardError / c.RateMmPer1000Km.Value, 2)));
+        var logMean = Math.Log(c.RateMmPer1000Km.Value) - logSd * logSd / 2;
+        // Of a fast rate ahead only the measured part was there in the past.
+        var aheadSd = Math.Sqrt(logSd * logSd + SeasonShareSd * SeasonShareSd + c.Ahead.StandardError * c.Ahead.StandardError);
+        var ahead = c.Ahead.Value;
+        return [.. s_nodes.Select(z => (ahead * Math.Exp(logMean + aheadSd * z), Math.Exp(logMean + logSd * logSd / aheadSd * z)))];
     }
 }

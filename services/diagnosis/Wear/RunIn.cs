@@ -13,6 +13,11 @@ public sealed record RunIn
     public Estimate ExcessMm { get; init; } = new(0.15, 0.2);
     /// <summary>Fall of the rate over the whole new depth, share; zero unless the fleet shows it.</summary>
     public double SlowDown { get; init; }
+    /// <summary>
+    /// The same for what lies ahead, evidence and belief together: a thinner tread is stiffer and slides less, by nothing to a tenth
+    /// over its life (from memory). Looking back needs no belief, looking ahead cannot do without.
+    /// </summary>
+    public Estimate SlowingAhead { get; init; } = new(0.05, 0.04);
     /// <summary>Standard deviation of the share by which a tyre's rate before its surveys differs from its rate during them.</summary>
     public double EarlierRateSd { get; init; } = 0.1;
     /// <summary>Fittings behind it.</summary>
@@ -55,6 +60,17 @@ public sealed record RunIn
     internal double SettledSdMm(double lossMm) =>
         Math.Sqrt(ExcessMm.StandardError * ExcessMm.StandardError + ExcessBetweenSdMm * ExcessBetweenSdMm) * (1 - Math.Exp(-Math.Max(0, lossMm) / DecayMm));
 
+    /// <summary>Rate from a depth down to a limit over the rate measured about another depth; mean and error.</summary>
+    /// <param name="measuredMm">Depth about which the rate was measured, mm.</param>
+    /// <param name="depthMm">Depth now, mm.</param>
+    /// <param name="limitMm">Limit, mm.</param>
+    /// <param name="newMm">Depth when new, mm.</param>
+    internal Estimate RateAhead(double measuredMm, double depthMm, double limitMm, double newMm)
+    {
+        var further = Math.Clamp(measuredMm - (Math.Max(depthMm, limitMm) + limitMm) / 2, 0, newMm) / newMm;
+        return new(1 - SlowingAhead.Value * further, SlowingAhead.StandardError * further);
+    }
+
     private double Slowed(double newMm, double lossMm) => SlowDown * lossMm * lossMm / (2 * newMm);
 
     /// <summary>Loss at the middle of the measured points, mm.</summary>
@@ -78,7 +94,8 @@ public sealed record RunIn
         var vehicles = starts.Select(s => s.Vehicle).Distinct().Count();
         var straight = Fit(starts, curved: false, vehicles);
         var curve = Fit(starts, curved: true, vehicles);
-        return straight.Deviance - curve.Deviance - 2 > LeastAicGain && curve.RunIn.SlowDown > 0 ? curve.RunIn : straight.RunIn;
+        var ahead = Fit(starts, curved: true, vehicles, believed: true).RunIn.SlowingAhead;
+        return (straight.Deviance - curve.Deviance - 2 > LeastAicGain && curve.RunIn.SlowDown > 0 ? curve.RunIn : straight.RunIn) with { SlowingAhead = ahead };
     }
 
     private static Start? Above(FleetTyre tyre, NoiseFigures noise, ReaderTable readers, double rate)
@@ -98,18 +115,19 @@ public sealed record RunIn
     }
 
     /// <summary>Excess and slow-down by Huber weights with the prior as one more reading each; the spread from the median deviation.</summary>
-    private static (RunIn RunIn, double Deviance) Fit(List<Start> starts, bool curved, int vehicles)
+    private static (RunIn RunIn, double Deviance) Fit(List<Start> starts, bool curved, int vehicles, bool believed = false)
     {
         var prior = new RunIn();
         var (excess, slow, between) = (prior.ExcessMm.Value, 0.0, prior.EarlierRateSd);
         // Tyres of one vehicle share its past: they count as what they were sampled with.
         var share = (double)vehicles / starts.Count;
-        double excessSd = prior.ExcessMm.StandardError, deviance = 0;
+        double excessSd = prior.ExcessMm.StandardError, slowSd = 0, deviance = 0;
+        var slowPrecision = believed ? 1 / (prior.SlowingAhead.StandardError * prior.SlowingAhead.StandardError) : 1e-9;
         var needed = new double[starts.Count];
         for (var step = 0; step < 30; step++)
         {
             var priorPrecision = 1 / (prior.ExcessMm.StandardError * prior.ExcessMm.StandardError);
-            double a = priorPrecision, b = 0, d = 1e-9, ya = priorPrecision * prior.ExcessMm.Value, yb = 0;
+            double a = priorPrecision, b = 0, d = slowPrecision, ya = priorPrecision * prior.ExcessMm.Value, yb = believed ? slowPrecision * prior.SlowingAhead.Value : 0;
             deviance = 0;
             foreach (var s in starts)
             {
@@ -126,7 +144,7 @@ public sealed record RunIn
             }
             var determinant = curved ? a * d - b * b : 1;
             var next = curved ? (Excess: (d * ya - b * yb) / determinant, Slow: (a * yb - b * ya) / determinant) : (ya / a, 0);
-            excessSd = Math.Sqrt(curved ? d / determinant : 1 / a);
+            (excessSd, slowSd) = (Math.Sqrt(curved ? d / determinant : 1 / a), curved ? Math.Sqrt(a / determinant) : 0);
             var moved = Math.Abs(next.Excess - excess) + Math.Abs(next.Slow - slow);
             (excess, slow) = next;
             for (var i = 0; i < needed.Length; i++)
@@ -140,6 +158,6 @@ public sealed record RunIn
             between = Math.Sqrt((10 * prior.EarlierRateSd * prior.EarlierRateSd + vehicles * seen) / (10 + vehicles));
             if (moved < 1e-9) break;
         }
-        return (new RunIn { ExcessMm = new(excess, excessSd), SlowDown = slow, EarlierRateSd = between, Fittings = starts.Count }, deviance);
+        return (new RunIn { ExcessMm = new(excess, excessSd), SlowDown = slow, SlowingAhead = new(slow, slowSd), EarlierRateSd = between, Fittings = starts.Count }, deviance);
     }
 }

@@ -29,9 +29,10 @@ internal sealed record TyreScatter(float[] Squares, int Dimension, double Wander
         for (var i = 0; i < places.Length; i++)
         {
             if (points[i].Survey < 0 || points[i].Weight < 0.5 || points[i].Shape?.ByGroove is not { } read || read.Count != grooves.Count) continue;
-            var (same, least) = (true, int.MaxValue);
-            for (var g = 0; g < grooves.Count; g++) (same, least) = (same && read[g].Groove == grooves[g].Groove, Math.Min(least, read[g].Places));
-            if (same) places[i] = least;
+            var same = true;
+            double shares = 0;
+            for (var g = 0; g < grooves.Count; g++) (same, shares) = (same && read[g].Groove == grooves[g].Groove, shares + 1.0 / read[g].Places);
+            if (same) places[i] = grooves.Count / shares;
         }
         if (Empty(kept, places, grooves.Count - 1, 0) is not { } scatter) return null;
         var y = new double[points.Count];

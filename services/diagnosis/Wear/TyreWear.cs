@@ -146,7 +146,8 @@ internal sealed class TyreWear(VehicleTread vehicle, FleetWear fleet, DateOnly a
         var bias = fleet.BiasOf(history.Surveys[last.Survey].Survey).Sd;
         var edgeTotal = Shrunk(edge, EdgePerMm(normal, fitting.Position), normal.EdgeBetweenSd, rate.Value);
         var shoulderTotal = Shrunk(shoulder, normal.ShoulderPerMm, normal.ShoulderBetweenSd, rate.Value);
-        Interval? Until(double mm) => Grooves(fitting, limit).Select(g => ToLimit(fitting, g, rate, edgeTotal, shoulderTotal, mm)).OfType<Interval>().OrderBy(i => i.Value).Select(i => (Interval?)i).FirstOrDefault();
+        var courses = Courses(fitting, normal);
+        Interval? Until(double mm) => Grooves(fitting, limit).Select(g => ToLimit(fitting, g, rate, edgeTotal, shoulderTotal, mm, courses)).OfType<Interval>().OrderBy(i => i.Value).Select(i => (Interval?)i).FirstOrDefault();
         return figures with
         {
             RemainingMm = new(judged.GoverningMm, Math.Sqrt(readingSd * readingSd + bias * bias)),
@@ -175,15 +176,46 @@ internal sealed class TyreWear(VehicleTread vehicle, FleetWear fleet, DateOnly a
         return new((a * prior.Value + b * o.Value) / (a + b), 1 / Math.Sqrt(a + b));
     }
 
-    /// <summary>Depth of one groove now, from all its readings brought forward at its own rate, and the distance from there to the limit.</summary>
-    private Interval? ToLimit(Fitting fitting, int groove, Estimate rate, Estimate edge, Estimate shoulder, double limitMm)
+    /// <summary>How the rate of the tyre now on may have gone, from its mean depths.</summary>
+    private IReadOnlyList<RateCourse> Courses(Fitting fitting, NormalWear normal)
     {
-        var last = fitting.Points[^1];
-        var grooves = last.Shape!.Grooves;
+        var points = new List<(double Km, double Mm, double Variance)>();
+        var kept = fitting.LinePoints.Select(p => LinePoint.Of(p, -1, -1)).ToArray();
+        var fittedNew = kept.Length > 0 && fitting.LinePoints[0].New;
+        var loss = fittedNew ? RunIn.MiddleLoss(kept) : 0;
+        for (var i = 0; i < kept.Length; i++)
+        {
+            var bias = kept[i].Measured ? fleet.BiasOf(history.Surveys[kept[i].Survey].Survey).OwnSd : 0;
+            var p = fittedNew ? fleet.Noise.RunIn.OnLine(kept[i], kept[0].Mean.Value, loss) : kept[i];
+            if (FittingLines.Reading(p, TreadFigure.Mean, fleet.Noise, new(0, 0), normal.RateMmPer1000Km) is { } r) points.Add((p.X * 1000, r.Y, r.Variance + bias * bias));
+        }
+        return RateChange.Of(points, normal.RateMmPer1000Km, vehicle.AdjustedAt is { } at ? history.Axis.At(at).Value : null);
+    }
+
+    /// <summary>Depth of one groove now, from all its readings brought forward at its own rate, and the distance from there to the limit, over all courses.</summary>
+    private Interval? ToLimit(Fitting fitting, int groove, Estimate rate, Estimate edge, Estimate shoulder, double limitMm, IReadOnlyList<RateCourse> courses)
+    {
+        var grooves = fitting.Points[^1].Shape!.Grooves;
         var u = groove == 0 ? 0 : TreadShape.Across(groove, grooves);
         var q = groove == 0 || grooves < 3 ? 0 : u * u - TreadShape.MeanSquareAcross(grooves);
         var own = Math.Max(rate.Value + edge.Value * u / 2 + shoulder.Value * q, 0.2 * rate.Value);
-        var error = Math.Sqrt(Square(rate.StandardError) + Square(edge.StandardError * u / 2) + Square(shoulder.StandardError * q));
+        var shape = Math.Sqrt(Square(edge.StandardError * u / 2) + Square(shoulder.StandardError * q));
+        var whole = courses[0].Now.Value > 0 ? courses[0].Now.Value : rate.Value;
+        var ways = new List<RemainingDistance.Course>(courses.Count);
+        foreach (var course in courses)
+        {
+            if (course.Weight < 0.01) continue;
+            // The shape of wear is taken to keep its proportions when the rate changes.
+            var (before, now) = double.IsNegativeInfinity(course.SinceKm) ? (1, 1) : (Math.Max(0.2, course.Before.Value / whole), Math.Max(0.2, course.Now.Value / whole));
+            var error = double.IsNegativeInfinity(course.SinceKm) ? rate.StandardError : Math.Max(rate.StandardError, course.Now.StandardError);
+            if (Way(fitting, groove, course, own * before, own * now, Math.Sqrt(Square(error) + Square(shape)), limitMm) is { } way) ways.Add(way);
+        }
+        return ways.Count == 0 ? null : RemainingDistance.Of(ways, limitMm);
+    }
+
+    private RemainingDistance.Course? Way(Fitting fitting, int groove, RateCourse course, double before, double now, double error, double limitMm)
+    {
+        var last = fitting.Points[^1];
         double sum = 0, weights = 0, gaps = 0, noise = 0;
         foreach (var p in fitting.Points)
         {
@@ -191,17 +223,20 @@ internal sealed class TyreWear(VehicleTread vehicle, FleetWear fleet, DateOnly a
             var survey = history.Surveys[p.Survey].Survey;
             var bias = fleet.BiasOf(survey);
             var gap = (last.Km - p.Km) / 1000;
+            var earlier = Math.Max(0, Math.Min(course.SinceKm, last.Km) - p.Km) / 1000;
             var variance = (GaugeNoise.ReadingVariance(GaugeNoise.RepeatSdMm, survey.ResolutionMm) * Math.Max(1, Square(fleet.Noise.MeanScale)) / mean.Places + Square(FittingLines.WanderSdMm) + Square(bias.OwnSd) + Square(error * gap)) / p.Weight;
-            sum += (mean.DepthMm - bias.Mm - own * gap) / variance;
+            sum += (mean.DepthMm - bias.Mm - now * (gap - earlier) - before * earlier) / variance;
             weights += 1 / variance;
             noise += (variance - Square(error * gap) / p.Weight) / (variance * variance);
-            gaps += gap / variance;
+            gaps += (gap - earlier) / variance;
         }
         if (weights <= 0) return null;
         // What all readers share stays, whatever the number of readings.
         var common = fleet.BiasOf(history.Surveys[last.Survey].Survey).CommonSd;
         var depth = new Estimate(sum / weights, Math.Sqrt(noise / (weights * weights) + common * common));
-        return RemainingDistance.Of(depth, new(own, error), gaps / weights * 1000, limitMm);
+        var newMm = fitting.NewDepthMm ?? WearPrior.For(fitting.Class, fitting.Role).NewDepthMm;
+        var measured = fitting.Points.Where(p => p.Km >= course.SinceKm).Select(p => p.Mean.Value).DefaultIfEmpty(last.Mean.Value).Average();
+        return new(course.Weight, depth, new(now, error), gaps / weights * 1000, fleet.Noise.RunIn.RateAhead(measured, depth.Value, limitMm, newMm));
     }
 
     private TyreFigures Hand(TyreFigures figures, Fitting fitting)

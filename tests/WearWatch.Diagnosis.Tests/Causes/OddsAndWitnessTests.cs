@@ -38,7 +38,7 @@ public sealed class OddsAndWitnessTests
     [Fact]
     public void A_tread_worn_by_toe_beside_a_steering_wheel_that_stands_straight_is_told_by_witness()
     {
-        var figures = CauseCases.Van().WithTyres(p => CauseCases.Tyre(p, edge: p.Axle == 1 ? 0.042 : 0, logRate: p.Axle == 1 ? 0.36 : 0)).WithSteering(pull: 0, offCentre: 0);
+        var figures = CauseCases.Van().WithTyres(p => CauseCases.Tyre(p, edge: p.Axle == 1 ? 0.05 : 0, logRate: p.Axle == 1 ? 0.45 : 0)).WithSteering(pull: 0, offCentre: 0);
         var verdict = CauseEstimate.Judge(figures, FaultPriors.Default);
         Assert.InRange(verdict.MisalignedProbability, 0.121, 0.879); // else the case is clear and nobody is asked
         Assert.NotNull(verdict.ByWitness);

@@ -40,6 +40,18 @@ public class RobustTests
     }
 
     [Fact]
+    public void Stackloss_by_least_median_of_squares()
+    {
+        // MASS lqs, method "lms", all subsets: −34.25 + 0.7143 air + 0.3571 water − 3.5e-17 acid, as in its manual (from memory); Rousseeuw and Leroy 1987 print −34.5, 0.714, 0.357, 0.000.
+        var d = ReferenceData.Read("stackloss.csv");
+        var beta = LeastMedianOfSquares.Fit(Design(d["air"], d["water"], d["acid"]), d["loss"]);
+        Assert.Equal(-34.25, beta[0], 1e-6);
+        Assert.Equal(0.7143, beta[1], 5e-5);
+        Assert.Equal(0.3571, beta[2], 5e-5);
+        Assert.Equal(0, beta[3], 1e-9);
+    }
+
+    [Fact]
     public void Telephone_calls_by_huber()
     {
         // Rousseeuw and Leroy 1987; MASS rlm of R 4.2.2, which stops at a change of 1e-4 on a slow approach: hence the width.

@@ -141,6 +141,33 @@ public class FittingTests
     }
 
     [Fact]
+    public void A_summer_set_put_on_again_goes_on_from_where_it_came_off()
+    {
+        // Summer tyres until week 12, winter tyres until week 24, the summer tyres again: 12 000 km in the rack take nothing off them.
+        FittingRecord On(int week, string set, bool winter, double newMm) => new()
+        {
+            VehicleId = "V",
+            At = s_first.AddDays(7 * week),
+            Event = FittingEvent.Fitted,
+            Position = s_left,
+            TyreId = set,
+            Seasonal = true,
+            Winter = winter,
+            NewDepthMm = newMm,
+        };
+        double Depth(int week) => week < 12 ? 7 - 0.15 * week : week < 24 ? 9 - 0.15 * (week - 12) : 7 - 0.15 * (week - 12);
+        var walks = new[] { 1, 6, 11, 14, 20, 26, 32, 38 }.Select(w => Survey(w, 50_000 + 1000 * w, (p, _) => p == s_left ? Depth(w) : Plain(w) / 2)).ToList();
+        var result = Estimate(walks, On(0, "summer", false, 9), On(12, "winter", true, 9), On(24, "summer", false, 9));
+        var tyre = At(result, s_left);
+        Assert.Equal("summer", tyre.TyreId);
+        Assert.Equal(0.15, tyre.RateMmPer1000Km!.Value.Value, 0.01);
+        Assert.Empty(result.Inferred);
+        // One walk after it came back the set already has a rate of its own: where it came off is known.
+        var early = At(Estimate([.. walks.Take(6)], On(0, "summer", false, 9), On(12, "winter", true, 9), On(24, "summer", false, 9)), s_left);
+        Assert.NotNull(early.LogRateRatio);
+    }
+
+    [Fact]
     public void A_tyre_below_the_limit_has_no_distance_left()
     {
         var result = Estimate([.. new[] { 0, 8, 16 }.Select(w => Survey(w, 50_000 + 1000 * w, (p, g) => p == s_right && g == 4 ? 3.9 - 0.15 * w : Plain(w)))]);

@@ -77,6 +77,8 @@ public sealed class Posterior
         var soundWeight = Sample(sound, DrawsOfSound).LogWeight;
         var faulty = close.Select(f => (Fit: f, Sample: Sample(f, DrawsOfFault))).ToList();
         var most = Math.Max(soundWeight, faulty.Count == 0 ? double.NegativeInfinity : faulty.Max(f => f.Sample.LogWeight));
+        // Where every draw fell beyond the sound angles' limits, the points themselves must do (Laplace).
+        if (double.IsNegativeInfinity(most)) return Tell(sound.LogWeight, [.. close.Select(AtPoint)]);
         return Tell(soundWeight, [.. faulty.Select(f => f.Sample.LogWeight > most - Likely ? SampleTwice(f.Fit) : f.Sample)]);
     }
 
@@ -89,7 +91,6 @@ public sealed class Posterior
     private BestVerdict Tell(double soundWeight, Sampled[] faulty)
     {
         var most = faulty.Select(f => f.LogWeight).Append(soundWeight).Max();
-        if (double.IsNegativeInfinity(most)) throw new InvalidOperationException($"no kind of fault explains what was read of {_model.Vehicle.Id}");
         var misaligned = faulty.Sum(f => Math.Exp(f.LogWeight - most));
         var all = Math.Exp(soundWeight - most) + misaligned;
         var causes = faulty.SelectMany(f => f.Outside).GroupBy(o => o.Quantity).Select(g =>
@@ -314,6 +315,14 @@ public sealed class Posterior
         if (logs.Count == 0) return new(double.NegativeInfinity, [], []);
         var most = logs.Max();
         return new(most + Math.Log(logs.Sum(l => Math.Exp(l - most)) / draws), outside, points);
+    }
+
+    private Sampled AtPoint(Fit fit)
+    {
+        var outside = new List<(int, double, bool, double)>();
+        Suppose(fit.Kind, fit.Point);
+        AddOutside(outside, fit.LogWeight);
+        return new(fit.LogWeight, outside, []);
     }
 
     private void AddOutside(List<(int, double, bool, double)> list, double logWeight)

@@ -119,9 +119,11 @@ internal sealed class CsvTable
             for (var i = 0; i < fields.Length; i++) fields[i] = row[i].ToString();
             if (fields.Length == 1 && fields[0].Length == 0) continue;
             if (fields.Length == names.Count) rows.Add(new CsvRow(row.LineNumberFrom, fields));
-            else problems.Add(new(file, row.LineNumberFrom, "", fields.Length > names.Count
-                ? $"the row has {fields.Length} fields, the header {names.Count}: a decimal comma? Use a point as the decimal mark"
-                : $"the row has {fields.Length} fields, the header {names.Count}") { Text = string.Join(',', fields) });
+            else
+            {
+                var comma = fields.Length > names.Count ? ": a decimal comma? Use a point as the decimal mark" : "";
+                problems.Add(new(file, row.LineNumberFrom, "", $"the row has {fields.Length} fields, the header {names.Count}{comma}") { Text = string.Join(',', fields) });
+            }
         }
         return new CsvTable(file, names.Select((n, i) => (n, i)).ToDictionary(c => c.n, c => c.i, StringComparer.Ordinal), rows);
     }

@@ -85,6 +85,7 @@ internal sealed partial class Diagnosing(FactReader facts, FleetFitStore fits, D
         var inputs = MoneyInputs.For(vehicle.Vehicle, vehicle.Depot, [.. settings?.Prices.Select(p => p.Body) ?? []], [.. settings?.Settings.Select(s => s.Body) ?? []], day);
         var cost = CostOfWaiting.Of(figures, verdict, inputs);
         IEnumerable<Finding> findings = GeometryRules.Find(figures);
+        findings = findings.Select(f => FastWearRule.Explained(f, figures, verdict));
         if (fleet.Unusual.Judge(figures) is { } unusual) findings = findings.Append(unusual);
         return new VehicleDiagnosis
         {

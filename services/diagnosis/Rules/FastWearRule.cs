@@ -1,3 +1,4 @@
+using WearWatch.Diagnosis.Causes;
 using WearWatch.Diagnosis.Facts;
 using WearWatch.Diagnosis.Wear;
 
@@ -16,6 +17,26 @@ public static class FastWearRule
             yield return Build(figures, null, [.. known.OrderBy(t => t.Position)]);
         else
             foreach (var (axle, tyres) in axles) yield return Build(figures, axle, tyres);
+    }
+
+    /// <summary>Probability of an angle from which fast wear is put down to it, and the extra wear it must bring at the place.</summary>
+    private const double ExplainedFrom = 0.5, ExtraWear = 0.2;
+
+    /// <summary>
+    /// A rule sees no more than that tyres wear fast; where the verdict puts it down to an angle, the finding says so, and that an
+    /// alignment mends it.
+    /// </summary>
+    public static Finding Explained(Finding finding, VehicleFigures figures, Verdict verdict)
+    {
+        if (finding.Kind != FindingKind.FastWear || verdict.Causes.FirstOrDefault(c => c.Quantity.IsAngle()) is not { } angle || angle.Probability < ExplainedFrom) return finding;
+        var extra = figures.Vehicle.Positions().Where(p => (finding.Axle ?? p.Axle) == p.Axle && (finding.Side ?? p.Side) == p.Side)
+            .Select(p => verdict.Effects.Sum(e => e.Probability * e.ExtraWear.GetValueOrDefault(p))).DefaultIfEmpty(0).Max();
+        return extra < ExtraWear ? finding : finding with
+        {
+            Causes = [angle.Quantity, .. finding.Causes.Where(q => q != angle.Quantity)],
+            EvidenceFor = [.. finding.EvidenceFor, new($"Both witnesses together put it down to {OddsWords.Name(angle)} with probability {TradeWords.Number(angle.Probability, 2)}, which wears here about {TradeWords.Number(1 + extra, 1)} times as fast as normal", [])],
+            AlignmentMends = true,
+        };
     }
 
     private static bool Stands(TyreFigures tyre) =>

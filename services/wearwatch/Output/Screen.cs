@@ -84,7 +84,7 @@ internal static class Screen
         {
             var place = Place(c);
             var beyond = c.OutsideTolerance ? "out: " : "";
-            console.WriteLine(string.Create(CultureInfo.InvariantCulture, $"{c.Probability,11:0.00}  {place,-30}  {beyond}{c.Value:0.##}{(c.Unit == "1" ? "" : $" {c.Unit}")} ({c.Low:0.##} to {c.High:0.##})"));
+            console.WriteLine(string.Create(CultureInfo.InvariantCulture, $"{c.Probability,11:0.00}  {place,-30}  {beyond}{Plain(c.Value)}{(c.Unit == "1" ? "" : $" {c.Unit}")} ({Plain(c.Low)} to {Plain(c.High)})"));
         }
         foreach (var c in causes.Where(c => c.Probability >= WorthDating && c.Since is not null))
             console.MarkupLineInterpolated($"If {Place(c)}: {(c.Since.Earliest.Length == 0 ? $"began by {c.Since.Latest} at the latest" : $"began between {c.Since.Earliest} and {c.Since.Latest}")} (90 %).");
@@ -97,6 +97,9 @@ internal static class Screen
     private const double WorthDating = 0.2;
 
     private static string Place(Cause c) => $"{Words(EnumWords.Word(c.Quantity))}{(c.HasAxle ? $", axle {c.Axle}" : "")}{c.Side switch { Side.Left => " left", Side.Right => " right", _ => "" }}";
+
+    /// <summary>Two decimals at most, never '-0'.</summary>
+    private static string Plain(double value) => (Math.Round(value, 2) + 0.0).ToString("0.##", CultureInfo.InvariantCulture);
 
     private static string Sentence(string text) => char.ToUpperInvariant(text[0]) + text[1..];
 

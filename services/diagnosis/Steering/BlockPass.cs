@@ -1,6 +1,8 @@
 using System.Numerics;
+using System.Runtime.CompilerServices;
 using System.Runtime.InteropServices;
 using System.Runtime.Intrinsics;
+using System.Runtime.Intrinsics.X86;
 
 namespace WearWatch.Diagnosis.Steering;
 
@@ -17,6 +19,9 @@ public readonly record struct BlockSummary(float Mean, float Min, float Max)
 public static class BlockPass
 {
     private const int Lanes = 8;
+
+    /// <summary>Samples a block may have for eight blocks to be taken at once, one in each lane: at more, a block fills its lanes by itself.</summary>
+    public const int LeastAbreast = 4, MostAbreast = 40;
 
     /// <summary>Row r keeps the last r lanes: the part of an overlapping load that was not summed before.</summary>
     private static readonly float[] s_last = [.. Enumerable.Range(0, Lanes).SelectMany(r => Enumerable.Range(0, Lanes).Select(lane => BitConverter.Int32BitsToSingle(lane >= Lanes - r ? -1 : 0)))];
@@ -48,6 +53,84 @@ public static class BlockPass
         var total = Vector256.Sum(sum);
         return float.IsFinite(total) ? new(total / samples.Length, Least(min), Most(max)) : Masked(samples);
     }
+
+    /// <summary>
+    /// Blocks of one length laid end to end, eight at a time, a block to a lane: each is summed in the order of its samples, so that the
+    /// figures are the scalar form's to the last bit. Eight blocks with something missing among them go through that form.
+    /// </summary>
+    /// <param name="samples">As many blocks as the results hold.</param>
+    /// <param name="length">Samples in each block.</param>
+    /// <param name="mean">One a block, as <paramref name="min"/> and <paramref name="max"/>.</param>
+    /// <param name="min">Least valid sample.</param>
+    /// <param name="max">Largest valid sample.</param>
+    /// <returns>Some block holds one value only.</returns>
+    public static bool Abreast(ReadOnlySpan<float> samples, int length, Span<float> mean, Span<float> min, Span<float> max)
+    {
+        var flat = false;
+        if (mean.Length < Lanes || length is < LeastAbreast or > MostAbreast || !Avx.IsSupported) return Singly(samples, length, 0, mean.Length, mean, min, max);
+        ref var first = ref MemoryMarshal.GetReference(samples[..(length * mean.Length)]);
+        for (var b = 0; b < mean.Length; b += Lanes)
+        {
+            var from = Math.Min(b, mean.Length - Lanes); // the last eight may take some blocks a second time
+            if (Eight(ref Unsafe.Add(ref first, from * length), length, out var sum, out var least, out var most))
+            {
+                (sum / length).CopyTo(mean[from..]);
+                least.CopyTo(min[from..]);
+                most.CopyTo(max[from..]);
+                flat |= Vector256.EqualsAny(least, most);
+            }
+            else flat |= Singly(samples, length, from, from + Lanes, mean, min, max);
+        }
+        return flat;
+    }
+
+    private static bool Singly(ReadOnlySpan<float> samples, int length, int from, int to, Span<float> mean, Span<float> min, Span<float> max)
+    {
+        var flat = false;
+        for (var b = from; b < to; b++)
+        {
+            (mean[b], min[b], max[b]) = Scalar(samples.Slice(b * length, length));
+            flat |= min[b] == max[b];
+        }
+        return flat;
+    }
+
+    /// <returns>Whether all sums are numbers.</returns>
+    private static bool Eight(ref float first, int length, out Vector256<float> sum, out Vector256<float> min, out Vector256<float> max)
+    {
+        (sum, min, max) = (Vector256<float>.Zero, Vector256.Create(float.PositiveInfinity), Vector256.Create(float.NegativeInfinity));
+        var (total, least, most) = (sum, min, max);
+        for (var i = 0; i < length; i += 4)
+        {
+            // The last four may begin with samples seen before: the extremes do not mind, the sum leaves them out.
+            var (at, seen) = i + 4 <= length ? (i, 0) : (length - 4, i + 4 - length);
+            var (a, b, c, d) = Turned(ref Unsafe.Add(ref first, at), (nuint)length);
+            if (seen == 0) total += a;
+            if (seen <= 1) total += b;
+            if (seen <= 2) total += c;
+            total += d;
+            least = Vector256.MinNative(least, Vector256.MinNative(Vector256.MinNative(a, b), Vector256.MinNative(c, d)));
+            most = Vector256.MaxNative(most, Vector256.MaxNative(Vector256.MaxNative(a, b), Vector256.MaxNative(c, d)));
+        }
+        (sum, min, max) = (total, least, most);
+        return Vector256.EqualsAll(total - total, Vector256<float>.Zero);
+    }
+
+    /// <summary>Four samples of each of eight rows, turned so that each vector holds one sample of every row.</summary>
+    [MethodImpl(MethodImplOptions.AggressiveInlining)]
+    private static (Vector256<float>, Vector256<float>, Vector256<float>, Vector256<float>) Turned(ref float first, nuint stride)
+    {
+        var (r0, r1) = (Rows(ref first, 0, stride), Rows(ref first, 1, stride));
+        var (r2, r3) = (Rows(ref first, 2, stride), Rows(ref first, 3, stride));
+        var (low01, low23) = (Avx.UnpackLow(r0, r1), Avx.UnpackLow(r2, r3));
+        var (high01, high23) = (Avx.UnpackHigh(r0, r1), Avx.UnpackHigh(r2, r3));
+        return (Avx.Shuffle(low01, low23, 0x44), Avx.Shuffle(low01, low23, 0xEE), Avx.Shuffle(high01, high23, 0x44), Avx.Shuffle(high01, high23, 0xEE));
+    }
+
+    /// <summary>Four samples of a row beside those of the fourth row after it.</summary>
+    [MethodImpl(MethodImplOptions.AggressiveInlining)]
+    private static Vector256<float> Rows(ref float first, nuint row, nuint stride) =>
+        Vector256.Create(Vector128.LoadUnsafe(ref first, row * stride), Vector128.LoadUnsafe(ref first, (row + 4) * stride));
 
     private static float Least(Vector256<float> v)
     {

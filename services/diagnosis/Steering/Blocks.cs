@@ -14,8 +14,8 @@ internal sealed class Blocks
     private Blocks(int count)
     {
         Count = count;
-        (StartTicks, Seconds, Sequence, Joined) = (new long[count], new float[count], new long[count], new bool[count]);
-        (Latitude, Longitude, Samples) = (new double[count], new double[count], new int[count]);
+        (StartTicks, Seconds, Sequence, Joined) = (Column<long>(count), Column<float>(count), Column<long>(count), Column<bool>(count));
+        (Latitude, Longitude, Samples) = (Column<double>(count), Column<double>(count), Column<int>(count));
     }
 
     public int Count { get; }
@@ -106,8 +106,11 @@ internal sealed class Blocks
 
     private void Allocate(SteeringChannel channel)
     {
-        (_mean[(int)channel], _min[(int)channel], _max[(int)channel]) = (new float[Count], new float[Count], new float[Count]);
+        (_mean[(int)channel], _min[(int)channel], _max[(int)channel]) = (Column<float>(Count), Column<float>(Count), Column<float>(Count));
     }
+
+    /// <summary>Not cleared: every block is written.</summary>
+    private static T[] Column<T>(int count) => GC.AllocateUninitializedArray<T>(count);
 
     /// <summary>The next chunk starts where the one before ended, to half a sample (or half a second at low rates).</summary>
     private static bool Follows(SteeringColumns before, SteeringColumns next) =>
@@ -152,7 +155,16 @@ internal sealed class Blocks
         var samples = columns[channel];
         var flat = _flat[(int)channel];
         _resolution[(int)channel] = Math.Max(_resolution[(int)channel], columns.Resolution(channel));
-        for (var b = 0; b + 1 < edges.Length; b++)
+        var b = 0;
+        if (!scalar && !samples.IsEmpty && columns.RateHz is var rate and >= BlockPass.LeastAbreast and <= BlockPass.MostAbreast && rate == Math.Floor(rate))
+        {
+            // Whole seconds of the same number of samples: all, or all but the last.
+            var length = (int)rate;
+            b = Math.Min(edges.Length - 1, samples.Length / length);
+            if (edges[b] != b * length) b--;
+            flat |= BlockPass.Abreast(samples, length, mean.AsSpan(at, b), min.AsSpan(at, b), max.AsSpan(at, b));
+        }
+        for (; b + 1 < edges.Length; b++)
         {
             var block = samples.IsEmpty ? BlockSummary.Missing
                 : scalar ? BlockPass.Scalar(samples[edges[b]..edges[b + 1]]) : BlockPass.Vectorised(samples[edges[b]..edges[b + 1]]);

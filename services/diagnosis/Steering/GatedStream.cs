@@ -1,3 +1,5 @@
+using System.Runtime.InteropServices;
+
 namespace WearWatch.Diagnosis.Steering;
 
 /// <summary>Where the yaw sensor's zero was taken from.</summary>
@@ -21,6 +23,8 @@ internal sealed class GatedStream
 
     private readonly int[] _mode;
     private readonly float[]? _yaw;
+    private double _yawBias;
+    private float _yawOff;
 
     private GatedStream(Blocks blocks)
     {
@@ -35,7 +39,7 @@ internal sealed class GatedStream
     public float[] Slope { get; }
     public YawZero YawZero { get; private set; } = YawZero.None;
     /// <summary>deg/s.</summary>
-    public double YawBiasDegS { get; private set; }
+    public double YawBiasDegS { get => _yawBias; private set => (_yawBias, _yawOff) = (value, (float)value); }
     public double LaneKeepingSeconds { get; private set; }
 
     public RunMode? Mode(int block) => _mode[block] == NoRun ? null : (RunMode)_mode[block];
@@ -43,7 +47,7 @@ internal sealed class GatedStream
     public void Drop(int block) => _mode[block] = NoRun;
 
     public float Yaw(int block) =>
-        _yaw is null ? float.NaN : _yaw[block] - (float)YawBiasDegS;
+        _yaw is null ? float.NaN : _yaw[block] - _yawOff;
 
     public static GatedStream Of(Blocks blocks)
     {
@@ -58,24 +62,24 @@ internal sealed class GatedStream
     {
         if (!Blocks.Has(SteeringChannel.YawRate)) return;
         YawZero = YawZero.NotTaken;
-        var still = new List<double>();
+        var still = new List<float>();
         if (!Blocks.Has(SteeringChannel.Speed)) return;
         var fastest = Blocks.Max(SteeringChannel.Speed);
         var yaw = Blocks.Mean(SteeringChannel.YawRate);
         for (var i = 0; i < Blocks.Count; i++)
             if (fastest[i] <= StraightGates.StandstillKmH && !float.IsNaN(yaw[i])) still.Add(yaw[i]);
         if (still.Count < StraightGates.StandstillBlocks) return;
-        (YawZero, YawBiasDegS) = (YawZero.Standstill, RobustMean.Huber(still.ToArray()));
+        (YawZero, YawBiasDegS) = (YawZero.Standstill, RobustMean.Huber(CollectionsMarshal.AsSpan(still)));
     }
 
     private bool TakeStraightBias()
     {
         var yaw = Blocks.Mean(SteeringChannel.YawRate);
-        var straight = new List<double>();
+        var straight = new List<float>(Blocks.Count);
         for (var i = 0; i < Blocks.Count; i++)
             if (_mode[i] != NoRun && !float.IsNaN(yaw[i])) straight.Add(yaw[i]);
         if (straight.Count < LeastStraightBlocks) return false;
-        (YawZero, YawBiasDegS) = (YawZero.StraightDriving, RobustMean.Huber(straight.ToArray()));
+        (YawZero, YawBiasDegS) = (YawZero.StraightDriving, RobustMean.Huber(CollectionsMarshal.AsSpan(straight)));
         return true;
     }
 
@@ -96,13 +100,14 @@ internal sealed class GatedStream
         var drive = Blocks.Mean(SteeringChannel.DriveTorque);
         var lane = Blocks.Max(SteeringChannel.LaneKeeping);
         var driven = DriveThreshold();
-        for (var i = 0; i < Blocks.Count; i++)
+        var (seconds, slope) = (Blocks.Seconds, Slope);
+        for (var i = 0; i < side.Length; i++)
         {
             if (!(Math.Abs(side[i] - middle) < bound)) continue;
-            if (hasAngle && most[i] - least[i] > StraightGates.SteeringRateDegS * Blocks.Seconds[i]) continue;
-            var mode = LongitudinalMode(speed[i], Slope[i], !brake.IsEmpty && brake[i] > 0, !drive.IsEmpty && drive[i] > driven);
+            if (hasAngle && most[i] - least[i] > StraightGates.SteeringRateDegS * seconds[i]) continue;
+            var mode = LongitudinalMode(speed[i], slope[i], !brake.IsEmpty && brake[i] > 0, !drive.IsEmpty && drive[i] > driven);
             if (mode == NoRun) continue;
-            if (!lane.IsEmpty && lane[i] > 0) LaneKeepingSeconds += Blocks.Seconds[i];
+            if (!lane.IsEmpty && lane[i] > 0) LaneKeepingSeconds += seconds[i];
             else _mode[i] = mode;
         }
     }

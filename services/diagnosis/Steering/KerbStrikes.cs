@@ -47,11 +47,15 @@ internal static class KerbStrikes
         if (witnesses.Length < LeastWitnesses) return [];
         var found = new List<KerbStrikeCandidate>();
         var speed = blocks.Mean(SteeringChannel.Speed);
-        var first = witnesses[0];
-        for (var i = 0; i < blocks.Count; i++)
+        var (first, second) = (witnesses[0], witnesses[1]);
+        var firstMin = blocks.Min(first.Channel);
+        var firstMax = blocks.Max(first.Channel);
+        var secondMin = blocks.Min(second.Channel);
+        var secondMax = blocks.Max(second.Channel);
+        for (var i = 0; i < speed.Length; i++)
         {
             // Two of at most three witnesses: the first or the second is among them.
-            if (!(Range(blocks, first.Channel, i) > first.Bar) && !(Range(blocks, witnesses[1].Channel, i) > witnesses[1].Bar)) continue;
+            if (!(firstMax[i] - firstMin[i] > first.Bar) && !(secondMax[i] - secondMin[i] > second.Bar)) continue;
             if (!(speed[i] > MovingKmH) || blocks.Samples[i] < LeastRateHz * blocks.Seconds[i]) continue;
             if (witnesses.Count(w => Range(blocks, w.Channel, i) > w.Bar) < LeastWitnesses) continue;
             var at = new DateTimeOffset(blocks.StartTicks[i], TimeSpan.Zero);

@@ -1,3 +1,5 @@
+using System.Runtime.InteropServices;
+using System.Runtime.Intrinsics;
 using WearWatch.Diagnosis.Statistics;
 
 namespace WearWatch.Diagnosis.Steering;
@@ -46,21 +48,23 @@ public static class RobustMean
     public static double Huber(ReadOnlySpan<double> values)
     {
         var n = values.Length;
-        Span<double> sorted = n <= 128 ? stackalloc double[n] : new double[n];
-        Sort(values, sorted);
+        Span<double> sorted = n <= LongestCounted ? stackalloc double[LongestCounted] : new double[n];
+        Sort(values, sorted[..n]);
+        return OfSorted(sorted[..n]);
+    }
+
+    /// <summary>The same of single-precision values, whose bits sort faster.</summary>
+    public static double Huber(ReadOnlySpan<float> values) => OfSorted(SingleSort.Ascending(values));
+
+    private static double OfSorted(ReadOnlySpan<double> sorted)
+    {
         var median = Median(sorted);
         var bound = HuberK * MedianDeviation(sorted, median) / 0.6745;
         if (!(bound > 0)) return Mean(sorted);
         var centre = median;
         for (var iteration = 0; iteration < 100; iteration++)
         {
-            var (pull, inside) = (0.0, 0);
-            foreach (var x in sorted)
-            {
-                var away = x - centre;
-                if (Math.Abs(away) <= bound) inside++;
-                pull += Math.Clamp(away, -bound, bound);
-            }
+            var (pull, inside) = Pull(sorted, centre, bound);
             // At least half the values lie within the bound of the median; should a step lose them all, half a step goes back.
             var next = inside > 0 ? centre + pull / inside : (centre + median) / 2;
             if (Math.Abs(next - centre) <= 1e-12 * bound) return next;
@@ -69,7 +73,32 @@ public static class RobustMean
         return centre;
     }
 
-    /// <summary>Sorts by counting how many values each one follows: without branches, which for a run's thirty blocks beats a general sort.</summary>
+    /// <summary>Sum of the distances from the centre, each held to the bound, and how many needed no holding.</summary>
+    private static (double Pull, long Inside) Pull(ReadOnlySpan<double> values, double centre, double bound)
+    {
+        var (sums, counts) = (Vector256<double>.Zero, Vector256<long>.Zero);
+        var (centres, bounds) = (Vector256.Create(centre), Vector256.Create(bound));
+        var fours = MemoryMarshal.Cast<double, Vector256<double>>(values);
+        foreach (var x in fours)
+        {
+            var away = x - centres;
+            counts -= Vector256.LessThanOrEqual(Vector256.Abs(away), bounds).AsInt64();
+            sums += Vector256.MinNative(Vector256.MaxNative(away, -bounds), bounds);
+        }
+        var (pull, inside) = (Vector256.Sum(sums), Vector256.Sum(counts));
+        foreach (var x in values[(4 * fours.Length)..])
+        {
+            var away = x - centre;
+            if (Math.Abs(away) <= bound) inside++;
+            pull += Math.Clamp(away, -bound, bound);
+        }
+        return (pull, inside);
+    }
+
+    /// <summary>Lane k is full from the k-th on: which of four values a value beside them comes after when they are equal.</summary>
+    private static readonly Vector256<long>[] s_after = [Vector256.Create(0L, -1, -1, -1), Vector256.Create(0L, 0, -1, -1), Vector256.Create(0L, 0, 0, -1), Vector256<long>.Zero];
+
+    /// <summary>Sorts by counting how many values each one follows, four at a time and without branches: for a run's thirty blocks that beats a general sort.</summary>
     private static void Sort(ReadOnlySpan<double> values, Span<double> sorted)
     {
         var n = values.Length;
@@ -79,21 +108,24 @@ public static class RobustMean
             sorted.Sort();
             return;
         }
-        Span<int> rank = stackalloc int[LongestCounted];
-        rank = rank[..n];
-        rank.Clear();
-        for (var i = 1; i < n; i++)
+        Span<double> padded = stackalloc double[LongestCounted];
+        Span<long> rank = stackalloc long[LongestCounted];
+        values.CopyTo(padded);
+        for (var i = 0; i < n; i += 4)
         {
-            var (x, follows) = (values[i], 0);
-            for (var j = 0; j < i; j++)
+            var (x, follows) = (Vector256.Create<double>(padded[i..]), Vector256<long>.Zero);
+            var j = 0;
+            // Equal values keep their order: those before come first.
+            for (; j < i; j++) follows -= Vector256.LessThanOrEqual(Vector256.Create(padded[j]), x).AsInt64();
+            for (; j < Math.Min(i + 4, n); j++)
             {
-                var after = x >= values[j] ? 1 : 0;
-                follows += after;
-                rank[j] += 1 - after;
+                var y = Vector256.Create(padded[j]);
+                follows -= Vector256.LessThan(y, x).AsInt64() | Vector256.Equals(y, x).AsInt64() & s_after[j - i];
             }
-            rank[i] = follows;
+            for (; j < n; j++) follows -= Vector256.LessThan(Vector256.Create(padded[j]), x).AsInt64();
+            follows.CopyTo(rank[i..]);
         }
-        for (var i = 0; i < n; i++) sorted[rank[i]] = values[i];
+        for (var i = 0; i < n; i++) sorted[(int)rank[i]] = values[i];
     }
 
     /// <summary>Median of the distances from the median: both flanks ascend away from it, so they are merged half way.</summary>

@@ -1,3 +1,4 @@
+using System.Runtime.Intrinsics;
 using WearWatch.Diagnosis.Statistics;
 
 namespace WearWatch.Diagnosis.Steering;
@@ -99,12 +100,16 @@ public static class RunReduction
 /// <summary>Turns a stretch of blocks into a run.</summary>
 internal sealed class RunReader(string vehicleId, string streamId, GatedStream stream, ReductionVehicle vehicle, SignCheck signs, float[]? torque, double? angleSlope)
 {
-    private readonly double[] _scratch = new double[(int)(2 * StraightGates.LongestRunS) + 2];
+    private readonly double[] _angle = Angles(stream, vehicle, angleSlope);
+    private readonly double[] _bank = Banks(stream);
+    private readonly double[]? _torque = torque is null ? null : Array.ConvertAll(torque, x => (double)x);
 
     public StraightRun Read(int from, int to)
     {
         var blocks = stream.Blocks;
         var middle = (from + to) / 2;
+        var samples = 0;
+        foreach (var n in blocks.Samples.AsSpan(from, to - from)) samples += n;
         return new()
         {
             VehicleId = vehicleId,
@@ -114,13 +119,13 @@ internal sealed class RunReader(string vehicleId, string streamId, GatedStream s
             Seconds = Sum(blocks.Seconds, from, to),
             Mode = stream.Mode(from)!.Value,
             SpeedKmH = Average(blocks.Mean(SteeringChannel.Speed), from, to)!.Value,
-            TorqueNm = torque is null ? null : Robust(from, to, i => torque[i], TorqueResolution(), SteeringChannel.DriverTorque),
+            TorqueNm = _torque is null ? null : Robust(from, to, _torque, samples, TorqueResolution(), SteeringChannel.DriverTorque),
             TorqueIncludesAssist = blocks.Has(SteeringChannel.AssistTorque),
             // With signs that disagree the curvature would be doubled, not removed.
             AngleDeg = blocks.Has(SteeringChannel.SteeringWheelAngle) && signs.Angle != SignVerdict.Opposite
-                ? Robust(from, to, StraightAngle, blocks.Resolution(SteeringChannel.SteeringWheelAngle), SteeringChannel.SteeringWheelAngle) : null,
+                ? Robust(from, to, _angle, samples, blocks.Resolution(SteeringChannel.SteeringWheelAngle), SteeringChannel.SteeringWheelAngle) : null,
             BankReading = blocks.Has(SteeringChannel.LateralAcceleration) && blocks.Has(SteeringChannel.YawRate) && signs.LateralAcceleration != SignVerdict.Opposite
-                ? Robust(from, to, Bank, blocks.Resolution(SteeringChannel.LateralAcceleration) / SteeringEquations.Gravity, SteeringChannel.LateralAcceleration) : null,
+                ? Robust(from, to, _bank, samples, blocks.Resolution(SteeringChannel.LateralAcceleration) / SteeringEquations.Gravity, SteeringChannel.LateralAcceleration) : null,
             YawRateDegS = blocks.Has(SteeringChannel.YawRate) ? Average(blocks.Mean(SteeringChannel.YawRate), from, to) - stream.YawBiasDegS : null,
             LoadKg = Average(blocks.Mean(SteeringChannel.Load), from, to),
             RoadCell = RoadCell.Of(Position(from, to, 1), Position(middle, to, 1), Position(to - 1, from - 1, -1)),
@@ -130,32 +135,40 @@ internal sealed class RunReader(string vehicleId, string streamId, GatedStream s
     private double TorqueResolution() => Math.Max(stream.Blocks.Resolution(SteeringChannel.DriverTorque), stream.Blocks.Resolution(SteeringChannel.AssistTorque));
 
     /// <summary>Wheel angle less what the road's curvature takes, deg.</summary>
-    internal double StraightAngle(int i)
+    internal double StraightAngle(int i) => _angle[i];
+
+    /// <summary>Wheel angle of every block less what the road's curvature takes, deg; empty where no block can be straight.</summary>
+    private static double[] Angles(GatedStream stream, ReductionVehicle vehicle, double? angleSlope)
     {
-        double angle = stream.Blocks.Mean(SteeringChannel.SteeringWheelAngle)[i], yaw = stream.Yaw(i);
-        if (double.IsNaN(yaw)) return stream.YawZero == YawZero.None ? angle : double.NaN;
-        if (vehicle is { WheelbaseM: { } wheelbase, SteeringRatio: { } ratio })
-            return angle - SteeringEquations.CurvatureAngle(ratio, wheelbase, SpeedMs(i), yaw, vehicle.UndersteerRadPerG);
-        return angle - (angleSlope ?? 0) * yaw;
+        var angle = stream.Blocks.Mean(SteeringChannel.SteeringWheelAngle);
+        var speed = stream.Blocks.Mean(SteeringChannel.Speed);
+        if (angle.IsEmpty || speed.IsEmpty) return [];
+        var straight = GC.AllocateUninitializedArray<double>(angle.Length);
+        var byGeometry = vehicle is { WheelbaseM: not null, SteeringRatio: not null };
+        var (wheelbase, ratio, slope) = (vehicle.WheelbaseM ?? 0, vehicle.SteeringRatio ?? 0, angleSlope ?? 0);
+        for (var i = 0; i < straight.Length; i++)
+        {
+            double yaw = stream.Yaw(i);
+            straight[i] = double.IsNaN(yaw) ? stream.YawZero == YawZero.None ? angle[i] : double.NaN
+                : angle[i] - (byGeometry ? SteeringEquations.CurvatureAngle(ratio, wheelbase, speed[i] / 3.6, yaw, vehicle.UndersteerRadPerG) : slope * yaw);
+        }
+        return straight;
     }
 
-    private double Bank(int i) =>
-        SteeringEquations.SineOfBank(stream.Blocks.Mean(SteeringChannel.LateralAcceleration)[i], SpeedMs(i), stream.Yaw(i) * Math.PI / 180);
-
-    private double SpeedMs(int i) => stream.Blocks.Mean(SteeringChannel.Speed)[i] / 3.6;
-
-    private Estimate? Robust(int from, int to, Func<int, double> value, double resolution, SteeringChannel channel)
+    /// <summary>Sine of the bank under every block, the sensor's bias in it; empty without the channels.</summary>
+    private static double[] Banks(GatedStream stream)
     {
-        var least = stream.Blocks.Min(channel);
-        var most = stream.Blocks.Max(channel);
-        var (lo, hi, samples) = (double.PositiveInfinity, double.NegativeInfinity, 0);
-        for (var i = from; i < to; i++)
-        {
-            _scratch[i - from] = value(i);
-            lo = Math.Min(lo, least[i]);
-            hi = Math.Max(hi, most[i]);
-            samples += stream.Blocks.Samples[i];
-        }
+        var lateral = stream.Blocks.Mean(SteeringChannel.LateralAcceleration);
+        var speed = stream.Blocks.Mean(SteeringChannel.Speed);
+        if (lateral.IsEmpty || speed.IsEmpty) return [];
+        var bank = GC.AllocateUninitializedArray<double>(lateral.Length);
+        for (var i = 0; i < bank.Length; i++) bank[i] = SteeringEquations.SineOfBank(lateral[i], speed[i] / 3.6, stream.Yaw(i) * Math.PI / 180);
+        return bank;
+    }
+
+    private Estimate? Robust(int from, int to, double[] values, int samples, double resolution, SteeringChannel channel)
+    {
+        var range = Range(stream.Blocks.Min(channel)[from..to], stream.Blocks.Max(channel)[from..to]);
         var coarse = channel switch
         {
             SteeringChannel.DriverTorque => StraightGates.CoarseTorqueNm,
@@ -163,8 +176,24 @@ internal sealed class RunReader(string vehicleId, string streamId, GatedStream s
             _ => double.PositiveInfinity,
         };
         // The rounding error of an unmoved coarse step is the same in run after run: averaging over runs would hide it.
-        if (resolution >= coarse && hi - lo <= 2 * resolution) return null;
-        return RobustMean.Of(_scratch.AsSpan(0, to - from), resolution, hi - lo, samples);
+        if (resolution >= coarse && range <= 2 * resolution) return null;
+        return RobustMean.Of(values.AsSpan(from, to - from), resolution, range, samples);
+    }
+
+    /// <summary>Largest less least sample; NaN where a block has none.</summary>
+    private static double Range(ReadOnlySpan<float> least, ReadOnlySpan<float> most)
+    {
+        var (lo, hi) = (Vector256.Create(float.PositiveInfinity), Vector256.Create(float.NegativeInfinity));
+        var at = 0;
+        for (; at + 8 <= least.Length; at += 8)
+        {
+            lo = Vector256.Min(lo, Vector256.Create<float>(least[at..]));
+            hi = Vector256.Max(hi, Vector256.Create<float>(most[at..]));
+        }
+        var (low, high) = (float.PositiveInfinity, float.NegativeInfinity);
+        for (var lane = 0; lane < 8; lane++) (low, high) = (Math.Min(low, lo[lane]), Math.Max(high, hi[lane]));
+        for (; at < least.Length; at++) (low, high) = (Math.Min(low, least[at]), Math.Max(high, most[at]));
+        return (double)high - low;
     }
 
     private (double, double) Position(int from, int end, int step)

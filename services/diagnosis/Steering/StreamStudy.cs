@@ -70,10 +70,16 @@ internal static class StreamStudy
 
     private static string Invariant(double value) => value.ToString("0.###", System.Globalization.CultureInfo.InvariantCulture);
 
+    private static bool AnyFinite(double[] values)
+    {
+        foreach (var x in values) if (double.IsFinite(x)) return true;
+        return false;
+    }
+
     private static bool Present(Blocks blocks, SteeringChannel channel) => channel switch
     {
-        SteeringChannel.Latitude => blocks.Latitude.Any(double.IsFinite),
-        SteeringChannel.Longitude => blocks.Longitude.Any(double.IsFinite),
+        SteeringChannel.Latitude => AnyFinite(blocks.Latitude),
+        SteeringChannel.Longitude => AnyFinite(blocks.Longitude),
         SteeringChannel.Distance => blocks.DistanceKm is not null,
         _ => blocks.Has(channel),
     };
@@ -92,7 +98,7 @@ internal static class StreamStudy
         if (!blocks.Has(SteeringChannel.YawRate)) yield return "curvature and bank: no yaw rate; a yaw rate channel would help";
         else if (stream.YawZero == YawZero.NotTaken) yield return "zero of the yaw rate: the vehicle neither stood for 5 s nor drove straight for 60 s; a log from key-on would help";
         if (!blocks.Has(SteeringChannel.LateralAcceleration)) yield return "own bank reading: no lateral acceleration; a lateral acceleration channel would help";
-        if (!blocks.Latitude.Any(double.IsFinite)) yield return "roads shared with other vehicles: no position; latitude and longitude would help";
+        if (!AnyFinite(blocks.Latitude)) yield return "roads shared with other vehicles: no position; latitude and longitude would help";
         var straight = runs.Sum(r => r.Seconds);
         if (runs.Count > 0)
         {

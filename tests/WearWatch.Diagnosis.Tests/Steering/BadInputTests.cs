@@ -80,6 +80,35 @@ public class BadInputTests
         Assert.Contains(study.NotPossible, n => n.Contains("wrapped"));
     }
 
+    [Theory]
+    [InlineData(SteeringChannel.SteeringWheelAngle, "signs: steering-wheel angle")]
+    [InlineData(SteeringChannel.DriverTorque, "signs: driver torque")]
+    [InlineData(SteeringChannel.LateralAcceleration, "signs: lateral acceleration")]
+    public void A_channel_of_swapped_sign_is_named_and_gives_no_figure(SteeringChannel swapped, string named)
+    {
+        var (wrong, right) = (Bends(swapped), Bends(null));
+        Assert.NotEmpty(wrong.Runs);
+        Assert.All(wrong.Runs, r => Assert.Equal(
+            (swapped == SteeringChannel.SteeringWheelAngle, swapped == SteeringChannel.DriverTorque, swapped == SteeringChannel.LateralAcceleration),
+            (r.AngleDeg is null, r.TorqueNm is null, r.BankReading is null)));
+        Assert.Contains(wrong.Study.NotPossible, n => n.StartsWith(named, StringComparison.Ordinal));
+        Assert.DoesNotContain(right.Study.NotPossible, n => n.StartsWith("signs", StringComparison.Ordinal));
+        Assert.All(right.Runs, r => Assert.True(r is { AngleDeg: not null, TorqueNm: not null, BankReading: not null }));
+    }
+
+    /// <summary>Motorway with a bend a minute, to the left and to the right in turn; one channel may be wired the wrong way round.</summary>
+    private static StreamReduction Bends(SteeringChannel? swapped)
+    {
+        var s = new Signals();
+        double Yaw(double t) => t % 60 is >= 20 and < 30 ? (t % 120 < 60 ? 8 : -8) : 0;
+        double Sign(SteeringChannel channel) => channel == swapped ? -1 : 1;
+        s.With(SteeringChannel.Speed, t => t < 10 ? 0 : 90).With(SteeringChannel.YawRate, t => Yaw(t) + s.Noise(0.05));
+        foreach (var (channel, level, perYaw) in ((SteeringChannel, double, double)[])
+            [(SteeringChannel.SteeringWheelAngle, 2, 2.3), (SteeringChannel.DriverTorque, 0.5, 0.3), (SteeringChannel.LateralAcceleration, 0.2, 25 * Math.PI / 180)])
+            s.With(channel, t => Sign(channel) * (level + perYaw * Yaw(t) + s.Noise(0.1)));
+        return Reduce(s.Chunks(300));
+    }
+
     [Fact]
     public void Parts_of_different_rate_are_each_reduced_at_their_own()
     {

@@ -48,4 +48,30 @@ public class RobustMeanTests
 
     [Fact]
     public void Two_blocks_are_no_mean() => Assert.Null(RobustMean.Of([1, 2, double.NaN], 0.1, 1, 30));
+
+    [Theory]
+    [InlineData(3)]
+    [InlineData(29)]
+    [InlineData(64)]
+    [InlineData(65)]
+    [InlineData(2000)]
+    public void Single_and_double_precision_and_any_order_give_one_location(int n)
+    {
+        // Steps of a quarter tie; the bits of negative numbers descend.
+        var random = new Random(n);
+        var values = Enumerable.Range(0, n).Select(_ => (float)Math.Round(4 * Normal(random)) / 4).ToArray();
+        var wide = values.Select(x => (double)x).ToArray();
+        Assert.Equal(RobustMean.Huber(wide), RobustMean.Huber(values));
+        Assert.Equal(RobustMean.Huber(wide), RobustMean.Huber(wide.Reverse().ToArray()));
+        Assert.Equal(0, PullAt(wide, RobustMean.Huber(wide)), 1e-9);
+    }
+
+    /// <summary>Huber's condition (1964), worked out the plain way: the bounded distances from the location add up to nothing.</summary>
+    private static double PullAt(double[] values, double centre)
+    {
+        double Middle(IEnumerable<double> of) { var s = of.Order().ToArray(); return (s[(s.Length - 1) / 2] + s[s.Length / 2]) / 2; }
+        var median = Middle(values);
+        var bound = RobustMean.HuberK * Middle(values.Select(x => Math.Abs(x - median))) / 0.6745;
+        return values.Average(x => bound > 0 ? Math.Clamp(x - centre, -bound, bound) : x - centre);
+    }
 }

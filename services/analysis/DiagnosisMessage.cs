@@ -45,7 +45,7 @@ internal static class DiagnosisMessage
         message.KmPerWeek = TyreMessage.Use(d.Use);
         message.CannotTell.Add(d.ChassisProblems.Concat(d.Verdict.CannotTell).Select(c => new CannotTell { What = c.What, Because = c.Because, WouldHelp = c.WouldHelp }));
         // Of a trailer it is said once that it sends no signals.
-        if (d.Figures.Vehicle.Class != VehicleClass.Trailer) message.CannotTell.Add((steering?.NotPossible ?? []).Union(d.Study?.NotPossible ?? []).Select(NotPossible));
+        if (d.Figures.Vehicle.Class != Diagnosis.Facts.VehicleClass.Trailer) message.CannotTell.Add((steering?.NotPossible ?? []).Union(d.Study?.NotPossible ?? []).Select(NotPossible));
         message.CannotTell.Add(d.Cost.Assumed.Select(a => new CannotTell { What = "the money exactly", Because = $"{a} was assumed", WouldHelp = "the operator's own figure" }));
         message.Changes.Add(d.Figures.Changes.Select(c => Of(c, ChangeLimits.IsPublished(d.Figures, c))));
         message.SurveyNotes.Add(d.Wear.Surveys.Where(s => s.Corrected || s.Weight < 0.9).Select(Of));

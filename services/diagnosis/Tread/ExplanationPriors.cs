@@ -5,34 +5,26 @@ namespace WearWatch.Diagnosis.Tread;
 /// <summary>Which explanations a survey of certain axles can have, and how often each is the true one before its depths are looked at.</summary>
 internal static class ExplanationPriors
 {
-    // Prior shares of surveys, inside the 1-3 % of blunders usual in depots; from memory.
-    private const double SidesSwappedPrior = 0.01;
-    private const double AxleSidesSwappedPrior = 0.005;
-    private const double AxlesSwappedPrior = 0.004;
-    private const double PositionsExchangedPrior = 0.004;
-    private const double GroovesReversedPrior = 0.002;
-    private const double UnitPrior = 0.004;
     /// <summary>
-    /// What is left of that prior where the gauge's step says otherwise: mm can only be taken for 32nds where the record
+    /// What is left of the prior of a unit taken for the other where the gauge's step says otherwise: mm can only be taken for 32nds where the record
     /// says 32nds, and its depths are then whole steps of those; the other way round just as little. From memory.
     /// </summary>
     private const double AgainstStep = 0.02;
-    private const double OtherVehiclePrior = 0.002;
 
-    internal static List<(Explanation Explanation, double Prior)> Candidates(Vehicle vehicle, IReadOnlyList<int> axles)
+    internal static List<(Explanation Explanation, double Prior)> Candidates(Vehicle vehicle, IReadOnlyList<int> axles, ErrorRates rates)
     {
-        List<(Explanation, double)> list = [(Explanation.AsWritten, 1 - SidesSwappedPrior - AxleSidesSwappedPrior - AxlesSwappedPrior - PositionsExchangedPrior - GroovesReversedPrior - 2 * UnitPrior - OtherVehiclePrior)];
-        list.Add((new(ExplanationKind.SidesSwapped), SidesSwappedPrior));
+        List<(Explanation, double)> list = [(Explanation.AsWritten, 1 - rates.SidesSwapped - rates.AxleSidesSwapped - rates.AxlesSwapped - rates.PositionsExchanged - rates.GroovesReversed - rates.ThirtySecondsTakenForMm - rates.MmTakenForThirtySeconds - rates.OtherVehicle)];
+        list.Add((new(ExplanationKind.SidesSwapped), rates.SidesSwapped));
         if (axles.Count > 1)
-            foreach (var axle in axles) list.Add((new(ExplanationKind.AxleSidesSwapped, axle), AxleSidesSwappedPrior / axles.Count));
+            foreach (var axle in axles) list.Add((new(ExplanationKind.AxleSidesSwapped, axle), rates.AxleSidesSwapped / axles.Count));
         var pairs = (from a in axles from b in axles where a < b && vehicle.AxleAt(a)?.Duals == vehicle.AxleAt(b)?.Duals select (a, b)).ToList();
-        foreach (var (a, b) in pairs) list.Add((new(ExplanationKind.AxlesSwapped, a, b), AxlesSwappedPrior / pairs.Count));
-        list.Add((new(ExplanationKind.ThirtySecondsTakenForMm), UnitPrior));
-        list.Add((new(ExplanationKind.MmTakenForThirtySeconds), UnitPrior));
-        list.Add((new(ExplanationKind.OtherVehicle), OtherVehiclePrior));
+        foreach (var (a, b) in pairs) list.Add((new(ExplanationKind.AxlesSwapped, a, b), rates.AxlesSwapped / pairs.Count));
+        list.Add((new(ExplanationKind.ThirtySecondsTakenForMm), rates.ThirtySecondsTakenForMm));
+        list.Add((new(ExplanationKind.MmTakenForThirtySeconds), rates.MmTakenForThirtySeconds));
+        list.Add((new(ExplanationKind.OtherVehicle), rates.OtherVehicle));
         var wheels = Exchangeable(vehicle, axles);
-        foreach (var (a, b) in wheels) list.Add((new(ExplanationKind.PositionsExchanged, Position: a, OtherPosition: b), PositionsExchangedPrior / wheels.Count));
-        foreach (Side? side in new Side?[] { null, Side.Left, Side.Right }) list.Add((new(ExplanationKind.GroovesReversed, Side: side), GroovesReversedPrior / 3));
+        foreach (var (a, b) in wheels) list.Add((new(ExplanationKind.PositionsExchanged, Position: a, OtherPosition: b), rates.PositionsExchanged / wheels.Count));
+        foreach (Side? side in new Side?[] { null, Side.Left, Side.Right }) list.Add((new(ExplanationKind.GroovesReversed, Side: side), rates.GroovesReversed / 3));
         return list;
     }
 

@@ -57,7 +57,8 @@ internal sealed class ExplanationSet
     /// <param name="vehicle">The vehicle.</param>
     /// <param name="positions">Its positions in order.</param>
     /// <param name="axles">Axles read, in any order.</param>
-    public static ExplanationSet Of(Vehicle vehicle, Position[] positions, IReadOnlyList<int> axles)
+    /// <param name="rates">How often each thing goes wrong; from memory where no fleet states its own.</param>
+    public static ExplanationSet Of(Vehicle vehicle, Position[] positions, IReadOnlyList<int> axles, ErrorRates? rates = null)
     {
         int[] read = [.. axles.Order()];
         return new ExplanationSet
@@ -66,7 +67,7 @@ internal sealed class ExplanationSet
             Axles = read,
             Misfit = new double[positions.Length],
             Pairs = new PairFit[positions.Length * positions.Length],
-            Candidates = [.. ExplanationPriors.Candidates(vehicle, read).Select(c => new Candidate(c.Explanation, Math.Log(c.Prior), c.Explanation.Factor, Math.Log(c.Explanation.Factor),
+            Candidates = [.. ExplanationPriors.Candidates(vehicle, read, rates ?? ErrorRates.FromMemory).Select(c => new Candidate(c.Explanation, Math.Log(c.Prior), c.Explanation.Factor, Math.Log(c.Explanation.Factor),
                 [.. positions.Select(p => Array.IndexOf(positions, c.Explanation.Belongs(p)))], [.. positions.Select(c.Explanation.Reverses)]))],
         };
     }

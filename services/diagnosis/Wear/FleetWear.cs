@@ -26,6 +26,8 @@ public sealed record FleetWear
     public NoiseFigures Noise { get; init; } = new();
     /// <summary>Technicians and gauges as a study of their own.</summary>
     public ReaderStudy Readers { get; init; } = new();
+    /// <summary>How often surveys of this fleet go wrong and tyres change without a record.</summary>
+    public ErrorRates Errors { get; init; } = ErrorRates.FromMemory;
     public int Vehicles { get; init; }
     /// <summary>Fittings with a rate of their own.</summary>
     public int FittingsWithRate { get; init; }

@@ -46,14 +46,23 @@ internal sealed class FleetWearFit
         var readers = Math.Max(1, _technicians.Length + _gauges.Length);
         var blocks = (int)Math.Clamp(MostBlockBytes / (8L * readers * readers), 1, Math.Min(MostBlocks, Math.Max(1, vehicles.Length / 4)));
         _blocks = new FleetTyre[blocks][];
+        var counts = new ErrorCounts[blocks];
         var context = new HistoryContext((v, p) => s_builtIn[(v.Class, WearPrior.RoleOf(v, p.Axle), p.Dual)], _ => 0, GaugeNoise.RepeatSdMm, GaugeNoise.TechnicianSdMm);
         Parallel.For(0, blocks, k =>
         {
-            var (tyres, store) = (new List<FleetTyre>(), new PointStore());
-            for (var v = (int)((long)vehicles.Length * k / blocks); v < (int)((long)vehicles.Length * (k + 1) / blocks); v++) Read(VehicleHistory.Of(vehicles[v], asOf, context), v, tyres, store);
-            _blocks[k] = [.. tyres];
+            var (tyres, store, errors) = (new List<FleetTyre>(), new PointStore(), new ErrorCounts());
+            for (var v = (int)((long)vehicles.Length * k / blocks); v < (int)((long)vehicles.Length * (k + 1) / blocks); v++)
+            {
+                var history = VehicleHistory.Of(vehicles[v], asOf, context);
+                errors.Add(history);
+                Read(history, v, tyres, store);
+            }
+            (_blocks[k], counts[k]) = ([.. tyres], errors);
         });
         _tyres = [.. _blocks.SelectMany(b => b)];
+        var found = new ErrorCounts();
+        foreach (var count in counts) found.Add(count);
+        _fleet = _fleet with { Errors = found.Rates() };
     }
 
     /// <summary>What is believed of each kind of position before the fleet has shown anything.</summary>

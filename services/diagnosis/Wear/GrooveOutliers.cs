@@ -7,14 +7,8 @@ namespace WearWatch.Diagnosis.Wear;
 /// <summary>Finds single grooves typed wrong: the tyre's profile changes at one groove in one survey and nowhere else.</summary>
 internal static class GrooveOutliers
 {
-    /// <summary>Share of grooves typed wrong or read on a wear bar, inside the 1-3 % of blunders usual in depots (from memory).</summary>
-    private const double Prior = 0.005;
-
     /// <summary>Height of a wear bar, mm: a groove read on one is that much too shallow (UN R30 and R54: 1.6 mm, +0.6/−0).</summary>
     private const double WearBarMm = 1.6, WearBarSdMm = 0.2;
-
-    /// <summary>Share of those read on a wear bar; from memory.</summary>
-    private const double OnBarShare = 0.4;
 
     /// <summary>A mistyped depth can be anything within this width, mm.</summary>
     private const double AnyMm = 20;
@@ -29,8 +23,9 @@ internal static class GrooveOutliers
     /// <param name="readings">The tyre's readings, one a survey of its fitting.</param>
     /// <param name="resolutionMm">Step of each survey's gauge, mm.</param>
     /// <param name="repeatSdMm">Standard deviation of a repeated reading, mm.</param>
+    /// <param name="rates">How often grooves are typed wrong or read on a wear bar.</param>
     /// <returns>By index into <paramref name="readings"/>; null when nothing was found.</returns>
-    public static Dictionary<int, (int Groove, double Probability, ExplanationKind Kind)>? Find(IReadOnlyList<TyreReadings> readings, IReadOnlyList<double> resolutionMm, double repeatSdMm)
+    public static Dictionary<int, (int Groove, double Probability, ExplanationKind Kind)>? Find(IReadOnlyList<TyreReadings> readings, IReadOnlyList<double> resolutionMm, double repeatSdMm, ErrorRates rates)
     {
         var highest = 0;
         for (var i = 0; readings.Count > 1 && i < readings.Count; i++)
@@ -38,14 +33,16 @@ internal static class GrooveOutliers
         if (highest < 3) return null;
         var profiles = new Profiles(readings, highest);
         Dictionary<int, (int, double, ExplanationKind)>? found = null;
+        var wrong = rates.GrooveMistyped + rates.ReadOnWearBar;
+        var onBarShare = rates.ReadOnWearBar / wrong;
         for (var i = 0; i < readings.Count; i++)
         {
             if (profiles.Worst(i) is not { } worst) continue;
             var variance = GaugeNoise.ReadingVariance(repeatSdMm, resolutionMm[i]) * (1.5 + 1.0 / worst.Others) + ProfileChangeSdMm * ProfileChangeSdMm;
             if (worst.Next > 3 * Math.Sqrt(variance) || Math.Abs(worst.Off) < LeastMm) continue;
-            var typed = (1 - OnBarShare) / AnyMm;
-            var onBar = OnBarShare * Math.Exp(LineBelief.LogDensity(worst.Off + WearBarMm, variance + WearBarSdMm * WearBarSdMm));
-            var odds = Math.Exp(Math.Log(Prior / (1 - Prior) * (typed + onBar)) - LineBelief.LogDensity(worst.Off, variance));
+            var typed = (1 - onBarShare) / AnyMm;
+            var onBar = onBarShare * Math.Exp(LineBelief.LogDensity(worst.Off + WearBarMm, variance + WearBarSdMm * WearBarSdMm));
+            var odds = Math.Exp(Math.Log(wrong / (1 - wrong) * (typed + onBar)) - LineBelief.LogDensity(worst.Off, variance));
             if (odds / (1 + odds) >= SurveyExplanation.Clear)
                 (found ??= [])[i] = (worst.Groove, odds / (1 + odds), onBar > 3 * typed ? ExplanationKind.ReadOnWearBar : ExplanationKind.GrooveMistyped);
         }

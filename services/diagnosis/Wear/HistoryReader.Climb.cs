@@ -124,7 +124,7 @@ internal sealed partial class HistoryReader
     private ExplanationSet Set(int axles)
     {
         if (!_sets.TryGetValue(axles, out var set))
-            _sets[axles] = set = ExplanationSet.Of(_tread.Vehicle, _positions, [.. Enumerable.Range(1, Position.MaxAxle).Where(a => (axles & (1 << a)) != 0)]);
+            _sets[axles] = set = ExplanationSet.Of(_tread.Vehicle, _positions, [.. Enumerable.Range(1, Position.MaxAxle).Where(a => (axles & (1 << a)) != 0)], _context.Errors);
         return set;
     }
 
@@ -152,19 +152,17 @@ internal sealed partial class HistoryReader
             for (var k = 1; k < n; k++)
             {
                 if (points[k].Survey <= 0) continue;
-                var gain = evidence.Of(0, k) + evidence.OfChanged(k, n, NewAt(points[k].Survey, p)) - whole + s_logChange;
+                var gain = evidence.Of(0, k) + evidence.OfChanged(k, n, NewAt(points[k].Survey, p)) - whole + _logChange;
                 if (gain > best.Gain) best = (gain, Changed(p, points[k].Survey, gain));
             }
             // The last survey cannot be told from a change: it waits for the next.
             for (var k = evidence.Started ? 1 : 0; n > 2 && k < n - 1; k++)
             {
-                var gain = evidence.Without(k) + evidence.Of(k, k + 1) - whole + s_logMisread;
+                var gain = evidence.Without(k) + evidence.Of(k, k + 1) - whole + _logMisread;
                 if (gain > best.Gain && !_surveys[points[k].Survey].Survey.Confirmed) best = (gain, Misread(p, points[k].Survey, gain));
             }
         }
     }
-
-    private static readonly double s_logChange = Math.Log(ChangePrior), s_logMisread = Math.Log(MisreadPrior);
 
     private static double Probability(double gain) => 1 / (1 + Math.Exp(-gain));
 

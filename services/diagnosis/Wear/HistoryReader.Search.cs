@@ -10,12 +10,6 @@ namespace WearWatch.Diagnosis.Wear;
 /// </summary>
 internal sealed partial class HistoryReader
 {
-    /// <summary>Prior share of an axle's tyres changed together without a record since the survey before; from memory.</summary>
-    private const double AxleChangePrior = 0.015;
-
-    /// <summary>Prior share of tyres exchanged between places without a record since the survey before; from memory.</summary>
-    private const double MovedPrior = 0.005;
-
     private const int MostSteps = 24;
 
     /// <summary>Explanations of one survey tried beside the present one.</summary>
@@ -71,12 +65,12 @@ internal sealed partial class HistoryReader
                 else log += Unrecorded(p, cuts[f]) ? evidence.OfChanged(0, n, NewAt(evidence.Points[0].Survey, p)) : evidence.Of(0, n);
             }
         }
-        foreach (var (s, p) in _misread.Keys) log += s_logMisread + Lonely(s, p);
+        foreach (var (s, p) in _misread.Keys) log += _logMisread + Lonely(s, p);
         for (var s = 0; s < _surveys.Count; s++) log += Said(s);
         foreach (var byAxle in _inferredCuts.GroupBy(c => (c.Position.Axle, c.Survey)))
         {
             var (tyres, changed) = (_positions.Count(p => p.Axle == byAxle.Key.Axle), byAxle.Count());
-            log += changed == tyres ? Math.Log(AxleChangePrior) : changed * s_logChange;
+            log += changed == tyres ? Math.Log(_context.Errors.AxleChanged) : changed * _logChange;
         }
         return log;
     }
@@ -107,7 +101,7 @@ internal sealed partial class HistoryReader
     }
 
     /// <summary>A workshop exchanges the wheels of one axle, or two axles; all wheels across at once it hardly does.</summary>
-    private static double MovedLogPrior(Explanation e) => Math.Log(MovedPrior / (e.Kind == ExplanationKind.SidesSwapped ? 30 : 3));
+    private double MovedLogPrior(Explanation e) => Math.Log(_context.Errors.TyresMoved / (e.Kind == ExplanationKind.SidesSwapped ? 30 : 3));
 
     private bool Reaches(int s, int step)
     {
@@ -132,7 +126,7 @@ internal sealed partial class HistoryReader
         if (s == 0) return;
         foreach (var axle in _positions.Select(p => p.Axle).Distinct())
         {
-            var gain = Math.Log(AxleChangePrior);
+            var gain = Math.Log(_context.Errors.AxleChanged);
             var (read, ahead) = (0, false);
             for (var p = 0; p < _positions.Length; p++)
             {

@@ -10,12 +10,6 @@ namespace WearWatch.Diagnosis.Wear;
 /// </summary>
 internal sealed partial class HistoryReader
 {
-    /// <summary>Prior share of an unrecorded change per tyre and survey; from memory.</summary>
-    private const double ChangePrior = 0.01;
-
-    /// <summary>Prior share of one tyre misread in one survey; from memory.</summary>
-    private const double MisreadPrior = 0.01;
-
     /// <summary>Deviation of one tyre's figures from its line beyond reading noise, mm: wear lines wander (groove deviations in runs).</summary>
     private const double WanderSdMm = 0.05;
 
@@ -23,6 +17,7 @@ internal sealed partial class HistoryReader
     private readonly IReadOnlyList<StoredSurvey> _surveys;
     private readonly FittingCuts _cuts;
     private readonly HistoryContext _context;
+    private readonly double _logChange, _logMisread;
     private readonly Position[] _positions;
     private readonly NormalWear[] _normal;
     private readonly Estimate[] _km;
@@ -56,6 +51,7 @@ internal sealed partial class HistoryReader
     public HistoryReader(VehicleTread tread, IReadOnlyList<StoredSurvey> surveys, DistanceAxis axis, FittingCuts cuts, HistoryContext context)
     {
         (_tread, _surveys, _cuts, _context) = (tread, surveys, cuts, context);
+        (_logChange, _logMisread) = (Math.Log(context.Errors.TyreChanged), Math.Log(context.Errors.TyreMisread));
         _positions = [.. tread.Vehicle.Positions()];
         _index = new PositionIndex(_positions);
         var (n, places) = (surveys.Count, _positions.Length);
@@ -102,7 +98,7 @@ internal sealed partial class HistoryReader
                     resolutions.Add(_surveys[s].Survey.ResolutionMm);
                     for (var j = 0; j < tyre.Depths.Count; j++) grooves = Math.Max(grooves, tyre.Depths[j].Groove);
                 }
-                var mistyped = GrooveOutliers.Find(readings, resolutions, _context.RepeatSdMm);
+                var mistyped = GrooveOutliers.Find(readings, resolutions, _context.RepeatSdMm, _context.Errors);
                 var uneven = UnevenTread.SdMm(readings, resolutions, _context.RepeatSdMm);
                 for (var i = 0; i < within.Count; i++)
                 {

@@ -1,4 +1,5 @@
 using WearWatch.Diagnosis.Facts;
+using WearWatch.Diagnosis.Tread;
 
 namespace WearWatch.Diagnosis.Wear;
 
@@ -7,6 +8,9 @@ internal sealed record HistoryContext(Func<Vehicle, Position, NormalWear> Normal
 {
     /// <summary>Try other readings of the history as a whole against the first one found; the fleet's fit, which stands what a few vehicles get wrong, goes without.</summary>
     public bool Thorough { get; init; }
+
+    /// <summary>How often each thing goes wrong.</summary>
+    public ErrorRates Errors { get; init; } = ErrorRates.FromMemory;
 }
 
 /// <summary>A vehicle's surveys put on one distance axis, cut into fittings, and each survey explained.</summary>

@@ -25,7 +25,7 @@ public static class VehicleWear
     public static VehicleWearResult Estimate(VehicleTread vehicle, FleetWear fleet, DateOnly asOf)
     {
         var technicianSd = fleet.Technicians.Count > 1 ? 0.12 : GaugeNoise.TechnicianSdMm;
-        var context = new HistoryContext(fleet.For, s => fleet.BiasOf(s).Mm, GaugeNoise.RepeatSdMm, technicianSd) { Thorough = true };
+        var context = new HistoryContext(fleet.For, s => fleet.BiasOf(s).Mm, GaugeNoise.RepeatSdMm, technicianSd) { Thorough = true, Errors = fleet.Errors };
         var history = VehicleHistory.Of(vehicle, asOf, context);
         var readers = history.Surveys.Select(s => s.Survey.Technician).OfType<string>().Distinct().Order(StringComparer.Ordinal).ToList();
         // The bias itself is already off the depths; its error is shared by the surveys of one reader.

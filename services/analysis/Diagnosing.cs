@@ -16,7 +16,7 @@ namespace WearWatch.Analysis;
 internal sealed partial class Diagnosing(FactReader facts, FleetFitStore fits, DiagnosisStore store, RunStore runs, FleetFitting fitting, TimeProvider clock, ILogger<Diagnosing> log)
 {
     /// <summary>Raised when any stage of the diagnosis changes, so that every vehicle becomes due.</summary>
-    public const string Method = "diagnosis-4";
+    public const string Method = "diagnosis-5";
 
     private const int Batch = 16;
 

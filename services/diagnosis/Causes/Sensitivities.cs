@@ -31,8 +31,11 @@ public static class Sensitivities
     /// <summary>RMS slip of ordinary service, deg, and the spread of its logarithm between vehicles; prior from memory.</summary>
     public const double ServiceSlipDeg = 0.25, ServiceSlipSpread = 0.30;
 
-    /// <summary>Where the outermost grooves lie, share of the half width: what is read there is not yet the shoulder (common practice, no source).</summary>
-    private const double OuterGrooves = 0.72;
+    /// <summary>
+    /// Where the outermost grooves lie, share of the half width: what is read there is not yet the shoulder. Four grooves between five equal
+    /// ribs give 0.6, narrow shoulder ribs up to 0.8 (from memory); the edge's spread covers both.
+    /// </summary>
+    private const double OuterGrooves = 0.7;
 
     /// <summary>Outermost less innermost groove over the mean, per unit of signed wear: 2/3 at the shoulders gives outer to inner 2 : 1 far out (from memory).</summary>
     public const double EdgeShare = OuterGrooves * 2.0 / 3, EdgeSpread = 0.35;

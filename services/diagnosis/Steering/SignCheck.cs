@@ -15,7 +15,7 @@ public enum SignVerdict
 /// Signs of angle, driver torque and lateral acceleration against the yaw rate, from turns. Where most signals oppose the yaw rate it is the
 /// yaw rate that is turned round, and what rests on it is left out either way.
 /// </summary>
-/// <remarks>Handbook of the field: J1939 signs are to be verified by corr(angle, yaw rate) &gt; 0 (from memory).</remarks>
+/// <remarks>Signs on a J1939 bus differ from maker to maker; angle and yaw rate must rise together (common practice, no source).</remarks>
 public sealed record SignCheck(SignVerdict Angle, SignVerdict Torque, SignVerdict LateralAcceleration)
 {
     private const double LeastTurnedDeg = 60;

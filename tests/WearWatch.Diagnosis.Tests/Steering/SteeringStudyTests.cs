@@ -93,7 +93,7 @@ public class SteeringStudyTests
     [Fact]
     public void Bends_of_many_kinds_give_the_understeer_gradient_of_each_side()
     {
-        // Gillespie's bicycle (handbook row 17): K = 0.02194 rad/g; here 0.022 to the left and 0.030 to the right.
+        // Gillespie, Fundamentals of Vehicle Dynamics (SAE 1992), bicycle model: K = 0.02194 rad/g; here 0.022 to the left and 0.030 to the right.
         static double Yaw(double t) => t % 20 < 10 && t > 20 ? ((int)(t / 20) % 2 == 0 ? 1 : -1) * (2.5 + (int)(t / 40) % 5 * 1.2) : 0;
         var s = new Signals();
         const double v = 22;
